@@ -1,0 +1,400 @@
+"""All that a user can state about one exchanger in service: streams, exchanger, limits, names. Frozen, SI inside."""
+
+from __future__ import annotations
+
+import hashlib
+import json
+from collections.abc import Iterator
+from typing import Annotated, Any, ClassVar
+
+import numpy as np
+from pydantic import BeforeValidator, Discriminator, Field, Tag
+
+from engine import fluids
+from engine.exchangers.double_pipe import DoublePipe
+from engine.stated import SIDES, Choice, Figure, Input, Problem, Side, Stated, Words
+
+ATMOSPHERE = 101325.0
+
+SOLUTIONS = fluids.solution_names()
+
+
+class TableRow(Input):
+    """Properties at one temperature, as printed on a sheet or measured."""
+
+    T: Annotated[float, Stated("temperature", "Temperature", low=50.0, high=2000.0, example="40 degC")]
+    rho: Annotated[float, Stated("density", "Density", above=0.0, high=25000.0, example="862 kg/m3")]
+    cp: Annotated[float, Stated("specific_heat", "Specific heat", above=0.0, high=50e3, example="1.95 kJ/kgK")]
+    k: Annotated[float, Stated("conductivity", "Thermal conductivity", above=0.0, high=500.0, example="0.131 W/mK")]
+    mu: Annotated[float, Stated("viscosity", "Dynamic viscosity", above=0.0, high=1e5, example="39.6 cP")]
+
+
+class Constants(Input):
+    """Properties that stay the same at every temperature."""
+
+    rho: Annotated[float, Stated("density", "Density", above=0.0, high=25000.0, example="862 kg/m3")]
+    cp: Annotated[float, Stated("specific_heat", "Specific heat", above=0.0, high=50e3, example="1.95 kJ/kgK")]
+    k: Annotated[float, Stated("conductivity", "Thermal conductivity", above=0.0, high=500.0, example="0.131 W/mK")]
+    mu: Annotated[float, Stated("viscosity", "Dynamic viscosity", above=0.0, high=1e5, example="39.6 cP")]
+
+
+class PureFluid(Input):
+    """A fluid that the property library knows by name."""
+
+    tag_name: ClassVar[str] = "pure"
+    name: Annotated[str, Words("Fluid", 80, help="A pure fluid or thermal oil of the list of fluids.")]
+
+    def spec(self, atmosphere: float) -> fluids.Spec:
+        return fluids.named(self.name)
+
+
+class SolutionFluid(Input):
+    """An aqueous or similar solution by mass fraction."""
+
+    tag_name: ClassVar[str] = "solution"
+    solution: Annotated[str, Words("Solution", 80, help="For example ethylene glycol, or the library's own code MEG.")]
+    mass_fraction: Annotated[
+        float, Stated("fraction", "Mass fraction of the dissolved part", low=0.0, high=1.0, example="35 %")
+    ]
+
+    def spec(self, atmosphere: float) -> fluids.Spec:
+        return fluids.Solution(self.solution, float(self.mass_fraction))
+
+
+class SteamState(Input):
+    p: Annotated[
+        float,
+        Stated(("pressure_gauge", "pressure_absolute"), "Steam pressure", low=-101325.0, high=22e6, example="3 barg"),
+    ]
+    superheat: Annotated[
+        float, Stated("temperature_difference", "Superheat at the inlet", low=0.0, high=300.0, example="0 K")
+    ] = 0.0
+    subcooling: Annotated[
+        float, Stated("temperature_difference", "Subcooling of the condensate", low=0.0, high=150.0, example="0 K")
+    ] = 0.0
+
+
+class SteamFluid(Input):
+    """Condensing steam, saturated or slightly superheated."""
+
+    tag_name: ClassVar[str] = "steam"
+    steam: SteamState
+
+    def spec(self, atmosphere: float) -> fluids.Spec:
+        p = absolute(self.steam.p, atmosphere)
+        return fluids.Steam(p, float(self.steam.superheat), float(self.steam.subcooling))
+
+
+class TableFluid(Input):
+    """A fluid by the user's own property table."""
+
+    tag_name: ClassVar[str] = "table"
+    name: Annotated[str, Words("Name", 80)]
+    table: Annotated[tuple[TableRow, ...], Field(min_length=2, max_length=40)]
+
+    def spec(self, atmosphere: float) -> fluids.Spec:
+        rows = sorted(self.table, key=lambda row: row.T)
+        return fluids.Table(
+            self.name,
+            tuple(fluids.TablePoint(float(r.T), float(r.rho), float(r.cp), float(r.k), float(r.mu)) for r in rows),
+        )
+
+    def problems(self) -> Iterator[Problem]:
+        temperatures = [float(row.T) for row in self.table]
+        if len(set(temperatures)) < len(temperatures):
+            yield Problem(path="table", says="gives the same temperature twice; each row needs a temperature of its own")
+
+
+class ConstantFluid(Input):
+    """A fluid by constant properties as printed on a sheet."""
+
+    tag_name: ClassVar[str] = "constant"
+    name: Annotated[str, Words("Name", 80)]
+    constant: Constants
+
+    def spec(self, atmosphere: float) -> fluids.Spec:
+        c = self.constant
+        return fluids.Constant(self.name, float(c.rho), float(c.cp), float(c.k), float(c.mu))
+
+
+FLUID_TAGS = ("pure", "solution", "steam", "table", "constant")
+
+
+def _fluid_tag(given: Any) -> str | None:
+    if isinstance(given, Input):
+        return str(getattr(given, "tag_name", ""))
+    if isinstance(given, dict):
+        return next((tag for tag in FLUID_TAGS[1:] if tag in given), "pure" if "name" in given else None)
+    return None
+
+
+def _named(given: Any) -> Any:
+    return {"name": given} if isinstance(given, str) else given
+
+
+FluidInput = Annotated[
+    Annotated[PureFluid, Tag("pure")]
+    | Annotated[SolutionFluid, Tag("solution")]
+    | Annotated[SteamFluid, Tag("steam")]
+    | Annotated[TableFluid, Tag("table")]
+    | Annotated[ConstantFluid, Tag("constant")],
+    Discriminator(
+        _fluid_tag,
+        custom_error_type="union_tag_invalid",
+        custom_error_message="is not a fluid",
+        custom_error_context={
+            "says": 'is not a fluid; allowed is a name such as "Water", {"solution", "mass_fraction"}, '
+            '{"steam"}, {"name", "table"} or {"name", "constant"}'
+        },
+    ),
+    BeforeValidator(_named),
+]
+
+PRESSURE = ("pressure_gauge", "pressure_absolute")
+
+
+def absolute(p: float, atmosphere: float) -> float:
+    """Absolute pressure [Pa] of a stated one, which is gauge when its unit says so."""
+    gauge = isinstance(p, Figure) and p.quantity == "pressure_gauge"
+    return float(p) + atmosphere if gauge else float(p)
+
+
+class Stream(Input):
+    """One fluid on its way through the exchanger."""
+
+    fluid: FluidInput
+    flow: Annotated[
+        float | None,
+        Stated(
+            ("mass_flow", "volume_flow"),
+            "Flow",
+            above=0.0,
+            high=1e5,
+            help="By mass, or by volume at the inlet temperature and pressure.",
+            example="42 m3/h",
+        ),
+    ] = None
+    T_in: Annotated[
+        float | None, Stated("temperature", "Inlet temperature", low=50.0, high=1500.0, example="27 degC")
+    ] = None
+    p_in: Annotated[
+        float | None,
+        Stated(PRESSURE, "Inlet pressure", low=-ATMOSPHERE, high=1e8, example="4.2 barg"),
+    ] = None
+    T_out: Annotated[
+        float | None,
+        Stated("temperature", "Required outlet temperature", low=50.0, high=1500.0, example="52 degC"),
+    ] = None
+    R_fouling: Annotated[
+        float,
+        Stated(
+            "fouling_resistance",
+            "Fouling resistance",
+            low=0.0,
+            high=0.1,
+            help="On this side's own surface.",
+            assumed="no fouling, since none is stated",
+            example="0.00018 m2K/W",
+        ),
+    ] = 0.0
+    dp_allowed: Annotated[
+        float | None,
+        Stated("pressure_difference", "Allowed pressure drop", above=0.0, high=1e7, example="70 kPa"),
+    ] = None
+
+    @property
+    def condenses(self) -> bool:
+        return isinstance(self.fluid, SteamFluid)
+
+    def problems(self) -> Iterator[Problem]:
+        for problem in self.fluid.problems():
+            yield problem.under("fluid")
+        if self.condenses:
+            for name in ("T_in", "p_in", "T_out"):
+                if getattr(self, name) is not None:
+                    yield Problem(path=name, says="is not stated for steam: its pressure and superheat decide it")
+            return
+        for name in ("flow", "T_in", "p_in"):
+            if getattr(self, name) is None:
+                yield Problem(path=name, says="is missing")
+
+
+class Limits(Input):
+    """What the equipment may see. Every one is optional; a rule whose limit is not stated says so."""
+
+    inside_design_pressure: Annotated[float | None, Stated(PRESSURE, "Design pressure, inside", high=1e8)] = None
+    outside_design_pressure: Annotated[float | None, Stated(PRESSURE, "Design pressure, outside", high=1e8)] = None
+    inside_test_pressure: Annotated[float | None, Stated(PRESSURE, "Test pressure, inside", high=1e8)] = None
+    outside_test_pressure: Annotated[float | None, Stated(PRESSURE, "Test pressure, outside", high=1e8)] = None
+    inside_design_temperature: Annotated[float | None, Stated("temperature", "Design temperature, inside")] = None
+    outside_design_temperature: Annotated[float | None, Stated("temperature", "Design temperature, outside")] = None
+    minimum_metal_temperature: Annotated[float | None, Stated("temperature", "Minimum metal temperature")] = None
+    inside_wall_T_max: Annotated[
+        float | None,
+        Stated("temperature", "Highest wall temperature, inside", help="Scaling, coking, cracking or film limit."),
+    ] = None
+    outside_wall_T_max: Annotated[float | None, Stated("temperature", "Highest wall temperature, outside")] = None
+    inside_wall_T_min: Annotated[
+        float | None, Stated("temperature", "Lowest wall temperature, inside", help="Pour point, wax, freezing.")
+    ] = None
+    outside_wall_T_min: Annotated[float | None, Stated("temperature", "Lowest wall temperature, outside")] = None
+    inside_velocity_max: Annotated[float | None, Stated("velocity", "Highest velocity, inside", above=0.0)] = None
+    outside_velocity_max: Annotated[float | None, Stated("velocity", "Highest velocity, outside", above=0.0)] = None
+
+
+EXCHANGERS: dict[str, type[Input]] = {"double-pipe": DoublePipe}
+
+
+def _exchanger_tag(given: Any) -> str | None:
+    tag = given.get("type") if isinstance(given, dict) else getattr(given, "type", None)
+    return tag if isinstance(tag, str) and tag in EXCHANGERS else None
+
+
+class Case(Input):
+    """One exchanger in one service, as stated by the user."""
+
+    format: Annotated[str, Choice("Format", ("countercheck-case",))] = "countercheck-case"
+    version: int = 1
+    tag: Annotated[str, Words("Tag", 60)] = ""
+    service: Annotated[str, Words("Service", 200)] = ""
+    plant: Annotated[str, Words("Plant", 200)] = ""
+    revision: Annotated[str, Words("Revision", 40)] = ""
+    prepared_by: Annotated[str, Words("Prepared by", 80)] = ""
+    teaches: Annotated[str, Words("What the case teaches", 600, lines=True)] = ""
+    notes: Annotated[str, Words("Notes", 4000, lines=True)] = ""
+    atmosphere: Annotated[
+        float,
+        Stated(
+            "pressure_absolute",
+            "Atmospheric pressure",
+            low=5e4,
+            high=1.2e5,
+            help="Added to gauge pressures.",
+            assumed="standard atmosphere",
+            example="101.325 kPa a",
+        ),
+    ] = ATMOSPHERE
+    inside: Stream
+    outside: Stream
+    exchanger: DoublePipe
+    limits: Limits = Limits()
+
+    def stream(self, side: Side) -> Stream:
+        return self.inside if side == "inside" else self.outside
+
+    @property
+    def hot(self) -> Side:
+        return "inside" if self.T_in("inside") > self.T_in("outside") else "outside"
+
+    @property
+    def cold(self) -> Side:
+        return "outside" if self.hot == "inside" else "inside"
+
+    def p_in(self, side: Side) -> float:
+        """Absolute inlet pressure [Pa]."""
+        stream = self.stream(side)
+        if isinstance(stream.fluid, SteamFluid):
+            return absolute(stream.fluid.steam.p, self.atmosphere)
+        assert stream.p_in is not None
+        return absolute(stream.p_in, self.atmosphere)
+
+    def T_in(self, side: Side) -> float:
+        """Inlet temperature [K]."""
+        stream = self.stream(side)
+        if isinstance(stream.fluid, SteamFluid):
+            return fluids.saturation(self.p_in(side)).T_sat + float(stream.fluid.steam.superheat)
+        assert stream.T_in is not None
+        return float(stream.T_in)
+
+    def fluid(self, side: Side) -> fluids.Fluid:
+        """The side's fluid at its inlet pressure. FluidError with a sentence where it cannot be offered."""
+        return fluids.fluid_at(self.stream(side).fluid.spec(self.atmosphere), self.p_in(side), self.T_in(side))
+
+    def flow(self, side: Side) -> float | None:
+        """Mass flow [kg/s]; None for steam whose flow is solved for."""
+        flow = self.stream(side).flow
+        if isinstance(flow, Figure) and flow.quantity == "volume_flow":
+            return float(flow) * float(self.fluid(side).at(np.asarray(self.T_in(side))).rho)
+        return None if flow is None else float(flow)
+
+    @property
+    def input_hash(self) -> str:
+        """Over the canonical SI values at 9 digits, so that the units a figure was typed in leave it unchanged."""
+        text = json.dumps(canonical(self), sort_keys=True, ensure_ascii=True)
+        return hashlib.sha256(text.encode()).hexdigest()[:16]
+
+    def problems(self) -> Iterator[Problem]:
+        sound = True
+        for side in SIDES:
+            for problem in self.stream(side).problems():
+                sound = False
+                yield problem.under(side)
+        for problem in self.exchanger.problems():
+            yield problem.under("exchanger")
+        if sound:
+            yield from stream_problems(self.inside, self.outside, float(self.atmosphere))
+
+
+def stream_problems(inside: Stream, outside: Stream, atmosphere: float) -> Iterator[Problem]:
+    """What does not go together between two streams that are each sound: phases at the inlets, temperatures."""
+    T_in: dict[Side, float] = {}
+    streams: dict[Side, Stream] = {"inside": inside, "outside": outside}
+    for side, stream in streams.items():
+        try:
+            if isinstance(stream.fluid, SteamFluid):
+                saturation = fluids.saturation(absolute(stream.fluid.steam.p, atmosphere))
+                T_in[side] = saturation.T_sat + float(stream.fluid.steam.superheat)
+                continue
+            assert stream.T_in is not None and stream.p_in is not None
+            T_in[side] = float(stream.T_in)
+            p = absolute(stream.p_in, atmosphere)
+            if p <= 0:
+                yield Problem(path=f"{side}.p_in", says=f'"{_text(stream.p_in)}" is below a perfect vacuum')
+                continue
+            fluid = fluids.fluid_at(stream.fluid.spec(atmosphere), p, T_in[side])
+            trouble = fluid.problem(T_in[side], "at the inlet")
+            if trouble:
+                yield Problem(path=f"{side}.T_in", says=trouble)
+        except fluids.FluidError as error:
+            yield Problem(path=f"{side}.fluid", says=str(error))
+    if len(T_in) < 2:
+        return
+    if abs(T_in["inside"] - T_in["outside"]) < 1e-6:
+        yield Problem(
+            path="outside.T_in",
+            says=f"both inlets are at {T_in['outside'] - 273.15:.6g} °C, so no heat flows; "
+            "allowed are two different inlet temperatures",
+        )
+        return
+    for side, stream in streams.items():
+        other: Side = "outside" if side == "inside" else "inside"
+        if stream.T_out is None:
+            continue
+        low, high = sorted((T_in["inside"], T_in["outside"]))
+        if not low < stream.T_out < high:
+            yield Problem(
+                path=f"{side}.T_out",
+                says=f'"{_text(stream.T_out)}" is against the second law: the outlet must lie between the two inlets, '
+                f"{low - 273.15:.4g} and {high - 273.15:.4g} °C ({side} and {other})",
+            )
+        elif (stream.T_out - T_in[side]) * (T_in[other] - T_in[side]) <= 0:
+            yield Problem(path=f"{side}.T_out", says=f'"{_text(stream.T_out)}" lies on the wrong side of its inlet')
+
+
+def _text(figure: float) -> str:
+    return figure.text if isinstance(figure, Figure) and figure.text else f"{float(figure):.6g}"
+
+
+def canonical(part: Any) -> Any:
+    """The stated values as plain JSON: figures in SI at 9 digits with their quantity, names as they are."""
+    if isinstance(part, Input):
+        return {name: canonical(getattr(part, name)) for name in type(part).model_fields if name != "format"}
+    if isinstance(part, (tuple, list)):
+        return [canonical(item) for item in part]
+    if isinstance(part, float):
+        value = f"{float(part):.9g}"
+        if isinstance(part, Figure):
+            kind = part.quantity if part.quantity in ("volume_flow", "pressure_gauge") else ""
+            return [value, kind, None if part.sd is None else f"{part.sd:.9g}"]
+        return [value, "", None]
+    return part

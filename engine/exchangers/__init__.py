@@ -1,0 +1,129 @@
+"""What an exchanger must offer to be rated, and the register of types.
+
+Geometry speaks of the inside and the outside of the tube wall. The leading axis of every array is the operating
+point (P), the second the cell (n). An exchanger receives `Properties`, never a fluid's name.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+from typing import Any, Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from engine.correlations import Array, Correlation, Excursion
+from engine.exchangers.layout import Layout
+from engine.fluids import Properties
+from engine.stated import Problem, Side
+
+REGIMES = ("laminar", "transitional", "turbulent", "condensing")
+
+
+@dataclass(frozen=True, kw_only=True)
+class Cells:
+    """How an exchanger is cut for the march, or left whole for a mean-property rating.
+
+    Cells are numbered in the order in which the inside fluid meets them. `start` and `end` give, per side, where in its
+    own leg or pass a cell begins and ends [m] in that side's direction; `leg` the length over which the entrance of
+    that side develops.
+    """
+
+    layout: Layout
+    start: Mapping[Side, Array]
+    end: Mapping[Side, Array]
+    leg: Mapping[Side, float]
+
+
+@dataclass(frozen=True, kw_only=True)
+class Flowing:
+    """One side's fluid in every cell: what a film or a drop is computed from."""
+
+    flow: Array
+    """(P,) mass flow of the whole stream [kg/s]."""
+    T: Array
+    """(P, n) bulk temperature [K]."""
+    T_wall: Array
+    """(P, n) temperature of the surface that the fluid touches [K]."""
+    bulk: Properties
+    mu_wall: Array
+    Pr_wall: Array
+    gas: bool
+    heated: NDArray[np.bool_]
+    """(P, 1) True where this side is the cold one."""
+    R_fouling: Array
+    """(P,) on this side's own surface [m²K/W]."""
+    tubes_plugged: Array
+    """(P,) per shell."""
+    factors: Mapping[str, Array] = field(default_factory=dict)
+    """Relation name to a (P,) multiplier: how the scatter of a relation is propagated."""
+
+    def factors_of(self, relations: Sequence[Correlation]) -> tuple[Array, ...] | None:
+        """The multipliers of these relations, each (P, 1); None where none is propagated."""
+        if not any(relation.name in self.factors for relation in relations):
+            return None
+        one = np.ones((np.size(self.flow), 1))
+        return tuple(self.factors[r.name][:, None] if r.name in self.factors else one for r in relations)
+
+    def factor_of(self, relation: Correlation) -> Array | float:
+        """The (P,) multiplier of one relation; 1 where none is propagated."""
+        return self.factors.get(relation.name, 1.0)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Film:
+    """One side's film in every cell. `h` refers to this side's own bare surface."""
+
+    h: Array
+    Re: Array
+    Pr: Array
+    velocity: Array
+    regime: NDArray[np.int_]
+    """Index into REGIMES."""
+    relations: Sequence[Correlation]
+    """The relation that stands behind each regime."""
+
+
+class Exchanger(Protocol):
+    """The duties of an exchanger type. Arrays as in `Flowing`; U and resistances on the outside bare tube area."""
+
+    @property
+    def area(self) -> float:
+        """Outside bare tube area of the whole exchanger [m²]."""
+
+    @property
+    def area_ratio(self) -> float:
+        """Outside area over inside area of the tube."""
+
+    def cells(self, fineness: int = 1) -> Cells: ...
+    def whole(self) -> Cells:
+        """One cell that stands for the whole exchanger."""
+
+    def film(self, side: Side, cells: Cells, at: Flowing) -> Film: ...
+    def second_opinions(self, side: Side, cells: Cells, at: Flowing) -> dict[str, Array]:
+        """h by other published relations, by name, at mean conditions (P,)."""
+
+    def excursions(self, side: Side, cells: Cells, at: Flowing, film: Film) -> tuple[Excursion, ...]: ...
+    def drop(self, side: Side, cells: Cells, at: Flowing, film: Film) -> dict[str, Array]:
+        """Pressure drop by part, each (P,) [Pa]: between the stated nozzles or leg ends, without static head."""
+
+    def drop_relation(self, side: Side) -> Correlation:
+        """The relation whose scatter the drop carries."""
+
+    def wall_resistance(self, T_metal: Array) -> Array:
+        """Of the tube wall [m²K/W], at the metal temperature."""
+
+    def fouling_resistance(self, side: Side, R: Array) -> Array:
+        """A stated resistance on the side's own surface, seen on the outside bare area."""
+
+    def effectiveness(self, NTU: Array, Cr: Array, inside_is_min: Array) -> Array | str:
+        """By the exact relation of the arrangement, or the reason why there is none."""
+
+    def driving_force(self, T_in: Mapping[Side, Array], T_out: Mapping[Side, Array]) -> tuple[Array, Array] | str:
+        """LMTD of the arrangement's ends and the factor F at these terminal temperatures, or the reason why not."""
+
+    def problems(self) -> Any: ...
+
+
+__all__ = ["REGIMES", "Cells", "Exchanger", "Film", "Flowing", "Layout", "Problem", "Properties", "Side"]

@@ -1,0 +1,454 @@
+"""Double-pipe exchanger: one inner pipe in one outer pipe, legs in series, banks in parallel, plain or finned."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from functools import cached_property
+from typing import Annotated, ClassVar, Literal
+
+import numpy as np
+from pydantic import Field
+
+from engine import effectiveness as exact
+from engine.correlations import Array, Correlation, Excursion, annulus, inside_tubes, losses
+from engine.exchangers import Cells, Film, Flowing, layout, standard_sizes
+from engine.stated import Choice, Count, Input, Problem, Side, Stated, Words
+
+LENGTH = ("length",)
+
+
+def length(name: str, example: str, high: float = 100.0, assumed: str = "", help: str = "") -> Stated:
+    return Stated("length", name, help=help, above=0.0, high=high, assumed=assumed, example=example)
+
+
+class Pipe(Input):
+    """A pipe by nominal size and schedule, or by its two diameters."""
+
+    nps: Annotated[str | None, Words("Nominal size", 12, help='Nominal pipe size in inches, such as "2".')] = None
+    schedule: Annotated[str | None, Words("Schedule", 12)] = None
+    od: Annotated[float | None, length("Outside diameter", "60.3 mm", 5.0)] = None
+    id: Annotated[float | None, length("Inside diameter", "52.5 mm", 5.0)] = None
+
+    @cached_property
+    def diameters(self) -> tuple[float, float]:
+        """Outside and inside diameter [m]."""
+        if self.nps is not None and self.schedule is not None:
+            return standard_sizes.pipe(self.nps, self.schedule)
+        assert self.od is not None and self.id is not None
+        return float(self.od), float(self.id)
+
+    def problems(self) -> Iterator[Problem]:
+        by_size = (self.nps is not None, self.schedule is not None)
+        by_diameter = (self.od is not None, self.id is not None)
+        if any(by_size) and any(by_diameter):
+            yield Problem(path="", says="gives both a nominal size and diameters; allowed is one of the two")
+        elif not all(by_size) and not all(by_diameter):
+            yield Problem(path="", says='needs either "nps" and "schedule", or "od" and "id"')
+        elif all(by_size):
+            try:
+                standard_sizes.pipe(str(self.nps), str(self.schedule))
+            except ValueError as error:
+                yield Problem(path="", says=str(error))
+        elif self.od is not None and self.id is not None and self.id >= self.od:
+            yield Problem(path="id", says="is not smaller than the outside diameter; a pipe has a wall")
+
+
+class Banks(Input):
+    inside: Annotated[int, Count("Inside branches", 1, 24, assumed="the inside fluid is not split")] = 1
+    outside: Annotated[int, Count("Outside branches", 1, 24, assumed="the outside fluid is not split")] = 1
+
+    def problems(self) -> Iterator[Problem]:
+        if self.inside != self.outside and 1 not in (self.inside, self.outside):
+            yield Problem(
+                path="outside",
+                says=f"{self.outside} beside {self.inside} inside: a side visits all banks in turn (1) or is split "
+                f"equally over all of them ({max(self.inside, self.outside)})",
+            )
+
+
+class Factors(Input):
+    """Multipliers on a side's own calculation: inserts, low fins, or a baseline calibrated on a clean test."""
+
+    inside: Annotated[float, Stated("dimensionless", "Inside", above=0.0, high=10.0, example="1.0")] = 1.0
+    outside: Annotated[float, Stated("dimensionless", "Outside", above=0.0, high=10.0, example="1.0")] = 1.0
+
+
+class Fins(Input):
+    """Longitudinal fins on the outside of the inner pipe."""
+
+    count: Annotated[int, Count("Fins", 1, 200)]
+    height: Annotated[float, length("Fin height", "12.7 mm", 0.2)]
+    thickness: Annotated[float, length("Fin thickness", "0.9 mm", 0.05)]
+    conductivity: Annotated[
+        float, Stated("conductivity", "Fin conductivity", above=0.0, high=500.0, example="50 W/mK")
+    ]
+
+
+class DoublePipe(Input):
+    """The stated dimensions of a double pipe, and its films and drops.
+
+    Legs in series within a bank, banks in parallel; in a bank the two fluids run counter or co-current in every leg.
+    """
+
+    type: Literal["double-pipe"] = "double-pipe"
+    arrangement: Annotated[
+        str,
+        Choice("Arrangement", ("counter", "co-current"), assumed="counter-current, the usual piping (common practice)"),
+    ] = "counter"
+    inner_pipe: Pipe
+    outer_pipe: Pipe
+    inner_pipes: Annotated[int, Count("Inner pipes in one outer pipe", 1, 100, assumed="one inner pipe")] = 1
+    leg_length: Annotated[float, length("Leg length", "6 m", 100.0, help="One straight leg, effective for heat.")]
+    legs_in_series: Annotated[int, Count("Legs in series", 1, 200, help="Two a hairpin.")]
+    banks_in_parallel: Banks = Banks()
+    material: Annotated[str | None, Words("Inner pipe material", 60)] = None
+    wall_conductivity: Annotated[
+        float | None, Stated("conductivity", "Wall conductivity", above=0.0, high=500.0, example="50 W/mK")
+    ] = None
+    inside_roughness: Annotated[
+        float,
+        Stated(
+            "length",
+            "Roughness of the inner pipe's bore",
+            low=0.0,
+            high=5e-3,
+            assumed="commercial steel pipe (common practice)",
+            example="0.045 mm",
+        ),
+    ] = losses.ROUGHNESS_STEEL
+    outside_roughness: Annotated[
+        float,
+        Stated(
+            "length",
+            "Roughness of the annulus",
+            low=0.0,
+            high=5e-3,
+            assumed="commercial steel pipe (common practice)",
+            example="0.045 mm",
+        ),
+    ] = losses.ROUGHNESS_STEEL
+    fins: Fins | None = None
+    bend_length: Annotated[
+        float,
+        Stated(
+            "length",
+            "Pipe length in one return bend",
+            low=0.0,
+            high=20.0,
+            help="Counts for friction of the inside fluid, not for heat.",
+            assumed="no wall friction in return bends beyond their loss coefficient",
+            example="0.3 m",
+        ),
+    ] = 0.0
+    inside_nozzle_id: Annotated[float | None, length("Inside nozzle bore", "52 mm", 3.0)] = None
+    outside_nozzle_id: Annotated[float | None, length("Outside nozzle bore", "52 mm", 3.0)] = None
+    deposit_conductivity: Annotated[
+        float | None,
+        Stated(
+            "conductivity",
+            "Deposit conductivity",
+            above=0.0,
+            high=50.0,
+            help="When stated, fouling narrows the flow area.",
+            example="1 W/mK",
+        ),
+    ] = None
+    heat_loss: Annotated[
+        float,
+        Stated(
+            "heat_flow",
+            "Heat loss of the outside stream to the surroundings",
+            low=-1e9,
+            high=1e9,
+            assumed="no loss to the surroundings",
+            example="2 kW",
+        ),
+    ] = 0.0
+    film_factor: Factors = Factors()
+    dp_factor: Factors = Factors()
+
+    title: ClassVar[str] = "Double pipe"
+    side_names: ClassVar[Mapping[Side, str]] = {"inside": "Inner pipe", "outside": "Annulus"}
+
+    # --- geometry ---------------------------------------------------------------------------------------------------
+
+    @cached_property
+    def tube_od(self) -> float:
+        return self.inner_pipe.diameters[0]
+
+    @cached_property
+    def tube_id(self) -> float:
+        return self.inner_pipe.diameters[1]
+
+    @cached_property
+    def shell_id(self) -> float:
+        """Bore of the outer pipe [m]."""
+        return self.outer_pipe.diameters[1]
+
+    @property
+    def banks(self) -> int:
+        return max(self.banks_in_parallel.inside, self.banks_in_parallel.outside)
+
+    def branches(self, side: Side) -> int:
+        """Into how many equal streams a side is split."""
+        return self.banks_in_parallel.inside if side == "inside" else self.banks_in_parallel.outside
+
+    def legs_on_path(self, side: Side) -> int:
+        """Legs that one particle of the side's fluid passes."""
+        return self.legs_in_series * self.banks // self.branches(side)
+
+    @property
+    def area(self) -> float:
+        return float(np.pi * self.tube_od * self.leg_length * self.legs_in_series * self.banks)
+
+    @property
+    def area_ratio(self) -> float:
+        return self.tube_od / self.tube_id
+
+    @cached_property
+    def finned(self) -> annulus.FinnedAnnulus | None:
+        if self.fins is None:
+            return None
+        return annulus.FinnedAnnulus(
+            Do=self.shell_id,
+            Di=self.tube_od,
+            count=self.fins.count,
+            height=float(self.fins.height),
+            thickness=float(self.fins.thickness),
+            k=float(self.fins.conductivity),
+        )
+
+    def cells(self, fineness: int = 1) -> Cells:
+        """The legs cut into equal cells; `fineness` multiplies their number."""
+        legs = self.legs_in_series * (1 if self._both_split else self.banks)
+        return self._cut(max(2, -(-24 // legs)) * fineness)
+
+    def whole(self) -> Cells:
+        return self._cut(1, legs=1, banks=1)
+
+    @property
+    def _both_split(self) -> bool:
+        return self.branches("inside") == self.branches("outside")
+
+    def _cut(self, per_leg: int, legs: int | None = None, banks: int | None = None) -> Cells:
+        legs = legs or self.legs_in_series
+        # Banks over which both fluids are split run alike: one of them stands for all.
+        banks = banks or (1 if self._both_split else self.banks)
+        order = layout.banks(
+            legs * per_leg,
+            banks,
+            arrangement="counter" if self.arrangement == "counter" else "co-current",
+            inside="split" if self.branches("inside") > 1 else "in turn",
+            outside="split" if self.branches("outside") > 1 else "in turn",
+            legs=legs,
+        )
+        leg = float(self.leg_length)
+        edges = np.linspace(0.0, leg, per_leg + 1)
+        start, end = np.tile(edges[:-1], legs * banks), np.tile(edges[1:], legs * banks)
+        from_outside = (leg - end, leg - start) if self.arrangement == "counter" else (start, end)
+        return Cells(
+            layout=order,
+            start={"inside": start, "outside": from_outside[0]},
+            end={"inside": end, "outside": from_outside[1]},
+            leg={"inside": leg, "outside": leg},
+        )
+
+    # --- films ------------------------------------------------------------------------------------------------------
+
+    def _bore(self, R_inside: Array) -> Array:
+        """(P, 1) free bore of the inner pipe, narrowed by its deposit when the deposit's conductivity is stated."""
+        if self.deposit_conductivity is None:
+            return np.full((np.size(R_inside), 1), self.tube_id)
+        return (self.tube_id * np.exp(-2 * self.deposit_conductivity * R_inside / self.tube_id))[:, None]
+
+    def _core(self, R_outside: Array) -> Array:
+        """(P, 1) diameter of the annulus' inner wall, grown by its deposit when that conductivity is stated."""
+        if self.deposit_conductivity is None or self.finned is not None:
+            return np.full((np.size(R_outside), 1), self.tube_od)
+        return (self.tube_od * np.exp(2 * self.deposit_conductivity * R_outside / self.tube_od))[:, None]
+
+    def _passage(self, side: Side, at: Flowing) -> tuple[Array, Array, Array]:
+        """(P, 1) flow area [m²], hydraulic diameter [m] and diameter of the surface that the fluid touches [m]."""
+        if side == "inside":
+            d = self._bore(at.R_fouling)
+            return np.pi / 4 * d**2, d, d
+        if self.finned is not None:
+            one = np.ones((np.size(at.flow), 1))
+            return self.finned.flow_area * one, self.finned.d_h * one, self.tube_od * one
+        core = self._core(at.R_fouling)
+        return np.pi / 4 * (self.shell_id**2 - core**2), self.shell_id - core, core
+
+    @staticmethod
+    def _wall(at: Flowing) -> inside_tubes.Wall:
+        return inside_tubes.Wall(
+            mu=at.mu_wall / at.bulk.mu, Pr=at.Pr_wall / at.bulk.Pr, T=at.T_wall / at.T, gas=at.gas
+        )
+
+    def film(self, side: Side, cells: Cells, at: Flowing) -> Film:
+        area, d_h, surface = self._passage(side, at)
+        G = at.flow[:, None] / self.branches(side) / area
+        Re = G * d_h / at.bulk.mu
+        Pr = at.bulk.Pr
+        wall = self._wall(at)
+        x1, x2 = cells.start[side], cells.end[side]
+        if side == "inside" or self.finned is not None:
+            relations = inside_tubes.TUBE_RELATIONS if side == "inside" else annulus.FINNED_RELATIONS
+            factors = at.factors_of(relations)
+            Nu, regime = inside_tubes.nusselt_tube(Re, Pr, d_h, x1, x2, wall=wall, factors=factors)
+        else:
+            relations = annulus.ANNULUS_RELATIONS
+            factors = at.factors_of(relations)
+            ratio = surface / self.shell_id
+            Nu, regime = annulus.nusselt_annulus(Re, Pr, d_h, ratio, x1, x2, wall=wall, factors=factors)
+        own = self.tube_id if side == "inside" else self.tube_od
+        h = Nu * at.bulk.k / d_h * (surface / own) * getattr(self.film_factor, side)
+        if side == "outside" and self.finned is not None:
+            h = self.finned.on_bare_area(h)
+        return Film(h=h, Re=Re, Pr=Pr, velocity=G / at.bulk.rho, regime=regime, relations=relations)
+
+    def second_opinions(self, side: Side, cells: Cells, at: Flowing) -> dict[str, Array]:
+        area, d_h, _ = self._passage(side, at)
+        Re = at.flow[:, None] / self.branches(side) / area * d_h / at.bulk.mu
+        mu_ratio = at.mu_wall / at.bulk.mu
+        L = cells.leg[side]
+        relations = inside_tubes if side == "inside" or self.finned is not None else annulus
+        if relations is annulus:
+            Nu = annulus.second_opinions(Re, at.bulk.Pr, d_h, self.tube_od / self.shell_id, L, mu_ratio, at.heated)
+        else:
+            Nu = inside_tubes.second_opinions(Re, at.bulk.Pr, d_h, L, mu_ratio, at.heated)
+        return {name: (value * at.bulk.k / d_h).mean(axis=1) for name, value in Nu.items()}
+
+    def excursions(self, side: Side, cells: Cells, at: Flowing, film: Film) -> tuple[Excursion, ...]:
+        _, d_h, surface = self._passage(side, at)
+        wall = self._wall(at)
+        if side == "inside" or self.finned is not None:
+            return inside_tubes.excursions_tube(film.Re, film.Pr, d_h, cells.leg[side], wall=wall)
+        ratio = surface / self.shell_id
+        return annulus.excursions_annulus(film.Re, film.Pr, d_h, ratio, cells.leg[side], wall=wall)
+
+    # --- walls ------------------------------------------------------------------------------------------------------
+
+    def wall_resistance(self, T_metal: Array) -> Array:
+        k = self.metal_conductivity(T_metal)
+        return self.tube_od * np.log(self.tube_od / self.tube_id) / (2 * k)
+
+    def metal_conductivity(self, T: Array) -> Array:
+        if self.wall_conductivity is not None:
+            return np.full_like(T, float(self.wall_conductivity))
+        return standard_sizes.conductivity(str(self.material), T)
+
+    def fouling_resistance(self, side: Side, R: Array) -> Array:
+        if side == "inside":
+            return R * self.area_ratio
+        return R if self.finned is None else R * self.finned.bare_area / self.finned.wetted_area
+
+    # --- drops ------------------------------------------------------------------------------------------------------
+
+    def drop(self, side: Side, cells: Cells, at: Flowing, film: Film) -> dict[str, Array]:
+        area, d_h, surface = self._passage(side, at)
+        roughness = float(self.inside_roughness if side == "inside" else self.outside_roughness) / d_h
+        if side == "inside" or self.finned is not None:
+            f = losses.friction_churchill(film.Re, roughness)
+        else:
+            f = annulus.friction_annulus(film.Re, surface / self.shell_id, roughness)
+        if not at.gas:
+            f = f * losses.wall_factor(film.Re, at.mu_wall / at.bulk.mu, at.heated)
+        head = at.bulk.rho * film.velocity**2 / 2
+        per_metre = f / d_h * head
+        legs = self.legs_on_path(side)
+        bends = max(legs - 1, 0)
+        length = legs * float(self.leg_length)
+        mean_head = head.mean(axis=1)
+        friction = per_metre.mean(axis=1) * length
+        returns = np.zeros_like(friction)
+        if side == "inside":
+            friction = friction + per_metre.mean(axis=1) * bends * float(self.bend_length)
+            returns = losses.RETURN_BEND.heads * bends * mean_head
+            ends = losses.TUBE_ENTRANCE.heads * head[:, 0] + losses.TUBE_EXIT.heads * head[:, -1]
+        else:
+            ends = losses.ANNULUS_HAIRPIN.heads * -(-legs // 2) * mean_head
+        if at.gas:
+            # A gas also pays for its acceleration as density falls along the way.
+            G = at.flow / self.branches(side) / area[:, 0]
+            first, last = (0, -1) if side == "inside" or self.arrangement != "counter" else (-1, 0)
+            ends = ends + G**2 * (1 / at.bulk.rho[:, last] - 1 / at.bulk.rho[:, first])
+        parts = {"friction": friction, "returns": returns, "entrance_exit": ends}
+        nozzle = self.inside_nozzle_id if side == "inside" else self.outside_nozzle_id
+        parts["nozzles"] = np.zeros_like(friction)
+        if nozzle is not None:
+            v = at.flow / (at.bulk.rho.mean(axis=1) * np.pi / 4 * float(nozzle) ** 2)
+            heads = losses.NOZZLE_IN.heads + losses.NOZZLE_OUT.heads
+            parts["nozzles"] = heads * at.bulk.rho.mean(axis=1) * v**2 / 2
+        factor = getattr(self.dp_factor, side) * at.factor_of(self.drop_relation(side))
+        return {name: part * factor for name, part in parts.items()}
+
+    def drop_relation(self, side: Side) -> Correlation:
+        return annulus.friction_annulus_relation if side == "outside" and self.finned is None else losses.churchill
+
+    # --- the whole --------------------------------------------------------------------------------------------------
+
+    def effectiveness(self, NTU: Array, Cr: Array, inside_is_min: Array) -> Array | str:
+        counter = self.arrangement == "counter"
+        if self._both_split:
+            return exact.effectiveness_counter(NTU, Cr) if counter else exact.effectiveness_cocurrent(NTU, Cr)
+        split_is_min = inside_is_min if self.branches("inside") > 1 else ~np.asarray(inside_is_min)
+        return exact.effectiveness_split_banks(NTU, Cr, self.banks, split_is_min=split_is_min, counter=counter)
+
+    def driving_force(self, T_in: Mapping[Side, Array], T_out: Mapping[Side, Array]) -> tuple[Array, Array] | str:
+        counter = self.arrangement == "counter"
+        if not self._both_split:
+            return "one fluid is split over the banks and the other visits them in turn: no single F is published here"
+        if counter:
+            ends = (T_in["inside"] - T_out["outside"], T_out["inside"] - T_in["outside"])
+        else:
+            ends = (T_in["inside"] - T_in["outside"], T_out["inside"] - T_out["outside"])
+        lmtd = exact.log_mean(np.abs(ends[0]), np.abs(ends[1]))
+        return lmtd, np.ones_like(lmtd)
+
+    def problems(self) -> Iterator[Problem]:
+        sound = True
+        for name in ("inner_pipe", "outer_pipe"):
+            for problem in getattr(self, name).problems():
+                sound = False
+                yield problem.under(name)
+        for problem in self.banks_in_parallel.problems():
+            yield problem.under("banks_in_parallel")
+        if self.inner_pipes != 1:
+            says = f"{self.inner_pipes} is not rated yet: only one inner pipe in an outer pipe is supported"
+            yield Problem(path="inner_pipes", says=says)
+        if (self.material is None) == (self.wall_conductivity is None):
+            says = 'one of "material" and "wall_conductivity" must be stated, not both and not neither'
+            yield Problem(path="material", says=says)
+        elif self.material is not None:
+            try:
+                standard_sizes.conductivity(self.material, np.asarray(300.0))
+            except ValueError as error:
+                yield Problem(path="material", says=str(error))
+        if not sound:
+            return
+        mm = 1e3
+        if self.tube_od >= self.shell_id:
+            yield Problem(
+                path="inner_pipe",
+                says=f"{self.tube_od * mm:.4g} mm outside does not fit into the outer pipe's bore of "
+                f"{self.shell_id * mm:.4g} mm",
+            )
+        elif self.fins is not None:
+            if self.tube_od + 2 * self.fins.height > self.shell_id:
+                says = (
+                    f"fins of {self.fins.height * mm:.4g} mm on {self.tube_od * mm:.4g} mm do not fit into the bore of "
+                    f"{self.shell_id * mm:.4g} mm"
+                )
+                yield Problem(path="fins.height", says=says)
+            if self.fins.count * self.fins.thickness >= 0.8 * np.pi * self.tube_od:
+                yield Problem(path="fins.count", says="fins of this thickness leave no bare wall between them")
+        for side in ("inside", "outside"):
+            rough = float(getattr(self, f"{side}_roughness"))
+            d = self.tube_id if side == "inside" else self.shell_id - self.tube_od
+            if rough > 0.05 * d:
+                yield Problem(
+                    path=f"{side}_roughness", says=f"is over 5 % of the passage of {d * mm:.4g} mm; allowed is up to that"
+                )
+
+
+__all__ = ["Banks", "DoublePipe", "Factors", "Field", "Fins", "Pipe"]
