@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from engine.exchangers.layout import Arrangement, Layout
+from engine.exchangers.layout import Arrangement, Layout, Through
 
 Array = NDArray[np.float64]
 
@@ -26,6 +26,19 @@ class Temperatures:
     """(P, n) from the inside to the outside fluid [W]."""
     inside_outlet: Array
     outside_outlet: Array
+
+
+def _phi(a: Array) -> Array:
+    """(1 - exp(-a))/a for a >= 0, 1 at a = 0."""
+    small = a < 1e-5
+    return np.where(small, 1 - a / 2, -np.expm1(-a) / np.where(small, 1.0, a))
+
+
+def _lead(n: Array) -> Array:
+    """1/n - 1/(exp(n) - 1), 1/2 at n = 0: how far an exponential rise over n runs on from its mean to its end."""
+    small = n < 1e-3
+    safe = np.where(small, 1.0, n)
+    return np.where(small, 0.5 - n / 12, 1 / safe + np.exp(-safe) / np.expm1(-safe))
 
 
 def _chain(arrangement: Arrangement, UA: Array, C_inside: Array, C_outside: Array) -> Temperatures:
@@ -65,6 +78,66 @@ def _chain(arrangement: Arrangement, UA: Array, C_inside: Array, C_outside: Arra
     )
 
 
+def _shell(layout: Layout, UA: Array, C_inside: Array, C_outside: Array) -> Temperatures:
+    """Solution of one unit of any layout for inlets 1 (inside) and 0 (outside); arrays (P, m).
+
+    The inside temperatures are eliminated along the paths; the unknowns are the outside rises of the bays. The mean
+    temperature of a bay is weighted between its inlet and its outlet as if the inside fluid were isothermal: second
+    order, and no bay overshoots however long it is.
+    """
+    P, m = UA.shape
+    n = len(layout.outside_links) - 1
+    C_bay = C_outside[:, np.unique(layout.bay, return_index=True)[1]]
+    ntu = UA / C_inside
+    stay = np.exp(-ntu)
+    gain = UA * _phi(ntu)
+    bay_rate = gain @ np.eye(n)[layout.bay]
+
+    # Affine in the bay means (columns 0 to n - 1) and the inside inlet (column n): cell entries and path exits,
+    # heat to each bay.
+    entry = np.empty((m, P, n + 1))
+    mixes = layout.inside_links[:, :-1] / layout.inside_links[:, :-1].sum(axis=0)
+    exits = np.zeros((len(layout.inside_links), P, n + 1))
+    exits[-1, :, n] = 1.0
+    heat = np.zeros((n, P, n + 1))
+    for p, path in enumerate(layout.inside_paths):
+        T = np.tensordot(mixes[:, p], exits, axes=1)
+        for c in path:
+            entry[c] = T
+            heat[layout.bay[c]] += gain[:, c, None] * T
+            T = T * stay[:, c, None]
+            T[:, layout.bay[c]] += 1 - stay[:, c]
+        exits[p] = T
+    heat[np.arange(n), :, np.arange(n)] -= bay_rate.T
+
+    mixed_from = layout.outside_links[:-1, :-1].T / layout.outside_links[:-1].sum(axis=1)[:, None]
+    exit_from_rises: Array = np.linalg.inv(np.eye(n) - mixed_from)
+    lead = _lead(bay_rate / C_bay)
+    M = heat / C_bay.T[:, :, None]
+    A = M[..., :n] * lead - M[..., :n] @ exit_from_rises
+    A[np.arange(n), :, np.arange(n)] += 1
+    rise: Array = np.linalg.solve(A.swapaxes(0, 1), M[..., n].T[..., None])[..., 0]
+    outside_exit = rise @ exit_from_rises.T
+    outside_mean = outside_exit - lead * rise
+    known = np.concatenate([outside_mean, np.ones((P, 1))], axis=1)
+    inside_entry = np.einsum("cpj,pj->pc", entry, known)
+    bay_mean = outside_mean[:, layout.bay]
+    inside_exit = bay_mean + (inside_entry - bay_mean) * stay
+    heat_cell = gain * (inside_entry - bay_mean)
+    ends = [path[-1] for path in layout.inside_paths]
+    return Temperatures(
+        inside_entry=inside_entry,
+        inside_exit=inside_exit,
+        inside_mean=bay_mean + (inside_entry - bay_mean) * _phi(ntu),
+        outside_entry=(outside_exit - rise)[:, layout.bay],
+        outside_exit=outside_exit[:, layout.bay],
+        outside_mean=bay_mean,
+        heat=heat_cell,
+        inside_outlet=inside_exit[:, ends] @ layout.inside_links[:-1, -1],
+        outside_outlet=outside_exit @ layout.outside_links[:-1, -1],
+    )
+
+
 def _met_by_units(layout: Layout, p_inside: Array, p_outside: Array) -> tuple[Array, Array]:
     """Temperatures with which both fluids enter each unit, for stream inlets 1 and 0; units along the last axis.
 
@@ -91,6 +164,10 @@ def _met_by_units(layout: Layout, p_inside: Array, p_outside: Array) -> tuple[Ar
     return T_inside, T_inside - D
 
 
+def _leaving(exits: Array, through: Through, last: int) -> Array:
+    return exits.mean(axis=-1) if through == "split" else exits[..., last]
+
+
 def temperatures(
     layout: Layout,
     UA: ArrayLike,
@@ -109,35 +186,35 @@ def temperatures(
     temperature of the bay: second order in the bay's length.
     """
     T_i, T_o = np.asarray(T_in_inside, dtype=float), np.asarray(T_in_outside, dtype=float)
-    points = np.broadcast_shapes(T_i.shape, T_o.shape, *(np.shape(x)[:-1] for x in (UA, C_inside, C_outside)))
+    cells = [np.asarray(x, dtype=float) for x in (UA, C_inside, C_outside)]
+    points = np.broadcast_shapes(T_i.shape, T_o.shape, *(x.shape[:-1] for x in cells))
+    shape = (*points, layout.n_cells)
 
-    def by_unit(x: ArrayLike) -> Array:
-        return np.broadcast_to(np.asarray(x, dtype=float), (*points, layout.n_cells)).reshape(*points, layout.units, -1)
+    def by_unit(x: Array) -> Array:
+        return np.broadcast_to(x, shape).reshape(-1, len(layout.bay))
 
-    UA, C_i, C_o = by_unit(UA), by_unit(C_inside * layout.inside_share), by_unit(C_outside * layout.outside_share)
-    assert layout.chain is not None
-    unit = _chain(layout.chain, UA, C_i, C_o)
-    met_inside, met_outside = _met_by_units(layout, 1 - unit.inside_outlet, unit.outside_outlet)
+    rates = by_unit(cells[0]), by_unit(cells[1] * layout.inside_share), by_unit(cells[2] * layout.outside_share)
+    unit = _chain(layout.chain, *rates) if layout.chain else _shell(layout, *rates)
+
+    inside_exit, outside_exit = (x.reshape(*points, -1) for x in (unit.inside_outlet, unit.outside_outlet))
+    inside_met, outside_met = _met_by_units(layout, 1 - inside_exit, outside_exit)
     span = (T_i - T_o)[..., None]
-    base = T_o[..., None] + met_outside * span
-    step = (met_inside - met_outside) * span
+    foot, height = T_o[..., None] + outside_met * span, (inside_met - outside_met) * span
 
-    def every(x: Array) -> Array:
-        return (base[..., None] + x * step[..., None]).reshape(*points, layout.n_cells)
+    def in_place(x: Array) -> Array:
+        placed: Array = foot.reshape(-1, 1) + x * height.reshape(-1, 1)
+        return placed.reshape(shape)
 
-    inside_outlets, outside_outlets = base + unit.inside_outlet * step, base + unit.outside_outlet * step
-    both_in_turn = layout.inside_units == layout.outside_units == "in turn"
-    outside_last = 0 if both_in_turn and layout.units_flow == "counter" else -1
+    inside_exit, outside_exit = foot + inside_exit * height, foot + outside_exit * height
+    opposed = layout.inside_units == layout.outside_units == "in turn" and layout.units_flow == "counter"
     return Temperatures(
-        inside_entry=every(unit.inside_entry),
-        inside_exit=every(unit.inside_exit),
-        inside_mean=every(unit.inside_mean),
-        outside_entry=every(unit.outside_entry),
-        outside_exit=every(unit.outside_exit),
-        outside_mean=every(unit.outside_mean),
-        heat=(unit.heat * step[..., None]).reshape(*points, layout.n_cells),
-        inside_outlet=inside_outlets.mean(axis=-1) if layout.inside_units == "split" else inside_outlets[..., -1],
-        outside_outlet=outside_outlets.mean(axis=-1)
-        if layout.outside_units == "split"
-        else outside_outlets[..., outside_last],
+        inside_entry=in_place(unit.inside_entry),
+        inside_exit=in_place(unit.inside_exit),
+        inside_mean=in_place(unit.inside_mean),
+        outside_entry=in_place(unit.outside_entry),
+        outside_exit=in_place(unit.outside_exit),
+        outside_mean=in_place(unit.outside_mean),
+        heat=(unit.heat * height.reshape(-1, 1)).reshape(shape),
+        inside_outlet=_leaving(inside_exit, layout.inside_units, last=-1),
+        outside_outlet=_leaving(outside_exit, layout.outside_units, last=0 if opposed else -1),
     )

@@ -159,10 +159,10 @@ def in_series(layout: Layout, n: int) -> Layout:
 
 
 def _along_shell(n_bays: int, lengths: ArrayLike | None) -> Floats:
-    given = np.ones(n_bays) if lengths is None else np.asarray(lengths, dtype=float)
+    given: Floats = np.ones(n_bays) if lengths is None else np.asarray(lengths, dtype=float)
     if n_bays < 1 or given.shape != (n_bays,) or not (given > 0).all():
         raise ValueError(f"{n_bays} bays need {n_bays} positive lengths; given {given.tolist()}")
-    return given / given.sum()
+    return given / float(given.sum())
 
 
 def _shell(passes: Sequence[Ints], lengths: Floats, outside_links: Floats, first_from_near: bool) -> Layout:
