@@ -111,12 +111,12 @@ def _shell(layout: Layout, UA: Array, C_inside: Array, C_outside: Array) -> Temp
     heat[np.arange(n), :, np.arange(n)] -= bay_rate.T
 
     mixed_from = layout.outside_links[:-1, :-1].T / layout.outside_links[:-1].sum(axis=1)[:, None]
-    exit_from_rises: Array = np.linalg.inv(np.eye(n) - mixed_from)
+    exit_from_rises = np.linalg.inv(np.eye(n) - mixed_from).astype(float)
     lead = _lead(bay_rate / C_bay)
     M = heat / C_bay.T[:, :, None]
     A = M[..., :n] * lead - M[..., :n] @ exit_from_rises
     A[np.arange(n), :, np.arange(n)] += 1
-    rise: Array = np.linalg.solve(A.swapaxes(0, 1), M[..., n].T[..., None])[..., 0]
+    rise = np.linalg.solve(A.swapaxes(0, 1), M[..., n].T[..., None])[..., 0].astype(float)
     outside_exit = rise @ exit_from_rises.T
     outside_mean = outside_exit - lead * rise
     known = np.concatenate([outside_mean, np.ones((P, 1))], axis=1)

@@ -47,6 +47,8 @@ class Layout:
     """(m, 2) where each cell begins and ends along its bank or tube pass, in the inside flow's direction, 0 to 1."""
     inside_links: Floats = field(default_factory=lambda: in_turn(1))
     outside_links: Floats
+    chain: Arrangement | None = None
+    """Set where every cell is a bay of its own and the two fluids meet the cells in opposite or in the same order."""
     units: int = 1
     inside_units: Through = "in turn"
     """Whether the inside fluid visits the units in turn or is split equally over them."""
@@ -63,6 +65,8 @@ class Layout:
             raise ValueError(
                 f"each of {bays} outside bays must hold a cell; cells lie in {np.unique(self.bay).tolist()}"
             )
+        if self.chain and not np.array_equal(self.bay, np.arange(m)[:: 1 if self.chain == "co-current" else -1]):
+            raise ValueError(f"the cells of a {self.chain} chain do not lie in the bays {self.bay.tolist()}")
         if len(self.inside_links) != len(self.inside_paths) + 1:
             raise ValueError(f"{len(self.inside_paths)} inside paths need links of one more row and column")
         if self.area.shape != (m,) or (self.area <= 0).any() or abs(self.area.sum() - 1) > 1e-9:
@@ -103,16 +107,6 @@ class Layout:
         share = self.outside_links[:-1].sum(axis=1)[self.bay]
         return np.tile(share / (self.units if self.outside_units == "split" else 1), self.units)
 
-    @cached_property
-    def chain(self) -> Arrangement | None:
-        """Whether a unit is a plain chain: one inside path, one bay a cell, met in the reverse or in the same order."""
-        m = len(self.bay)
-        if len(self.inside_paths) > 1 or not np.array_equal(self.outside_links, in_turn(m)):
-            return None
-        if np.array_equal(self.bay, np.arange(m)):
-            return "co-current"
-        return "counter" if np.array_equal(self.bay, np.arange(m)[::-1]) else None
-
 
 def banks(
     n: int,
@@ -134,6 +128,7 @@ def banks(
         area=np.full(n, 1 / n),
         along=np.column_stack([edges[:-1], edges[1:]]),
         outside_links=in_turn(n),
+        chain=arrangement,
         units=n_banks,
         inside_units=inside,
         outside_units=outside,
@@ -158,30 +153,163 @@ def in_series(layout: Layout, n: int) -> Layout:
     return replace(layout, units=n, inside_units="in turn", outside_units="in turn", units_flow="counter")
 
 
-def _along_shell(n_bays: int, lengths: ArrayLike | None) -> Floats:
+def _shell(
+    passes: Sequence[Sequence[Ints]],
+    lengths: Floats,
+    outside_links: Floats,
+    *,
+    first_from_near: bool = True,
+    chain: Arrangement | None = None,
+) -> Layout:
+    """A shell whose equal tube passes run to and fro along it.
+
+    Each pass is one row of bays, or several in parallel over which the inside flow is split, given from the near end
+    to the far end; the flow mixes between passes.
+    """
+    n, number = len(lengths), [len(rows) for rows in passes]
+    links = np.zeros((sum(number) + 1, sum(number) + 1))
+    row_bays, walks, begun, before = [], [], 0, np.array([-1])
+    for k, rows in enumerate(passes):
+        paths = np.arange(begun, begun + len(rows))
+        links[np.ix_(before, paths)] = 1 / (len(before) * len(rows))
+        walks += [np.arange(n)[:: 1 if (k % 2 == 0) == first_from_near else -1]] * len(rows)
+        row_bays += list(rows)
+        begun, before = begun + len(rows), paths
+    links[before, -1] = 1 / len(before)
+    ends = [np.concatenate([[0.0], np.cumsum(lengths[walk])]) for walk in walks]
+    share = np.repeat([1 / (len(passes) * rows) for rows in number], number)
+    return Layout(
+        inside_paths=tuple(np.arange(n * begun).reshape(begun, n)),
+        inside_links=links,
+        bay=np.concatenate([bays[walk] for bays, walk in zip(row_bays, walks, strict=True)]),
+        outside_links=outside_links,
+        chain=chain,
+        area=np.concatenate([lengths[walk] * part for walk, part in zip(walks, share, strict=True)]),
+        along=np.concatenate([np.column_stack([x[:-1], x[1:]]) for x in ends]),
+    )
+
+
+def _lengths(n_bays: int, lengths: ArrayLike | None) -> Floats:
     given: Floats = np.ones(n_bays) if lengths is None else np.asarray(lengths, dtype=float)
     if n_bays < 1 or given.shape != (n_bays,) or not (given > 0).all():
         raise ValueError(f"{n_bays} bays need {n_bays} positive lengths; given {given.tolist()}")
     return given / float(given.sum())
 
 
-def _shell(passes: Sequence[Ints], lengths: Floats, outside_links: Floats, first_from_near: bool) -> Layout:
-    """A shell whose equal tube passes run to and fro through `passes`: their bays from the near end to the far end."""
-    n = len(lengths)
-    walks = [np.arange(n)[:: 1 if (k % 2 == 0) == first_from_near else -1] for k in range(len(passes))]
-    ends = [np.concatenate([[0.0], np.cumsum(lengths[walk])]) for walk in walks]
-    return Layout(
-        inside_paths=(np.arange(n * len(passes)),),
-        bay=np.concatenate([bays[walk] for bays, walk in zip(passes, walks, strict=True)]),
-        area=np.concatenate([lengths[walk] for walk in walks]) / len(passes),
-        along=np.concatenate([np.column_stack([x[:-1], x[1:]]) for x in ends]),
-        outside_links=outside_links,
-    )
+def _branches(n_branches: int, n: int) -> Floats:
+    """Links of a stream split equally over branches of n bays in turn, numbered branch after branch."""
+    links = np.zeros((n_branches * n + 1, n_branches * n + 1))
+    for first in range(0, n_branches * n, n):
+        met = np.array([-1, *range(first, first + n), -1])
+        links[met[:-1], met[1:]] = 1 / n_branches
+    return links
 
 
 def shell_pass(
     n_bays: int, tube_passes: int, first_pass: Arrangement = "counter", lengths: ArrayLike | None = None
 ) -> Layout:
-    """TEMA E: one shell pass, any number of tube passes; `lengths` of the bays from the shell inlet on, else equal."""
-    bays = [np.arange(n_bays)] * tube_passes
-    return _shell(bays, _along_shell(n_bays, lengths), in_turn(n_bays), first_pass == "co-current")
+    """TEMA E: one shell pass, any number of tube passes; relative `lengths` of the bays from the shell inlet on."""
+    return _shell(
+        [[np.arange(n_bays)]] * tube_passes,
+        _lengths(n_bays, lengths),
+        in_turn(n_bays),
+        first_from_near=first_pass == "co-current",
+        chain=first_pass if tube_passes == 1 else None,
+    )
+
+
+def f_shell(
+    n_bays: int,
+    tube_passes: int = 2,
+    first_pass: Arrangement = "counter",
+    leakage: float = 0.0,
+    lengths: ArrayLike | None = None,
+) -> Layout:
+    """TEMA F: two shell passes either side of a longitudinal baffle, `n_bays` along each, half the tube passes in each.
+
+    `leakage` is the share of the outside flow that slips past the baffle at the nozzles' end, from the inlet straight
+    into the last bay. `lengths` from that end on.
+    """
+    if tube_passes % 2:
+        raise ValueError(f"an F shell has an even number of tube passes, half in each shell pass; given {tube_passes}")
+    if not 0 <= leakage < 1:
+        raise ValueError(f"the leakage past the longitudinal baffle is {leakage}; it must be at least 0 and below 1")
+    links = (1 - leakage) * in_turn(2 * n_bays)
+    links[-1, -2] += leakage
+    links[-2, -1] = 1.0
+    shell_passes = [np.arange(n_bays), np.arange(n_bays, 2 * n_bays)[::-1]]
+    order = shell_passes if first_pass == "co-current" else shell_passes[::-1]
+    rows = [[row] for row in order for _ in range(tube_passes // 2)]
+    chain = first_pass if tube_passes == 2 and not leakage else None
+    return _shell(rows, _lengths(n_bays, lengths), links, chain=chain)
+
+
+def _split_flow(
+    zones: int, n_bays: int, tube_passes: int, first_pass: Arrangement, lengths: ArrayLike | None
+) -> Layout:
+    if n_bays % (2 * zones):
+        raise ValueError(f"{n_bays} bays cannot be split into {2 * zones} equal groups")
+    if tube_passes != 1 and tube_passes % 2:
+        raise ValueError(f"a split-flow shell has one tube pass or an even number; given {tube_passes}")
+    half = n_bays // (2 * zones)
+    out_and_back = np.arange(4 * zones * half).reshape(2 * zones, 2, half)
+    inlet_row, outlet_row = np.empty(n_bays, dtype=np.intp), np.empty(n_bays, dtype=np.intp)
+    for branch, (away, back) in enumerate(out_and_back):
+        here = slice(branch * half, (branch + 1) * half)
+        inlet_row[here], outlet_row[here] = (away[::-1], back) if branch % 2 == 0 else (away, back[::-1])
+    if tube_passes == 1:
+        rows = [[inlet_row, outlet_row]]
+    else:
+        order = [inlet_row, outlet_row] if first_pass == "co-current" else [outlet_row, inlet_row]
+        rows = [[row] for row in order for _ in range(tube_passes // 2)]
+    return _shell(rows, _lengths(n_bays, lengths), _branches(2 * zones, 2 * half))
+
+
+def g_shell(
+    n_bays: int, tube_passes: int = 2, first_pass: Arrangement = "counter", lengths: ArrayLike | None = None
+) -> Layout:
+    """TEMA G (split flow): in at mid-length, half to each end along one side of a longitudinal baffle and back.
+
+    `n_bays` along the shell (even). One tube pass fills both sides; else half the passes lie in each, those at the
+    outlet side first where `first_pass` is counter.
+    """
+    return _split_flow(1, n_bays, tube_passes, first_pass, lengths)
+
+
+def h_shell(
+    n_bays: int, tube_passes: int = 2, first_pass: Arrangement = "counter", lengths: ArrayLike | None = None
+) -> Layout:
+    """TEMA H (double split flow): two G shells end to end, in at one and three quarters of the length."""
+    return _split_flow(2, n_bays, tube_passes, first_pass, lengths)
+
+
+def j_shell(n_bays: int, tube_passes: int = 1, inlets: Literal[1, 2] = 1, lengths: ArrayLike | None = None) -> Layout:
+    """TEMA J (divided flow): in at mid-length and out at both ends (`inlets` 1), or the reverse (2); `n_bays` even."""
+    if n_bays % 2:
+        raise ValueError(f"{n_bays} bays cannot be divided into two equal halves")
+    near, far = np.arange(n_bays).reshape(2, n_bays // 2)
+    row = np.concatenate([near[::-1], far] if inlets == 1 else [near, far[::-1]])
+    return _shell([[row]] * tube_passes, _lengths(n_bays, lengths), _branches(2, n_bays // 2))
+
+
+def x_shell(
+    n_bays: int,
+    tube_passes: int = 1,
+    first_pass: Arrangement = "counter",
+    rows: int = 1,
+    lengths: ArrayLike | None = None,
+) -> Layout:
+    """TEMA X (cross-flow): each of `n_bays` slices takes its share of the outside flow across all tube passes in turn.
+
+    The outside fluid does not mix along the shell. The inside fluid of a pass is split over `rows` that the outside
+    fluid meets one after another; one row means mixed, many rows unmixed.
+    """
+    x, layers = _lengths(n_bays, lengths), tube_passes * rows
+    layer = np.arange(layers * n_bays).reshape(tube_passes, rows, n_bays)
+    slices = np.arange(n_bays)
+    links = np.zeros((layers * n_bays + 1, layers * n_bays + 1))
+    links[-1, slices] = links[slices - n_bays - 1, -1] = x
+    for k in range(1, layers):
+        links[slices + (k - 1) * n_bays, slices + k * n_bays] = x
+    order = layer if first_pass == "co-current" else layer[::-1]
+    return _shell([list(one_pass) for one_pass in order], x, links)
