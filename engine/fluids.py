@@ -8,13 +8,14 @@ against CoolProp between its nodes when it is built. Everything is SI and kelvin
 
 from __future__ import annotations
 
+import contextlib
 import difflib
 import math
 import os
 import re
 import sys
 import threading
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
 from functools import cache, lru_cache
 from typing import Any, Literal
@@ -218,24 +219,31 @@ class Interpolated(Fluid):
         return tuple(self._over(T, len(rows), lambda piece, t: np.exp(piece.logs[rows] @ piece.basis(t, piece.terms))))
 
     def _enthalpy(self, T: Array) -> Array:
-        return self._over(T, 1, lambda piece, t: piece.heat[None, :] @ piece.basis(t, piece.heat.size))[0]
+        heats = self._over(T, 1, lambda piece, t: piece.heat[None, :] @ piece.basis(t, piece.heat.size))
+        return heats.reshape(T.shape)
 
     def _over(self, T: ArrayLike, rows: int, evaluate: Callable[[_Piece, Array], Array]) -> Array:
         """`evaluate(piece, T)` of shape (rows, T.size), piece by piece, as an array of shape (rows, *T.shape)."""
         T = np.asarray(T, dtype=float)
         t = np.clip(T.ravel(), self.T_low, self.T_high)
+        # 16 bits, since numpy sorts those by counting.
+        owner = np.searchsorted(self.breaks, t, side="right").astype(np.int16) if self.breaks.size else None
+        counts = [t.size] if owner is None else np.bincount(owner)
+        mixed = owner is not None and np.count_nonzero(counts) > 1
+        if mixed:
+            order = np.argsort(owner, kind="stable")
+            t = t[order]
         out = np.empty((rows, t.size))
-        for start in range(0, t.size, _CHUNK):
-            part = slice(start, start + _CHUNK)
-            chunk = t[part]
-            first, last = np.searchsorted(self.breaks, (chunk.min(), chunk.max()), side="right")
-            if first == last:
-                out[:, part] = evaluate(self.pieces[first], chunk)
-                continue
-            owner = np.searchsorted(self.breaks, chunk, side="right")
-            for i in np.unique(owner):
-                mine = owner == i
-                out[:, start + np.flatnonzero(mine)] = evaluate(self.pieces[i], chunk[mine])
+        start = 0
+        for piece, count in zip(self.pieces, counts, strict=False):
+            end = start + count
+            while start < end:
+                part = slice(start, min(start + _CHUNK, end))
+                out[:, part] = evaluate(piece, t[part])
+                start = part.stop
+        if mixed:
+            by_piece, out = out, np.empty_like(out)
+            out[:, order] = by_piece
         return out.reshape(rows, *T.shape)
 
 
@@ -432,24 +440,35 @@ def _phase_by_density(rho: float) -> Phase:
 _library_lock = threading.Lock()
 
 
+@contextlib.contextmanager
+def _standard_output_closed() -> Iterator[None]:
+    """Nothing written to standard output, not even from compiled code, reaches it."""
+    try:
+        kept = os.dup(1)
+    except OSError:  # there is no standard output, as under a windowed interpreter
+        yield
+        return
+    nowhere = os.open(os.devnull, os.O_WRONLY)
+    sys.stdout.flush()
+    try:
+        os.dup2(nowhere, 1)
+        yield
+    finally:
+        os.dup2(kept, 1)
+        os.close(kept)
+        os.close(nowhere)
+
+
 @cache
 def _library() -> Any:
     """The CoolProp module, imported on first use.
 
-    Its saturation tables take seconds to load and are not used here. Told so, the library writes a line on standard
-    output, which belongs to the results; so that descriptor looks away during the import.
+    Its saturation tables take seconds to load and are not used here. Told so, the library announces it on standard
+    output, which belongs to results.
     """
-    with _library_lock:
+    with _library_lock, _standard_output_closed():
         os.environ["COOLPROP_DISABLE_SUPERANCILLARIES_ENTIRELY"] = "1"
-        sys.stdout.flush()
-        kept, nowhere = os.dup(1), os.open(os.devnull, os.O_WRONLY)
-        try:
-            os.dup2(nowhere, 1)
-            import CoolProp
-        finally:
-            os.dup2(kept, 1)
-            os.close(kept)
-            os.close(nowhere)
+        import CoolProp
     return CoolProp
 
 
@@ -511,7 +530,7 @@ def _pure(code: str, p: float, phase: Phase) -> Fluid:
     T_low, T_high = float(state.Tmin()), float(state.Tmax())
     low_reason, high_reason = "is below the property model's limit", "is above the property model's limit"
     T_freeze = None
-    if abs(T_low - state.Ttriple()) < 0.05:
+    if code not in _MODEL_ENDS_ABOVE_FREEZING and abs(T_low - state.Ttriple()) < 0.05:
         low_reason, T_freeze = "freezes", T_low
     if state.has_melting_line():
         T_melt = _melting(code, p)
@@ -535,18 +554,83 @@ def _pure(code: str, p: float, phase: Phase) -> Fluid:
         state.specify_phase(C.iphase_gas)
     if T_low >= T_high:
         raise FluidError(f"{name} has no {phase} state at {_bar(p)} inside the property model")
+    sample = _without_spike(_sampler(state, p, name), _CONDUCTIVITY_SPIKES.get(code))
+    # Next to the critical point CoolProp's own density iteration leaves noise above the tighter figure.
+    agrees = _AGREES if p < 0.9 * state.p_critical() else 1e-6
+    low, high = T_low, T_high
+    failed: list[float] = []
+    while True:
+        try:
+            pieces = _pieces(sample, low, high, name, agrees)
+            break
+        except _Gap as gap:
+            failed.append(gap.T)
+            low, high = _first_run(sample, T_low, T_high, failed, gap)
     return Interpolated(
         name=name,
         origin=_origin(),
         phase=phase,
-        T_low=T_low,
-        T_high=T_high,
-        low_reason=low_reason,
-        high_reason=high_reason,
+        T_low=low,
+        T_high=high,
+        low_reason=low_reason if low == T_low else _NO_TRANSPORT,
+        high_reason=high_reason if high == T_high else _NO_TRANSPORT,
         T_freeze=T_freeze,
         boils_like=code,
-        notes=notes,
-        pieces=_pieces(_sampler(state, p, name), T_low, T_high, name),
+        notes=(*notes, *_steps(pieces, name)),
+        pieces=pieces,
+    )
+
+
+_NO_TRANSPORT = "is outside the library's viscosity and conductivity models"
+_MODEL_ENDS_ABOVE_FREEZING = ("Air", "R124", "R14", "R236EA", "R404A", "R407C", "R410A", "R507A")
+"""Fluids whose lowest model temperature is not their freezing point."""
+_CONDUCTIVITY_SPIKES = {"Ammonia": 405.4}
+"""Temperatures at which a conductivity model runs to infinity at any pressure."""
+
+
+def _without_spike(sample: Sample, T_spike: float | None) -> Sample:
+    """`sample` with ln k taken straight across the kelvin on either side of a spike."""
+    if T_spike is None:
+        return sample
+    ends = (T_spike - 1.0, T_spike + 1.0)
+
+    def bridged(T: float) -> tuple[float, ...]:
+        if not ends[0] < T < ends[1]:
+            return sample(T)
+        k = np.interp(T, ends, np.log([sample(end)[3] for end in ends]))
+        return (*sample(T)[:3], math.exp(k))
+
+    return bridged
+
+
+def _first_run(sample: Sample, T_low: float, T_high: float, failed: list[float], gap: _Gap) -> tuple[float, float]:
+    """The lowest run of temperatures, at least a fifth of the span, over which the library gives every property.
+
+    The corresponding-states models of some refrigerants find no solution in places. Raises the gap where no such run
+    is found, or after repeated failures.
+    """
+
+    def works(T: float) -> bool:
+        try:
+            sample(T)
+        except _Gap:
+            return False
+        return True
+
+    grid = np.unique([*np.linspace(T_low, T_high, 65), *failed])
+    good = [T not in failed and works(T) for T in grid]
+    edges = np.flatnonzero(np.diff([False, *good, False]))
+    for first, last in zip(edges[::2], edges[1::2] - 1, strict=True):
+        if grid[last] - grid[first] >= 0.2 * (T_high - T_low) and len(failed) < 8:
+            return float(grid[first]), float(grid[last])
+    raise gap
+
+
+def _steps(pieces: tuple[_Piece, ...], name: str) -> tuple[str, ...]:
+    return tuple(
+        f"the library's own properties of {name} step by up to {piece.error:.1%} at {_celsius(piece.low, 1)}"
+        for piece in pieces
+        if piece.error > 1e-3
     )
 
 
@@ -560,37 +644,43 @@ def _melting(code: str, p: float) -> float | None:
     return T if math.isfinite(T) else None
 
 
-def _sampler(state: Any, p: float, name: str) -> Callable[[float], tuple[float, ...]]:
+Sample = Callable[[float], tuple[float, ...]]
+
+
+class _Gap(FluidError):
+    """A property that the library does not give at T."""
+
+    def __init__(self, sentence: str, T: float) -> None:
+        super().__init__(sentence)
+        self.T = T
+
+
+def _sampler(state: Any, p: float, name: str) -> Sample:
     """rho, cp, mu, k of the state at (p, T), each refused unless finite and above zero."""
     C = _library()
-    getters = {
-        "density": state.rhomass,
-        "heat capacity": state.cpmass,
-        "viscosity": state.viscosity,
-        "conductivity": state.conductivity,
-    }
 
     def sample(T: float) -> tuple[float, ...]:
         try:
             state.update(C.PT_INPUTS, p, T)
         except ValueError as error:
             raise FluidError(f"{name} at {_celsius(T, 1)} and {_bar(p)} is outside its property model") from error
-        values = []
-        for word, get in getters.items():
-            try:
-                value = float(get())
-            except ValueError as error:
-                raise FluidError(_missing(name, word)) from error
-            if not (math.isfinite(value) and value > 0):
-                raise FluidError(_missing(name, f"usable {word}"))
-            values.append(value)
-        return tuple(values)
+        rho, cp, mu, k = (_positive(get) for get in (state.rhomass, state.cpmass, state.viscosity, state.conductivity))
+        if rho is None or cp is None:
+            raise FluidError(f"{name} at {_celsius(T, 1)} and {_bar(p)} is outside its property model")
+        if mu is None or k is None:
+            raise _Gap(f"the property library has no {_lacking(state)} for {name}: type a property table for it", T)
+        return rho, cp, mu, k
 
     return sample
 
 
-def _missing(name: str, word: str) -> str:
-    return f"the property library has no {word} for {name}: type a property table for it"
+def _positive(get: Callable[[], float]) -> float | None:
+    """What `get` gives where that is finite and above zero; the library also fails silently, by 0, inf or NaN."""
+    try:
+        value = float(get())
+    except ValueError:
+        return None
+    return value if math.isfinite(value) and value > 0 else None
 
 
 # The interpolant ------------------------------------------------------------------------------------------------------
@@ -600,7 +690,8 @@ _AGREES = 1e-8
 """Largest relative difference from CoolProp that is accepted between nodes."""
 _NEGLIGIBLE = 1e-12
 _NARROWEST = 1e-3
-"""Kelvin. CoolProp's conductivities have corners; a piece this narrow around one is off by less than it matters."""
+"""Kelvin. CoolProp's transport properties have corners and steps; a piece this narrow holds one."""
+_LARGEST_STEP = 0.03
 _CHUNK = 2048
 
 
@@ -632,7 +723,7 @@ class _Piece:
         return basis
 
 
-def _pieces(sample: Callable[[float], tuple[float, ...]], T_low: float, T_high: float, name: str) -> tuple[_Piece, ...]:
+def _pieces(sample: Sample, T_low: float, T_high: float, name: str, agrees: float = _AGREES) -> tuple[_Piece, ...]:
     """Interpolants that cover the span: halved until each agrees with `sample` between its nodes."""
     found: list[_Piece] = []
     waiting = [(T_low, T_high)]
@@ -640,18 +731,21 @@ def _pieces(sample: Callable[[float], tuple[float, ...]], T_low: float, T_high: 
     while waiting:
         low, high = waiting.pop()
         piece = _fit(sample, low, high, h)
-        if piece.error > _AGREES and high - low > _NARROWEST:
+        if piece.error > agrees and high - low > _NARROWEST:
             middle = 0.5 * (low + high)
             waiting += [(middle, high), (low, middle)]
             continue
-        if piece.error > 1e-6:
-            raise FluidError(f"the properties of {name} jump near {_celsius(low, 2)}: type a property table for it")
+        if piece.error > _LARGEST_STEP:
+            raise FluidError(
+                f"the properties of {name} change too steeply near {_celsius(low, 2)}: state another pressure or type "
+                "a property table"
+            )
         found.append(piece)
         h = float(chebyshev.chebval(1.0, piece.heat))
     return tuple(found)
 
 
-def _fit(sample: Callable[[float], tuple[float, ...]], low: float, high: float, h: float) -> _Piece:
+def _fit(sample: Sample, low: float, high: float, h: float) -> _Piece:
     def spread(x: Array) -> Array:
         return np.clip(0.5 * (low + high) + 0.5 * (high - low) * x, low, high)
 
@@ -827,6 +921,9 @@ def _plain(code: str) -> str:
     return re.sub(r"^(iso|cyclo|ethyl|para|ortho) ", r"\1", words)
 
 
+_PURE_ALIASES = {"steam": "Water", "sulphur dioxide": "SulfurDioxide", "sulphur hexafluoride": "SulfurHexafluoride"}
+
+
 @cache
 def _pure_names() -> dict[str, tuple[str, str]]:
     """Folded name or alias -> (backend, code)."""
@@ -841,7 +938,7 @@ def _pure_names() -> dict[str, tuple[str, str]]:
         names[_folded(code)] = ("HEOS", code)
     for code in _oils():
         names.setdefault(_folded(code), ("INCOMP", code))
-    return names
+    return names | {_folded(alias): ("HEOS", code) for alias, code in _PURE_ALIASES.items()}
 
 
 @cache
@@ -868,6 +965,8 @@ def _solute_names() -> dict[str, str]:
 def _pure_code(name: str) -> tuple[str, str]:
     found = _pure_names().get(_folded(name))
     if found is None:
+        if _folded(name) in _solute_names():
+            raise FluidError(f"{name} is offered as a solution in water: state its mass fraction")
         raise FluidError(_unknown("fluid", name))
     return found
 
@@ -875,14 +974,16 @@ def _pure_code(name: str) -> tuple[str, str]:
 def _solution_code(name: str) -> str:
     found = _solute_names().get(_folded(name))
     if found is None:
+        if _folded(name) in _pure_names():
+            raise FluidError(f"{name} is offered as a pure fluid, not as a solution in water")
         raise FluidError(_unknown("solution", name))
     return found
 
 
 def _unknown(kind: str, name: str) -> str:
     nearest = nearest_name(name)
-    hint = f"the nearest name is {nearest}" if nearest else "see the list of fluids"
-    return f"no {kind} is called {name!r}: {hint}, or type a property table"
+    hint = f"the nearest name is {nearest}" if nearest else "no name is near it"
+    return f"no {kind} is called {name!r}: {hint}; any other fluid can be typed as a property table"
 
 
 def nearest_name(text: str) -> str | None:
@@ -935,15 +1036,8 @@ def _offer_incompressible(code: str, kind: Kind) -> Offer:
 
 
 def _lacking(state: Any) -> str:
-    lacking = []
-    for word, get in (("viscosity", state.viscosity), ("conductivity", state.conductivity)):
-        try:
-            value = float(get())
-        except ValueError:
-            value = math.nan
-        if not (math.isfinite(value) and value > 0):
-            lacking.append(word)
-    return " and ".join(lacking)
+    getters = {"viscosity": state.viscosity, "conductivity": state.conductivity}
+    return " and ".join(word for word, get in getters.items() if _positive(get) is None)
 
 
 # Words ----------------------------------------------------------------------------------------------------------------
