@@ -1,0 +1,43 @@
+"""Countercheck's engine: rate double-pipe and shell-and-tube exchangers, and say how sure the figures are.
+
+Everything that the app, the command line and notebooks may use stands in `__all__`. A name is resolved on first use,
+so that `python -m engine --help` loads no numpy.
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import Any
+
+__version__ = "0.1.0"
+
+_WHERE = {
+    "Case": "case",
+    "CaseError": "stated",
+    "Problem": "stated",
+    "Rating": "rating",
+    "dump_case": "casefile",
+    "judge": "findings",
+    "load_case": "casefile",
+    "parse_case": "casefile",
+    "propagate": "uncertainty",
+    "rate": "rating",
+    "rate_points": "rating",
+    "raw_case": "casefile",
+    "raw_of": "casefile",
+    "read_raw": "casefile",
+    "report_pdf": "report",
+    "result_json": "result",
+    "save_case": "casefile",
+    "sections": "report",
+}
+
+__all__ = sorted([*_WHERE, "__version__"])  # noqa: PLE0605
+
+
+def __getattr__(name: str) -> Any:
+    if name in _WHERE:
+        value = getattr(import_module(f"engine.{_WHERE[name]}"), name)
+        globals()[name] = value
+        return value
+    raise AttributeError(f"the engine offers no {name!r}; it offers {', '.join(__all__)}")

@@ -16,8 +16,6 @@ from engine.stated import SIDES, Choice, Figure, Input, Problem, Side, Stated, W
 
 ATMOSPHERE = 101325.0
 
-SOLUTIONS = fluids.solution_names()
-
 
 class TableRow(Input):
     """Properties at one temperature, as printed on a sheet or measured."""
@@ -44,8 +42,8 @@ class PureFluid(Input):
     tag_name: ClassVar[str] = "pure"
     name: Annotated[str, Words("Fluid", 80, help="A pure fluid or thermal oil of the list of fluids.")]
 
-    def spec(self, atmosphere: float) -> fluids.Spec:
-        return fluids.named(self.name)
+    def spec(self, atmosphere: float) -> fluids.Specification:
+        return fluids.Pure(self.name)
 
 
 class SolutionFluid(Input):
@@ -57,7 +55,7 @@ class SolutionFluid(Input):
         float, Stated("fraction", "Mass fraction of the dissolved part", low=0.0, high=1.0, example="35 %")
     ]
 
-    def spec(self, atmosphere: float) -> fluids.Spec:
+    def spec(self, atmosphere: float) -> fluids.Specification:
         return fluids.Solution(self.solution, float(self.mass_fraction))
 
 
@@ -80,9 +78,8 @@ class SteamFluid(Input):
     tag_name: ClassVar[str] = "steam"
     steam: SteamState
 
-    def spec(self, atmosphere: float) -> fluids.Spec:
-        p = absolute(self.steam.p, atmosphere)
-        return fluids.Steam(p, float(self.steam.superheat), float(self.steam.subcooling))
+    def spec(self, atmosphere: float) -> fluids.Specification:
+        return fluids.Pure("water")
 
 
 class TableFluid(Input):
@@ -92,11 +89,14 @@ class TableFluid(Input):
     name: Annotated[str, Words("Name", 80)]
     table: Annotated[tuple[TableRow, ...], Field(min_length=2, max_length=40)]
 
-    def spec(self, atmosphere: float) -> fluids.Spec:
+    def spec(self, atmosphere: float) -> fluids.Specification:
         rows = sorted(self.table, key=lambda row: row.T)
         return fluids.Table(
             self.name,
-            tuple(fluids.TablePoint(float(r.T), float(r.rho), float(r.cp), float(r.k), float(r.mu)) for r in rows),
+            tuple(
+                fluids.TablePoint(T=float(r.T), rho=float(r.rho), cp=float(r.cp), k=float(r.k), mu=float(r.mu))
+                for r in rows
+            ),
         )
 
     def problems(self) -> Iterator[Problem]:
@@ -112,9 +112,11 @@ class ConstantFluid(Input):
     name: Annotated[str, Words("Name", 80)]
     constant: Constants
 
-    def spec(self, atmosphere: float) -> fluids.Spec:
+    def spec(self, atmosphere: float) -> fluids.Specification:
         c = self.constant
-        return fluids.Constant(self.name, float(c.rho), float(c.cp), float(c.k), float(c.mu))
+        return fluids.Constant(
+            name=self.name, rho=float(c.rho), cp=float(c.cp), k=float(c.k), mu=float(c.mu)
+        )
 
 
 FLUID_TAGS = ("pure", "solution", "steam", "table", "constant")
@@ -140,7 +142,7 @@ FluidInput = Annotated[
     | Annotated[ConstantFluid, Tag("constant")],
     Discriminator(
         _fluid_tag,
-        custom_error_type="union_tag_invalid",
+        custom_error_type="not_a_fluid",
         custom_error_message="is not a fluid",
         custom_error_context={
             "says": 'is not a fluid; allowed is a name such as "Water", {"solution", "mass_fraction"}, '

@@ -15,6 +15,7 @@ import os
 import re
 import sys
 import threading
+from abc import ABC, abstractmethod
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
 from functools import cache, lru_cache
@@ -117,7 +118,7 @@ class Properties:
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
-class Fluid:
+class Fluid(ABC):
     """A fluid in one phase at one pressure, usable from `T_low` to `T_high`.
 
     Outside that span `values` and `at` give the properties at the nearer end, so that an iteration may pass through;
@@ -131,15 +132,19 @@ class Fluid:
     T_high: float
     low_reason: str
     high_reason: str
-    T_freeze: float | None = None
+    freezing_temperature: float | None = None
     boils_like: str | None = None
     """CoolProp's name of the substance whose saturation line bounds the liquid, where one does."""
     notes: tuple[str, ...] = ()
     """What a reader must know about these properties; one sentence each."""
 
+    @abstractmethod
     def values(self, T: ArrayLike, *names: str) -> tuple[Array, ...]:
         """The named properties ("rho", "cp", "mu", "k", "Pr") at T, each of T's shape."""
-        raise TypeError(f"{type(self).__name__} gives no properties")
+
+    @abstractmethod
+    def _enthalpy(self, T: Array) -> Array:
+        """The antiderivative of cp, inside the span."""
 
     def enthalpy(self, T: ArrayLike) -> Array:
         """Specific enthalpy in J/kg: the antiderivative of cp, from an arbitrary zero.
@@ -153,9 +158,6 @@ class Fluid:
         if beyond.any():
             h = h + beyond * self.values(inside, "cp")[0]
         return h
-
-    def _enthalpy(self, T: Array) -> Array:
-        raise TypeError(f"{type(self).__name__} gives no enthalpy")
 
     def at(self, T: ArrayLike) -> Properties:
         """All four properties at T, of T's shape."""
@@ -194,10 +196,6 @@ class Fluid:
         """Boiling temperature at absolute pressure p; None where it is not known or p is above the critical."""
         return _saturation(self.boils_like, float(p))[0] if self.boils_like else None
 
-    @property
-    def freezing_temperature(self) -> float | None:
-        return self.T_freeze
-
 
 PROPERTIES = ("rho", "cp", "mu", "k")
 _ROWS = {"rho": 0, "cp": 1, "mu": 2, "k": 3, "Pr": 4}
@@ -227,9 +225,9 @@ class Interpolated(Fluid):
         T = np.asarray(T, dtype=float)
         t = np.clip(T.ravel(), self.T_low, self.T_high)
         # 16 bits, since numpy sorts those by counting.
-        owner = np.searchsorted(self.breaks, t, side="right").astype(np.int16) if self.breaks.size else None
-        counts = [t.size] if owner is None else np.bincount(owner)
-        mixed = owner is not None and np.count_nonzero(counts) > 1
+        owner = np.searchsorted(self.breaks, t, side="right").astype(np.int16)
+        counts = np.bincount(owner)
+        mixed = np.count_nonzero(counts) > 1
         if mixed:
             order = np.argsort(owner, kind="stable")
             t = t[order]
@@ -315,7 +313,13 @@ class Saturation:
     """The vapour, from T_sat up."""
 
     def heat(self, superheat: float = 0.0, subcooling: float = 0.0) -> float:
-        """Heat given up by a kilogram from superheated vapour to subcooled condensate, J/kg."""
+        """Heat given up by a kilogram from superheated vapour to subcooled condensate, J/kg.
+
+        Raises FluidError where the vapour or the condensate leaves its span.
+        """
+        for fluid, T in ((self.vapour, self.T_sat + superheat), (self.liquid, self.T_sat - subcooling)):
+            if problem := fluid.problem(T, "condensing side"):
+                raise FluidError(problem)
         vapour = self.vapour.enthalpy(np.array([self.T_sat, self.T_sat + superheat]))
         liquid = self.liquid.enthalpy(np.array([self.T_sat - subcooling, self.T_sat]))
         return float(vapour[1] - vapour[0] + self.h_fg + liquid[1] - liquid[0])
@@ -574,7 +578,7 @@ def _pure(code: str, p: float, phase: Phase) -> Fluid:
         T_high=high,
         low_reason=low_reason if low == T_low else _NO_TRANSPORT,
         high_reason=high_reason if high == T_high else _NO_TRANSPORT,
-        T_freeze=T_freeze,
+        freezing_temperature=T_freeze,
         boils_like=code,
         notes=(*notes, *_steps(pieces, name)),
         pieces=pieces,
@@ -821,12 +825,9 @@ def _solution(code: str, x: float, p: float) -> Fluid:
     name = f"{solute} {100 * x:.4g} % in water"
     T_low, T_high = float(state.Tmin()), float(state.Tmax())
     low_reason, high_reason = "is below the property model's limit", "is above the property model's limit"
-    T_freeze = float(state.keyed_output(C.iT_freeze))
-    frozen: float | None = None
-    if 150 < T_freeze < 350:
-        frozen = T_freeze
-        if T_freeze > T_low:
-            T_low, low_reason = T_freeze, "freezes"
+    T_freeze = _solution_freezing(state)
+    if T_freeze is not None and T_freeze > T_low:
+        T_low, low_reason = T_freeze, "freezes"
     volatile = code in _VOLATILE
     if not volatile:
         # A dissolved salt or glycol only raises the boiling point of water.
@@ -843,11 +844,17 @@ def _solution(code: str, x: float, p: float) -> Fluid:
         T_high=T_high,
         low_reason=low_reason,
         high_reason=high_reason,
-        T_freeze=frozen,
+        freezing_temperature=T_freeze,
         boils_like=None if volatile else "Water",
         notes=(f"the boiling point of {name} is not known and not checked",) if volatile else (),
         pieces=_pieces(_sampler(state, p, name), T_low, T_high, name),
     )
+
+
+def _solution_freezing(state: Any) -> float | None:
+    """Freezing point; None where the library has none, which it tells by a figure near zero or infinity."""
+    T = float(state.keyed_output(_library().iT_freeze))
+    return T if 150 < T < 350 else None
 
 
 @lru_cache(maxsize=256)
@@ -1020,8 +1027,10 @@ def _offer_incompressible(code: str, kind: Kind) -> Offer:
     low = high = None
     if kind == "solution":
         low, high = (float(state.keyed_output(getattr(C, limit))) for limit in ("ifraction_min", "ifraction_max"))
-        state.set_mass_fractions([low])
+        state.set_mass_fractions([high])
     T_low, T_high = float(state.Tmin()), float(state.Tmax())
+    if kind == "solution":
+        T_low = max(T_low, _solution_freezing(state) or 0.0)
     state.update(C.PT_INPUTS, 100 * bar, T_high)
     return Offer(
         name=SOLUTIONS.get(code, code),

@@ -274,8 +274,10 @@ def problems_of(error: ValidationError, model: type[BaseModel], tags: frozenset[
             says = f"holds too few entries; allowed is {item['ctx']['min_length']} or more"
         elif kind == "too_long":
             says = f"holds too many entries; allowed is up to {item['ctx']['max_length']}"
+        elif "says" in item.get("ctx", {}):
+            says = f"{_short(item['input'])} {item['ctx']['says']}"
         elif kind in ("union_tag_not_found", "union_tag_invalid"):
-            says = str(item.get("ctx", {}).get("says", "")) or f"{_short(item['input'])} is not of a known kind"
+            says = f"{_short(item['input'])} is not of a known kind"
         else:
             says = f"{_short(item['input'])} cannot be used: {item['msg'][0].lower()}{item['msg'][1:]}"
         found.append(Problem(path=path, says=says))

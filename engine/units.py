@@ -3,14 +3,17 @@
 Inside the engine every number is an SI float; a unit's name is known here and where figures are read or shown. A
 temperature and a temperature difference are two quantities, and so are absolute, gauge and differential pressure.
 
-A unit is a label made of symbols, and its factor is the product of theirs, so that no factor stands in the table.
-The factors of the symbols come from `scipy.constants`. They are held as exact fractions: a typed figure becomes the
-float nearest to it, and a figure shown with 17 digits reads back as the same float.
+A unit is a label made of symbols, and its factor is the product of theirs, so that the table holds no factors. Those
+of the symbols come from `scipy.constants`: Btu and calorie are the International Table ones, gallon and barrel the US
+ones, a column of water weighs 1000 kg/m³ under standard gravity. They are held as exact fractions: a typed figure
+becomes the float nearest to it, and a figure shown with 17 digits reads back as the same float.
 
-How numbers are read. The point is the decimal sign. A comma, a point or spaces that can only be one thing are
-understood ("3,5", "0,125", "1,200.5", "1 200 000"); a comma that may be either ("1,200") is refused. Lengths may be
-fractions ("1 1/2 in") or feet and inches (16' 6"). Case is forgiven where it cannot change the meaning: never in the
-m of milli and the M of mega.
+How a unit is read. Spelling is free (m2 K/W, m²·K/W, m^2.K/W, m2 K W-1), the set of units is not. All that follows a
+"/" divides, as in kcal/h·m²·°C. Case is forgiven, except between the m of milli and the M of mega.
+
+How a number is read. The point is the decimal sign. Commas, points and spaces that can only mean one thing are
+understood ("3,5", "0,125", "1,200.5", "1 200 000"); a comma that may be either ("1,200") is refused. A length may be
+a fraction ("1 1/2 in") or feet and inches (16' 6").
 """
 
 from __future__ import annotations
@@ -23,9 +26,14 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from decimal import Decimal, localcontext
 from fractions import Fraction
-from typing import Any
+from functools import lru_cache
+from typing import TypeVar
 
+import numpy as np
+from numpy.typing import NDArray
 from scipy import constants as c
+
+Numbers = TypeVar("Numbers", float, NDArray[np.float64])
 
 SYSTEMS: Mapping[str, str] = {"si": "SI", "us": "US customary", "metric": "Metric with kcal and kgf/cm²"}
 """Systems of units in which figures can be shown, and what a user calls them."""
@@ -74,83 +82,96 @@ def _exact(constant: float) -> Fraction:
     return Fraction(f"{constant:.15g}")
 
 
-_SYMBOLS: dict[str, Fraction] = {
-    **{"-": Fraction(1), "%": _exact(c.centi), "rad": Fraction(1), "deg": Fraction(c.degree)},
-    **{"m": Fraction(1), "cm": _exact(c.centi), "mm": _exact(c.milli), "μm": _exact(c.micro)},
-    **{"in": _exact(c.inch), "ft": _exact(c.foot), "mil": _exact(c.mil)},
-    **{"kg": Fraction(1), "g": _exact(c.gram), "t": _exact(c.metric_ton)},
-    **{"lb": _exact(c.pound), "klb": _exact(c.pound) * _exact(c.kilo)},
-    **{"kmol": _exact(c.kilo), "mol": Fraction(1), "lbmol": _exact(c.pound) / _exact(c.gram)},
-    **{"s": Fraction(1), "min": _exact(c.minute), "h": _exact(c.hour), "d": _exact(c.day), "yr": _exact(c.year)},
-    **{"K": Fraction(1), "C": Fraction(1), "F": 1 / _exact(1 / c.degree_Fahrenheit)},
-    **{"R": 1 / _exact(1 / c.degree_Fahrenheit), "Hz": Fraction(1), "rpm": 1 / _exact(c.minute)},
-    **{"L": _exact(c.liter), "gal": _exact(c.gallon), "bbl": _exact(c.barrel)},
-    **{"gpm": _exact(c.gallon) / _exact(c.minute), "cfm": _exact(c.foot) ** 3 / _exact(c.minute)},
-    **{"J": Fraction(1), "kJ": _exact(c.kilo), "MJ": _exact(c.mega), "GJ": _exact(c.giga)},
-    **{"cal": _exact(c.calorie_IT), "kcal": _exact(c.calorie_IT) * _exact(c.kilo)},
-    **{"Mcal": _exact(c.calorie_IT) * _exact(c.mega), "Gcal": _exact(c.calorie_IT) * _exact(c.giga)},
-    **{"Btu": _exact(c.Btu_IT), "kBtu": _exact(c.Btu_IT) * _exact(c.kilo), "MMBtu": _exact(c.Btu_IT) * _exact(c.mega)},
-    **{"W": Fraction(1), "kW": _exact(c.kilo), "MW": _exact(c.mega)},
-    **{"N": Fraction(1), "mN": _exact(c.milli), "dyn": _exact(c.dyne)},
-    **{"kgf": _exact(c.g), "lbf": _exact(c.pound) * _exact(c.g)},
-    **{"Pa": Fraction(1), "mPa": _exact(c.milli), "μPa": _exact(c.micro), "hPa": _exact(c.hecto)},
-    **{"kPa": _exact(c.kilo), "MPa": _exact(c.mega), "GPa": _exact(c.giga)},
-    **{"bar": _exact(c.bar), "mbar": _exact(c.bar) * _exact(c.milli), "atm": _exact(c.atm), "torr": _exact(c.torr)},
-    **{"at": _exact(c.g) / _exact(c.centi) ** 2, "psi": _exact(c.pound) * _exact(c.g) / _exact(c.inch) ** 2},
-    "ksi": _exact(c.kilo) * _exact(c.pound) * _exact(c.g) / _exact(c.inch) ** 2,
-    **{"mmHg": _exact(c.mmHg), "inHg": _exact(c.mmHg) * _exact(c.inch) / _exact(c.milli)},
-    # A metre of water is the conventional one, 1000 kg/m³ under standard gravity.
-    **{"mH2O": _exact(c.g) * _exact(c.kilo), "cmH2O": _exact(c.g) * _exact(c.kilo) * _exact(c.centi)},
-    **{"mmH2O": _exact(c.g), "inH2O": _exact(c.g) * _exact(c.kilo) * _exact(c.inch)},
-    "ftH2O": _exact(c.g) * _exact(c.kilo) * _exact(c.foot),
-    **{"P": Fraction(1, 10), "cP": _exact(c.milli)},
-    **{"St": _exact(c.centi) ** 2, "cSt": _exact(c.milli) ** 2},
+_DEFINED: dict[str, Fraction] = {symbol: _exact(constant) for symbol, constant in {
+    "-": 1.0, "%": c.centi, "rad": 1.0,
+    "m": 1.0, "in": c.inch, "ft": c.foot, "mil": c.mil, "L": c.liter, "gal": c.gallon, "bbl": c.barrel,
+    "g": c.gram, "t": c.metric_ton, "lb": c.pound, "mol": 1.0,
+    "s": 1.0, "min": c.minute, "h": c.hour, "d": c.day, "yr": c.year, "Hz": 1.0,
+    "N": 1.0, "dyn": c.dyne, "kgf": c.g, "Pa": 1.0, "bar": c.bar, "atm": c.atm,
+    "J": 1.0, "cal": c.calorie_IT, "Btu": c.Btu_IT, "W": 1.0, "K": 1.0, "C": 1.0,
+}.items()}  # fmt: skip
+
+_PREFIXED = {
+    "μ": (c.micro, "m Pa"),
+    "m": (c.milli, "m N Pa bar mH2O"),
+    "c": (c.centi, "m P St mH2O"),
+    "h": (c.hecto, "Pa"),
+    "k": (c.kilo, "g lb mol J cal Btu W Pa"),
+    "M": (c.mega, "J cal W Pa"),
+    "G": (c.giga, "J cal Pa"),
+    "MM": (c.mega, "Btu"),
 }
 
+
+def _symbols() -> dict[str, Fraction]:
+    """SI value of every symbol."""
+    one = dict(_DEFINED)
+    one["deg"] = Fraction(c.degree)
+    one["F"] = one["R"] = 1 / _exact(1 / c.degree_Fahrenheit)
+    one["lbmol"] = one["lb"] / one["g"]
+    one["lbf"] = one["lb"] * one["kgf"]
+    one["psi"] = one["lbf"] / one["in"] ** 2
+    one["ksi"] = one["psi"] * _exact(c.kilo)
+    one["at"] = one["kgf"] / _exact(c.centi) ** 2
+    one["mmHg"] = one["torr"] = one["atm"] / _exact(c.atm / c.torr)
+    one["inHg"] = one["mmHg"] * one["in"] / _exact(c.milli)
+    one["mH2O"] = one["kgf"] * _exact(c.kilo)
+    one["inH2O"], one["ftH2O"] = one["mH2O"] * one["in"], one["mH2O"] * one["ft"]
+    one["P"], one["St"] = one["dyn"] / _exact(c.centi) ** 2, _exact(c.centi) ** 2
+    one["gpm"], one["cfm"] = one["gal"] / one["min"], one["ft"] ** 3 / one["min"]
+    one["rpm"] = 1 / one["min"]
+    for prefix, (factor, symbols) in _PREFIXED.items():
+        one.update({prefix + symbol: _exact(factor) * one[symbol] for symbol in symbols.split()})
+    return one
+
+
+_SYMBOLS = _symbols()
+
 _SPELLINGS: dict[str, str] = {spelling: symbol for symbol, spellings in {
-    "-": "", "%": "percent pct", "deg": "° degree degrees degs", "rad": "radian radians",
-    "m": "M meter meters metre metres", "mm": "MM", "cm": "", "μm": "um micron microns", "μPa": "uPa",
+    "%": "percent pct", "deg": "° degree degrees degs", "rad": "radian radians",
+    "m": "M meter meters metre metres", "mm": "MM", "μm": "um micron microns", "μPa": "uPa",
     "in": "\" '' inch inches", "ft": "' foot feet", "mil": "mils MIL",
     "g": "gram grams gm", "kg": "kgs", "t": "tonne tonnes", "lb": "lbs lbm pound pounds", "klb": "klbs klbm",
     "s": "sec secs second seconds", "min": "mins minute minutes MIN", "h": "hr hrs hour hours",
     "d": "day days", "yr": "yrs year years", "L": "ltr liter liters litre litres",
     "gal": "gals gallon gallons usgal usg", "bbl": "bbls barrel barrels", "gpm": "usgpm", "cfm": "acfm",
-    "K": "kelvin", "C": "celsius", "F": "fahrenheit", "R": "rankine",
-    "MMBtu": "mmbtu mmBtu", "cP": "cps centipoise", "cSt": "centistokes centistoke",
-    "kgf": "kp", "bar": "bars", "torr": "", "mmHg": "MMHG", "inHg": "\"Hg",
+    "K": "kelvin", "C": "celsius", "F": "fahrenheit", "R": "rankine", "kgf": "kp", "bar": "bars",
+    "MMBtu": "mmbtu mmBtu", "cP": "cps centipoise", "cSt": "centistokes centistoke", "mmHg": "MMHG",
     "mmH2O": "mmWC mmWG mmWS mmCE MMH2O MMWC", "cmH2O": "cmWC", "mH2O": "mWC mWG mWS mCE mlc MWC",
-    "inH2O": "inWC inWG \"WC \"H2O", "ftH2O": "ftWC", "rpm": "", "lbmol": "lb-mol",
+    "inH2O": "inWC inWG \"WC \"H2O", "ftH2O": "ftWC", "inHg": "\"Hg",
 }.items() for spelling in spellings.split()}  # fmt: skip
+"""Other names of the symbols, beyond those that differ in case alone."""
 
 
 @dataclass(frozen=True, kw_only=True)
 class _Quantity:
-    """What a quantity is called, the units in which each system shows it, and all the units it may be typed in."""
+    """What a quantity is called, its unit in each system, and all the units in which it may be typed."""
 
     name: str
-    shown: tuple[str, str, str]
+    shown: Mapping[str, str]
     labels: tuple[str, ...]
 
 
 def _quantity(name: str, si: str, us: str, metric: str, *others: str) -> _Quantity:
-    shown = (si, us, metric)
-    return _Quantity(name=name, shown=shown, labels=tuple(dict.fromkeys((*shown, *others))))
+    labels = tuple(dict.fromkeys((si, us, metric, *others)))
+    return _Quantity(name=name, shown={"si": si, "us": us, "metric": metric}, labels=labels)
 
 
 _PRESSURES = ("bar", "psi", "kgf/cm²", "kPa", "Pa", "hPa", "MPa", "mbar", "mmHg", "inHg", "torr", "atm", "at")
-_COLUMNS = ("mmH2O", "cmH2O", "mH2O", "inH2O", "ftH2O", "lbf/ft²", "N/m²")
+_PRESSURES += ("mmH2O", "cmH2O", "mH2O", "inH2O", "ftH2O", "lbf/ft²", "N/m²")
 
 
-def _marked(mark: str) -> tuple[str, ...]:
-    return tuple(label + (mark if label in ("bar", "psi") else f" {mark}") for label in _PRESSURES + _COLUMNS)
+def _marked(label: str, mark: str) -> str:
+    """The label of an absolute or a gauge pressure."""
+    return label + mark if label in ("bar", "psi") else f"{label} {mark}"
 
 
 _QUANTITIES: dict[str, _Quantity] = {
     "temperature": _quantity("a temperature", "°C", "°F", "°C", "K", "°R"),
     "temperature_difference": _quantity("a temperature difference", "K", "°F", "°C", "°R"),
-    "pressure_absolute": _quantity("an absolute pressure", "bara", "psia", "kgf/cm² a", *_marked("a")),
-    "pressure_gauge": _quantity("a gauge pressure", "barg", "psig", "kgf/cm² g", *_marked("g")),
-    "pressure_difference": _quantity("a pressure difference", "kPa", "psi", "kgf/cm²", *_PRESSURES, *_COLUMNS),
+    "pressure_absolute": _quantity("an absolute pressure", "bara", "psia", "kgf/cm² a", *(_marked(x, "a") for x in _PRESSURES)),
+    "pressure_gauge": _quantity("a gauge pressure", "barg", "psig", "kgf/cm² g", *(_marked(x, "g") for x in _PRESSURES)),
+    "pressure_difference": _quantity("a pressure difference", "kPa", "psi", "kgf/cm²", *_PRESSURES),
     "mass_flow": _quantity(
         "a mass flow", "kg/h", "lb/h", "kg/h", "kg/s", "t/h", "lb/s", "klb/h", "lb/min", "kg/min", "g/s", "t/d"
     ),
@@ -174,7 +195,7 @@ _QUANTITIES: dict[str, _Quantity] = {
     ),
     "conductivity": _quantity(
         "a thermal conductivity", "W/mK", "Btu/h·ft·°F", "kcal/h·m·°C", "kW/mK", "W/cmK", "Btu·in/h·ft²·°F",
- "cal/s·cm·°C",
+        "cal/s·cm·°C",
     ),
     "heat_flow": _quantity(
         "a heat flow", "kW", "Btu/h", "kcal/h", "W", "MW", "kBtu/h", "MMBtu/h", "Btu/s", "Mcal/h", "Gcal/h", "J/s",
@@ -196,7 +217,7 @@ _QUANTITIES: dict[str, _Quantity] = {
     "mass": _quantity("a mass", "kg", "lb", "kg", "g", "t", "klb"),
     "mass_per_length": _quantity("a mass per length", "kg/m", "lb/ft", "kg/m", "g/m"),
     "mass_flux": _quantity("a mass flux", "kg/m²s", "lb/h·ft²", "kg/m²s", "lb/s·ft²", "kg/h·m²"),
-    "momentum_flux": _quantity("a ρv²", "kg/m·s²", "lb/ft·s²", "kg/m·s²", "Pa", "N/m²"),
+    "momentum_flux": _quantity("a momentum flux ρv²", "kg/m·s²", "lb/ft·s²", "kg/m·s²", "Pa", "N/m²"),
     "velocity": _quantity("a velocity", "m/s", "ft/s", "m/s", "mm/s", "cm/s", "m/min", "ft/min", "m/h"),
     "time": _quantity("a time", "h", "h", "h", "s", "min", "d", "yr"),
     "frequency": _quantity("a frequency", "Hz", "Hz", "Hz", "1/s", "1/min", "rpm"),
@@ -218,17 +239,16 @@ _MARKS: dict[str, tuple[str, ...]] = {
 """What may stand at a unit to say which of the sister quantities is meant; "" is nothing."""
 
 _REFUSED: dict[str, str] = {
-    r"N\s?m(?:\^?3|3)|[Ss]m\^?3|(?i:mm|m|k)?(?i:scf)": "counts gas at a reference state; give the mass flow, "
-    "or the volume flow at inlet conditions",
-    r"(?i:(?:short |long |metric )?tons?\b)": "does not say which ton; write t for 1000 kg, or lb",
-    r"M(?i:btu)": "is read as a thousand by some and a million by others; write kBtu or MMBtu",
-    r"(?i:ss[uf]\b|sus\b|saybolt)": "is a time on a viscometer; give the viscosity in cP or cSt",
-    r"(?i:.*\bvac(?:uum)?\b)": "counts downwards from the atmosphere; give the absolute pressure",
-    r"(?i:.*\bvol\.?\s?%|.*%\s?vol)": "is a share of volume; give the share of mass in %",
+    r"n ?m\^?3|sm\^?3|m{0,2}scf": "counts gas at a reference state; give the mass flow, or the volume flow at the inlet",
+    r"(?:short |long |metric )?tons?\b": "does not say which ton; write t for 1000 kg, or lb",
+    r"(?-i:M)btu": "is read as a thousand by some and as a million by others; write kBtu or MMBtu",
+    r"ss[uf]\b|sus\b|saybolt": "is a time on a viscometer; give the viscosity in cP or cSt",
+    r".*\bvac(?:uum)?\b": "counts downwards from the atmosphere; give the absolute pressure",
+    r"vol\b|.*%\s?\(?vol": "is a share of the volume; give the share of the mass in %",
 }
+"""Units that cannot be taken at their word, and why."""
 
-
-_BEFORE_NFKC = str.maketrans({
+_LOOKALIKES = str.maketrans({
     **dict.fromkeys("−–—‐‑‒﹣", "-"), **dict.fromkeys("º˚", "°"), **dict.fromkeys("″“”„", '"'),
     **dict.fromkeys("′’‘´`", "'"), **dict.fromkeys("⋅∙•‧×", "·"), **dict.fromkeys("∕⁄÷", "/"),
     **dict.fromkeys("\u200b\u200c\u200d\u2060\ufeff", ""), "∆": "Δ",
@@ -241,76 +261,75 @@ def _clean(text: str) -> str:
     text = "".join(
         f" {unicodedata.normalize('NFKC', x)}" if "<fraction>" in unicodedata.decomposition(x) else x for x in text
     )
-    text = unicodedata.normalize("NFKC", text.translate(_BEFORE_NFKC)).translate(_BEFORE_NFKC)
+    text = unicodedata.normalize("NFKC", text.translate(_LOOKALIKES)).translate(_LOOKALIKES)
     return re.sub(r"\s+", " ", text).strip()
 
 
 def _folded(spelling: str) -> str:
-    return spelling[0] + spelling[1:].casefold() if spelling[0] in "mM" else spelling.casefold()
+    return spelling[0] + spelling[1:].lower() if spelling[0] in "mM" else spelling.lower()
 
 
-def _tokens(fold: bool) -> tuple[re.Pattern[str], dict[str, str]]:
-    symbols = {**{symbol: symbol for symbol in _SYMBOLS}, **_SPELLINGS}
-    longest_first = sorted(symbols, key=len, reverse=True)
+@dataclass(frozen=True)
+class _Lexicon:
+    """Finds the next token of a unit, and the symbol behind a spelling."""
+
+    token: re.Pattern[str]
+    symbols: Mapping[str, str]
+
+
+def _lexicon(fold: bool) -> _Lexicon:
+    symbols = {symbol: symbol for symbol in _SYMBOLS} | _SPELLINGS
     if fold:
-        names = "|".join(
-            f"{s[0]}(?i:{re.escape(s[1:])})" if s[0] in "mM" else f"(?i:{re.escape(s)})" for s in longest_first
-        )
-        symbols = {_folded(spelling): symbol for spelling, symbol in symbols.items()}
-    else:
-        names = "|".join(map(re.escape, longest_first))
-    token = r"(?P<open>\()|(?P<close>\))|(?P<over>/)|(?P<times>[\s·*.-]+)|(?P<one>1(?!\d))"
-    token += rf"|(?P<symbol>{names})(?:\^?(?P<power>-?\d))?"
-    return re.compile(token), symbols
+        symbols |= {_folded(spelling): symbol for spelling, symbol in symbols.items()}
+    names = [
+        re.escape(x) if not fold else f"{x[0]}(?i:{re.escape(x[1:])})" if x[0] in "mM" else f"(?i:{re.escape(x)})"
+        for x in sorted(symbols, key=len, reverse=True)
+    ]
+    token = rf"([(])|([)])|(/)|[\s·*.-]+|1(?!\d)|(?P<name>{'|'.join(names)})(?:\^?(?P<power>-?\d))?"
+    return _Lexicon(re.compile(token, re.ASCII), symbols)
 
 
-_READERS = (_tokens(fold=False), _tokens(fold=True))
+# Exact case comes first: in Btu/lbF the F is a degree, though "lbf" is a force.
+_LEXICONS = (_lexicon(fold=False), _lexicon(fold=True))
 _Powers = tuple[tuple[str, int], ...]
 
 
-def _powers(unit: str, token: re.Pattern[str], symbols: Mapping[str, str]) -> _Powers | None:
-    """Symbols and their powers, None where the unit has another word; all that follows a "/" divides."""
+def _powers(unit: str, lexicon: _Lexicon = _LEXICONS[0]) -> _Powers:
+    """Symbols of a cleaned unit and their powers; empty where it has another word in it."""
     if unit in ("", "-"):
         return (("-", 1),)
     powers: Counter[str] = Counter()
-    outside: list[int] = []
     sign, group, at = 1, 1, 0
+    outside: list[tuple[int, int]] = []
     while at < len(unit):
-        found = token.match(unit, at)
-        if found is None:
-            return None
-        at = found.end()
-        if found["open"]:
-            outside.append(group)
-            outside.append(sign)
+        token = lexicon.token.match(unit, at)
+        if token is None or (token[2] and not outside):
+            return ()
+        at = token.end()
+        if token[1]:
+            outside.append((sign, group))
             group = sign
-        elif found["close"]:
-            if not outside:
-                return None
-            sign, group = outside.pop(), outside.pop()
-        elif found["over"]:
+        elif token[2]:
+            sign, group = outside.pop()
+        elif token[3]:
             sign = -group
-        elif found["symbol"]:
-            name = found["symbol"]
-            symbol = symbols.get(name) or symbols[_folded(name)]
-            powers[symbol] += sign * int(found["power"] or 1)
-    if outside:
-        return None
-    if len(powers) > 1:  # in a compound unit a degree is a difference: °C is K and °R is °F
-        for degree, same in (("C", "K"), ("R", "F")):
-            powers[same] += powers.pop(degree, 0)
-    return tuple(sorted((symbol, power) for symbol, power in powers.items() if power)) or None
+        elif name := token["name"]:
+            symbol = lexicon.symbols.get(name) or lexicon.symbols[_folded(name)]
+            powers[symbol] += sign * int(token["power"] or 1)
+    if len(powers) > 1:  # within a compound unit a degree is a difference
+        powers["K"] += powers.pop("C", 0)
+        powers["F"] += powers.pop("R", 0)
+    return () if outside else tuple(sorted((symbol, power) for symbol, power in powers.items() if power))
 
 
-_ALSO: dict[_Powers | None, _Powers] = {
-    (("cm", -2), ("kg", 1)): (("cm", -2), ("kgf", 1)),
-    (("kg", 1), ("mm", -2)): (("kgf", 1), ("mm", -2)),
-    (("in", -2), ("lb", 1)): (("psi", 1),),
-    (("in", -2), ("lbf", 1)): (("psi", 1),),
-    (("ft", -2), ("lb", 1)): (("ft", -2), ("lbf", 1)),
-    (("Btu", 1), ("lbf", -1)): (("Btu", 1), ("F", -1), ("lb", -1)),
+_ALSO: dict[_Powers, _Powers] = {
+    _powers(habit): _powers(meant)
+    for habit, meant in {
+        **{"kg/cm2": "kgf/cm2", "kg/mm2": "kgf/mm2", "lb/ft2": "lbf/ft2", "lb/in2": "psi", "lbf/in2": "psi"},
+        "Btu/lbf": "Btu/lb F",
+    }.items()
 }
-"""Habits that the symbols alone would misread: a kilogram that is a force, "Btu/lbf" for Btu/lb°F in capitals."""
+"""Habits that the symbols would misread: a mass that is a force, and Btu/lb°F in capitals."""
 
 _MARKED = re.compile(r"(.*?)\s*\(?(?:(a|abs|absolute)|(g|ga|gauge|gage)|(d|diff|differential))\.?\)?", re.IGNORECASE)
 
@@ -318,19 +337,17 @@ _MARKED = re.compile(r"(.*?)\s*\(?(?:(a|abs|absolute)|(g|ga|gauge|gage)|(d|diff|
 def _readings(unit: str) -> Iterator[tuple[str, _Powers]]:
     """Each way to read a cleaned unit, as (mark, powers), the likeliest first."""
     unit = re.sub(r"(?i)(?:°|deg(?:rees?|\.)?)\s*(?=[CFKR])", "", unit)
-    unit = re.sub(
-        r"(?i)\b(sq|cu)\.?\s*(mm|cm|m|ft|feet|foot|in)", lambda x: f"{x[2]}{2 if x[1].lower() == 'sq' else 3}", unit
-    )
-    unit = re.sub(r"(?i)\bu\.?s\.?\s(?=g)|\s?\(us\)", "", unit)
+    unit = re.sub(r"(?i)\bsq\.? ?(mm|cm|m|ft|feet|foot|in)", r"\g<1>2", unit)
+    unit = re.sub(r"(?i)\bcu\.? ?(mm|cm|m|ft|feet|foot|in)", r"\g<1>3", unit)
+    unit = re.sub(r"(?i)\bu\.?s\.? (?=g)| ?\(us\)", "", unit)
     marked = [("", unit)]
-    if difference := re.fullmatch(r"(?:Δ|(?i:delta))\s*(.+)", unit):
+    if difference := re.fullmatch(r"(?:Δ|(?i:delta)) ?(.+)", unit):
         marked.append(("Δ", difference[1]))
     if pressure := _MARKED.fullmatch(unit):
         marked.append(("agd"[(pressure.lastindex or 2) - 2], pressure[1]))
-    for token, symbols in _READERS:
+    for lexicon in _LEXICONS:
         for mark, rest in marked:
-            powers = _powers(rest, token, symbols)
-            if powers:
+            if powers := _powers(rest, lexicon):
                 yield mark, _ALSO.get(powers, powers)
 
 
@@ -362,7 +379,7 @@ def units_of(quantity: str) -> tuple[str, ...]:
 
 def unit_of(quantity: str, system: str = "si") -> str:
     """Label of the unit in which a system shows the quantity."""
-    return _QUANTITIES[quantity].shown[list(SYSTEMS).index(system)]
+    return _QUANTITIES[quantity].shown[system]
 
 
 def find(unit: str, *quantities: str) -> Unit:
@@ -370,19 +387,20 @@ def find(unit: str, *quantities: str) -> Unit:
 
     Raises UnitError if none of the quantities has it.
     """
-    found = _find(_clean(unit), quantities)
+    cleaned = _clean(unit)
+    found = _find(cleaned, quantities)
     if found is None:
-        raise UnitError(_why_not(f'the unit "{_quoted(unit)}"', _clean(unit), quantities))
+        raise UnitError(_why_not(f'"{_quoted(unit)}"', cleaned, quantities))
     return found
 
 
-def to_unit(value: Any, quantity: str, unit: str) -> Any:
+def to_unit(value: Numbers, quantity: str, unit: str) -> Numbers:
     """An SI value, or an array of them, in the given unit."""
     known = find(unit, quantity)
-    return value / float(known.factor) - float(known.zero) if known.zero else value / float(known.factor)
+    return value / float(known.factor) - float(known.zero)
 
 
-def from_unit(figure: Any, quantity: str, unit: str) -> Any:
+def from_unit(figure: Numbers, quantity: str, unit: str) -> Numbers:
     """A figure in the given unit, or an array of them, in SI."""
     known = find(unit, quantity)
     return (figure + float(known.zero)) * float(known.factor)
@@ -412,14 +430,11 @@ def _figure(x: Fraction, magnitude: Fraction, digits: int) -> str:
     return f"{rounded:f}" if -6 < leading < max(digits, 7) else f"{rounded:e}"
 
 
+@lru_cache(maxsize=4096)
 def _find(unit: str, quantities: tuple[str, ...]) -> Unit | None:
     """The unit of a cleaned spelling."""
     readings = list(_readings(unit))
-    for quantity in quantities:
-        for reading in readings:
-            if reading in _TABLE[quantity]:
-                return _TABLE[quantity][reading]
-    return None
+    return next((_TABLE[q][reading] for q in quantities for reading in readings if reading in _TABLE[q]), None)
 
 
 def _quoted(text: str) -> str:
@@ -440,21 +455,23 @@ def _allowed(quantities: tuple[str, ...]) -> str:
     return " or ".join(several)
 
 
-def _why_not(given: str, unit: str, quantities: tuple[str, ...], number: str = "3") -> str:
+def _why_not(given: str, unit: str, quantities: tuple[str, ...], number: str = "") -> str:
     """The sentence that says why a cleaned unit is not accepted for the quantities."""
     for pattern, reason in _REFUSED.items():
-        if re.match(pattern, unit):
+        if re.match(pattern, unit, re.IGNORECASE):
             return f"{given} {reason}"
     other = _find(unit, QUANTITIES)
-    if other is None:
-        return f"{given} has a unit that is not known here; allowed is {_allowed(quantities)}"
-    if other.quantity == "pressure_difference":
-        sisters = [q for q in quantities if q in ("pressure_absolute", "pressure_gauge")]
-        if sisters:
-            label = other.label + ("" if other.label in ("bar", "psi") else " ")
-            ways = " or ".join(f'"{number} {_plain(label)}{_MARKS[q][0]}"' for q in sisters)
-            return f"{given} does not say whether it is absolute or gauge; write {ways}"
-    return f"{given} is {_QUANTITIES[other.quantity].name}; allowed is {_allowed(quantities)}"
+    sisters = [mark for q, mark in (("pressure_absolute", "a"), ("pressure_gauge", "g")) if q in quantities]
+    if other and other.quantity == "pressure_difference" and sisters:
+        ways = " or ".join(f'"{number} {_plain(_marked(other.label, mark))}"'.replace('" ', '"') for mark in sisters)
+        return f"{given} does not say whether it is absolute or gauge; write {ways}"
+    if other:
+        return f"{given} is {_QUANTITIES[other.quantity].name}; allowed is {_allowed(quantities)}"
+    if meant := _find(unit.translate(str.maketrans("mM", "Mm")), quantities):
+        return (
+            f'{given} takes the m of milli for the M of mega or the other way; write "{_plain(meant.label)}" if meant'
+        )
+    return f"{given} has a unit that is not known here; allowed is {_allowed(quantities)}"
 
 
 _NUMBER = re.compile(
@@ -462,7 +479,7 @@ _NUMBER = re.compile(
     r"(?:[eE]([+-]?\d+)|\s*[x·*]\s*10(?:\^([+-]?\d+)|([+-]\d+)))?"
 )
 _TRADE_FRACTION = re.compile(r"(?:(\d{1,6})(?: - | |-))?(\d{1,6})/(\d{1,6})(?![\d.,])")
-_FEET_AND_INCHES = re.compile(r"(\d{1,6}) ?(?:'|ft|feet)[ -]*(\d[^'\"a-z]*)(?:\"|''|in|inch|inches)")
+_FEET_AND_INCHES = re.compile(r"(\d{1,6}) ?(?:'|ft|feet)[ -]*(\d[^'\"a-z]*)(?:\"|''|in|inch|inches)", re.IGNORECASE)
 _DEVIATION = re.compile(r"±|\+ ?/ ?-|\+ ?-")
 
 
@@ -569,7 +586,7 @@ def _known(number: _Number, unit: str, given: str, quantities: tuple[str, ...]) 
     if known is None:
         raise UnitError(_why_not(given, unit, quantities, number.text))
     if number.digit == 0 and known.quantity != "length":
-        raise UnitError(f"{given} is a fraction; only a length can be one")
+        raise UnitError(f"{given} is written as a fraction, which only a length may be; write a decimal")
     if known.quantity == "fraction" and known.label == "-" and number.value > 1:
         raise UnitError(f'{given} gives no unit and is above 1; write for example "{number.text} %"')
     return known

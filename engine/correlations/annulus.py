@@ -313,7 +313,7 @@ class FinnedAnnulus:
         """Four times the free area over the wetted perimeter, that of the outer pipe included [m]."""
         return 4.0 * self.flow_area / (float(np.pi * self.D_o) + self.unfinned + self.finned)
 
-    def effective_share(self, h: Real, k: Real) -> Real:
+    def area_factor(self, h: Real, k: Real) -> Real:
         """(A_unfinned + efficiency A_fin)/A_bare: turns h on the wetted area into h on the bare tube.
 
         The tip counts as half a thickness more height, as its area does.

@@ -115,7 +115,7 @@ class DoublePipe(Input):
             assumed="commercial steel pipe (common practice)",
             example="0.045 mm",
         ),
-    ] = losses.ROUGHNESS_STEEL
+    ] = losses.COMMERCIAL_STEEL.value
     outside_roughness: Annotated[
         float,
         Stated(
@@ -126,7 +126,7 @@ class DoublePipe(Input):
             assumed="commercial steel pipe (common practice)",
             example="0.045 mm",
         ),
-    ] = losses.ROUGHNESS_STEEL
+    ] = losses.COMMERCIAL_STEEL.value
     fins: Fins | None = None
     bend_length: Annotated[
         float,
@@ -210,12 +210,11 @@ class DoublePipe(Input):
         if self.fins is None:
             return None
         return annulus.FinnedAnnulus(
-            Do=self.shell_id,
-            Di=self.tube_od,
+            D_o=self.shell_id,
+            D_i=self.tube_od,
             count=self.fins.count,
             height=float(self.fins.height),
             thickness=float(self.fins.thickness),
-            k=float(self.fins.conductivity),
         )
 
     def cells(self, fineness: int = 1) -> Cells:
@@ -240,7 +239,6 @@ class DoublePipe(Input):
             arrangement="counter" if self.arrangement == "counter" else "co-current",
             inside="split" if self.branches("inside") > 1 else "in turn",
             outside="split" if self.branches("outside") > 1 else "in turn",
-            legs=legs,
         )
         leg = float(self.leg_length)
         edges = np.linspace(0.0, leg, per_leg + 1)
@@ -302,21 +300,37 @@ class DoublePipe(Input):
             Nu, regime = annulus.nusselt_annulus(Re, Pr, d_h, ratio, x1, x2, wall=wall, factors=factors)
         own = self.tube_id if side == "inside" else self.tube_od
         h = Nu * at.bulk.k / d_h * (surface / own) * getattr(self.film_factor, side)
-        if side == "outside" and self.finned is not None:
-            h = self.finned.on_bare_area(h)
+        if side == "outside" and self.finned is not None and self.fins is not None:
+            h = h * self.finned.effective_share(h, float(self.fins.conductivity))
         return Film(h=h, Re=Re, Pr=Pr, velocity=G / at.bulk.rho, regime=regime, relations=relations)
 
     def second_opinions(self, side: Side, cells: Cells, at: Flowing) -> dict[str, Array]:
-        area, d_h, _ = self._passage(side, at)
+        area, d_h, surface = self._passage(side, at)
         Re = at.flow[:, None] / self.branches(side) / area * d_h / at.bulk.mu
-        mu_ratio = at.mu_wall / at.bulk.mu
-        L = cells.leg[side]
-        relations = inside_tubes if side == "inside" or self.finned is not None else annulus
-        if relations is annulus:
-            Nu = annulus.second_opinions(Re, at.bulk.Pr, d_h, self.tube_od / self.shell_id, L, mu_ratio, at.heated)
-        else:
-            Nu = inside_tubes.second_opinions(Re, at.bulk.Pr, d_h, L, mu_ratio, at.heated)
-        return {name: (value * at.bulk.k / d_h).mean(axis=1) for name, value in Nu.items()}
+        Pr, mu_ratio, L = at.bulk.Pr, at.mu_wall / at.bulk.mu, cells.leg[side]
+        lowest, highest = float(Re.min()), float(Re.max())
+        plain_annulus = side == "outside" and self.finned is None
+        found: dict[Correlation, Array] = {}
+        if plain_annulus:
+            if lowest >= inside_tubes.RE_TURBULENT:
+                relation = annulus.annulus_equivalent_diameter
+                found[relation] = relation(Re, Pr, surface / self.shell_id, mu_ratio)
+        elif lowest >= inside_tubes.RE_TURBULENT:
+            found[inside_tubes.gnielinski_1976] = inside_tubes.gnielinski_1976(Re, Pr)
+            found[inside_tubes.dittus_boelter] = inside_tubes.dittus_boelter(Re, Pr, at.heated)
+            found[inside_tubes.sieder_tate_turbulent] = inside_tubes.sieder_tate_turbulent(Re, Pr, mu_ratio)
+        elif highest < inside_tubes.RE_LAMINAR:
+            found[inside_tubes.hausen_laminar] = inside_tubes.hausen_laminar(Re, Pr, d_h / L)
+            found[inside_tubes.sieder_tate_laminar] = inside_tubes.sieder_tate_laminar(Re, Pr, d_h / L, mu_ratio)
+        if inside_tubes.RE_LAMINAR < highest < inside_tubes.RE_TURBULENT:
+            joined = {"wall": self._wall(at), "joined_by": inside_tubes.transition_2013}
+            if plain_annulus:
+                Nu = annulus.nusselt_annulus(Re, Pr, d_h, surface / self.shell_id, 0.0, L, **joined)[0]
+            else:
+                Nu = inside_tubes.nusselt_tube(Re, Pr, d_h, 0.0, L, **joined)[0]
+            found[inside_tubes.transition_2013] = Nu
+        own = self.tube_id if side == "inside" else self.tube_od
+        return {relation.name: (Nu * at.bulk.k / d_h * surface / own).mean(axis=1) for relation, Nu in found.items()}
 
     def excursions(self, side: Side, cells: Cells, at: Flowing, film: Film) -> tuple[Excursion, ...]:
         _, d_h, surface = self._passage(side, at)
@@ -340,7 +354,7 @@ class DoublePipe(Input):
     def fouling_resistance(self, side: Side, R: Array) -> Array:
         if side == "inside":
             return R * self.area_ratio
-        return R if self.finned is None else R * self.finned.bare_area / self.finned.wetted_area
+        return R if self.finned is None else R * self.finned.bare / (self.finned.unfinned + self.finned.finned)
 
     # --- drops ------------------------------------------------------------------------------------------------------
 
@@ -348,11 +362,9 @@ class DoublePipe(Input):
         area, d_h, surface = self._passage(side, at)
         roughness = float(self.inside_roughness if side == "inside" else self.outside_roughness) / d_h
         if side == "inside" or self.finned is not None:
-            f = losses.friction_churchill(film.Re, roughness)
+            f = losses.friction_tube(film.Re, roughness, wall=self._wall(at))
         else:
-            f = annulus.friction_annulus(film.Re, surface / self.shell_id, roughness)
-        if not at.gas:
-            f = f * losses.wall_factor(film.Re, at.mu_wall / at.bulk.mu, at.heated)
+            f = annulus.friction_annulus(film.Re, surface / self.shell_id, roughness, wall=self._wall(at))
         head = at.bulk.rho * film.velocity**2 / 2
         per_metre = f / d_h * head
         legs = self.legs_on_path(side)
@@ -363,10 +375,10 @@ class DoublePipe(Input):
         returns = np.zeros_like(friction)
         if side == "inside":
             friction = friction + per_metre.mean(axis=1) * bends * float(self.bend_length)
-            returns = losses.RETURN_BEND.heads * bends * mean_head
-            ends = losses.TUBE_ENTRANCE.heads * head[:, 0] + losses.TUBE_EXIT.heads * head[:, -1]
+            returns = losses.RETURN_BEND.value * bends * mean_head
+            ends = losses.TUBE_ENTRANCE.value * head[:, 0] + losses.TUBE_EXIT.value * head[:, -1]
         else:
-            ends = losses.ANNULUS_HAIRPIN.heads * -(-legs // 2) * mean_head
+            ends = losses.ANNULUS_HAIRPIN.value * -(-legs // 2) * mean_head
         if at.gas:
             # A gas also pays for its acceleration as density falls along the way.
             G = at.flow / self.branches(side) / area[:, 0]
@@ -377,13 +389,13 @@ class DoublePipe(Input):
         parts["nozzles"] = np.zeros_like(friction)
         if nozzle is not None:
             v = at.flow / (at.bulk.rho.mean(axis=1) * np.pi / 4 * float(nozzle) ** 2)
-            heads = losses.NOZZLE_IN.heads + losses.NOZZLE_OUT.heads
+            heads = losses.NOZZLE_IN.value + losses.NOZZLE_OUT.value
             parts["nozzles"] = heads * at.bulk.rho.mean(axis=1) * v**2 / 2
         factor = getattr(self.dp_factor, side) * at.factor_of(self.drop_relation(side))
         return {name: part * factor for name, part in parts.items()}
 
     def drop_relation(self, side: Side) -> Correlation:
-        return annulus.friction_annulus_relation if side == "outside" and self.finned is None else losses.churchill
+        return annulus.annulus_turbulent_friction if side == "outside" and self.finned is None else losses.churchill
 
     # --- the whole --------------------------------------------------------------------------------------------------
 
