@@ -157,20 +157,34 @@ def _quantity(name: str, si: str, us: str, metric: str, *others: str) -> _Quanti
     return _Quantity(name=name, shown={"si": si, "us": us, "metric": metric}, labels=labels)
 
 
-_PRESSURES = ("bar", "psi", "kgf/cm²", "kPa", "Pa", "hPa", "MPa", "mbar", "mmHg", "inHg", "torr", "atm", "at")
+_PRESSURES: tuple[str, ...] = (
+    "bar",
+    "psi",
+    "kgf/cm²",
+    "kPa",
+    "Pa",
+    "hPa",
+    "MPa",
+    "mbar",
+    "mmHg",
+    "inHg",
+    "torr",
+    "atm",
+    "at",
+)
 _PRESSURES += ("mmH2O", "cmH2O", "mH2O", "inH2O", "ftH2O", "lbf/ft²", "N/m²")
 
 
-def _marked(label: str, mark: str) -> str:
-    """The label of an absolute or a gauge pressure."""
-    return label + mark if label in ("bar", "psi") else f"{label} {mark}"
+def _marked(mark: str, labels: tuple[str, ...] = _PRESSURES) -> tuple[str, ...]:
+    """The labels of absolute or of gauge pressures."""
+    return tuple(label + mark if label in ("bar", "psi") else f"{label} {mark}" for label in labels)
 
 
 _QUANTITIES: dict[str, _Quantity] = {
     "temperature": _quantity("a temperature", "°C", "°F", "°C", "K", "°R"),
     "temperature_difference": _quantity("a temperature difference", "K", "°F", "°C", "°R"),
-    "pressure_absolute": _quantity("an absolute pressure", "bara", "psia", "kgf/cm² a", *(_marked(x, "a") for x in _PRESSURES)),
-    "pressure_gauge": _quantity("a gauge pressure", "barg", "psig", "kgf/cm² g", *(_marked(x, "g") for x in _PRESSURES)),
+    "pressure_absolute": _quantity("an absolute pressure", "bara", "psia", "kgf/cm² a", *_marked("a")),
+    "pressure_gauge": _quantity("a gauge pressure", "barg", "psig", "kgf/cm² g", *_marked("g")),
     "pressure_difference": _quantity("a pressure difference", "kPa", "psi", "kgf/cm²", *_PRESSURES),
     "mass_flow": _quantity(
         "a mass flow", "kg/h", "lb/h", "kg/h", "kg/s", "t/h", "lb/s", "klb/h", "lb/min", "kg/min", "g/s", "t/d"
@@ -239,7 +253,7 @@ _MARKS: dict[str, tuple[str, ...]] = {
 """What may stand at a unit to say which of the sister quantities is meant; "" is nothing."""
 
 _REFUSED: dict[str, str] = {
-    r"n ?m\^?3|sm\^?3|m{0,2}scf": "counts gas at a reference state; give the mass flow, or the volume flow at the inlet",
+    r"[ns] ?m\^?3|m{0,2}scf": "counts gas at a reference state; give the mass flow or the volume flow at the inlet",
     r"(?:short |long |metric )?tons?\b": "does not say which ton; write t for 1000 kg, or lb",
     r"(?-i:M)btu": "is read as a thousand by some and as a million by others; write kBtu or MMBtu",
     r"ss[uf]\b|sus\b|saybolt": "is a time on a viscometer; give the viscosity in cP or cSt",
@@ -461,9 +475,9 @@ def _why_not(given: str, unit: str, quantities: tuple[str, ...], number: str = "
         if re.match(pattern, unit, re.IGNORECASE):
             return f"{given} {reason}"
     other = _find(unit, QUANTITIES)
-    sisters = [mark for q, mark in (("pressure_absolute", "a"), ("pressure_gauge", "g")) if q in quantities]
-    if other and other.quantity == "pressure_difference" and sisters:
-        ways = " or ".join(f'"{number} {_plain(_marked(other.label, mark))}"'.replace('" ', '"') for mark in sisters)
+    marks = [_MARKS[q][0] for q in quantities if q in ("pressure_absolute", "pressure_gauge")]
+    if other and other.quantity == "pressure_difference" and marks:
+        ways = " or ".join(f'"{number}{_plain(*_marked(mark, (other.label,)))}"' for mark in marks)
         return f"{given} does not say whether it is absolute or gauge; write {ways}"
     if other:
         return f"{given} is {_QUANTITIES[other.quantity].name}; allowed is {_allowed(quantities)}"
@@ -584,7 +598,7 @@ def _known(number: _Number, unit: str, given: str, quantities: tuple[str, ...]) 
     if known is None and not unit:
         raise UnitError(f'{given} gives no unit; write for example "{number.text} {_plain(unit_of(quantities[0]))}"')
     if known is None:
-        raise UnitError(_why_not(given, unit, quantities, number.text))
+        raise UnitError(_why_not(given, unit, quantities, f"{number.text} "))
     if number.digit == 0 and known.quantity != "length":
         raise UnitError(f"{given} is written as a fraction, which only a length may be; write a decimal")
     if known.quantity == "fraction" and known.label == "-" and number.value > 1:
