@@ -21,6 +21,7 @@ from engine.correlations.inside_tubes import (
     at,
     cell_entrance,
     cell_mean,
+    check_above_zero,
     checked_cells,
     excursions_by_regime,
     konakov,
@@ -253,7 +254,11 @@ def annulus_turbulent_friction(Re: Array, a: Array, roughness_ratio: Array) -> A
 
 
 def friction_annulus(Re: Real, a: Real, roughness_ratio: Real, *, wall: Wall = AS_BULK) -> Array:
-    """Darcy friction factor on d_h at every Re, linear in Re across the transition, with the wall's viscosity."""
+    """Darcy friction factor on d_h at every Re, linear in Re across the transition, with the wall's viscosity.
+
+    Raises ValueError where Re is not above zero.
+    """
+    check_above_zero(Re=Re)
     share = turbulent_share(np.asarray(Re), RE_FRICTION_TURBULENT)
     laminar = annulus_laminar_friction(np.minimum(Re, RE_LAMINAR), a)
     turbulent = annulus_turbulent_friction(np.maximum(Re, RE_FRICTION_TURBULENT), a, roughness_ratio)
@@ -316,7 +321,8 @@ class FinnedAnnulus:
     def area_factor(self, h: Real, k: Real) -> Real:
         """(A_unfinned + efficiency A_fin)/A_bare: turns h on the wetted area into h on the bare tube.
 
-        The tip counts as half a thickness more height, as its area does.
+        With a deposit, h is that of film and deposit in series, since both lie on the whole wetted area. The tip counts
+        as half a thickness more height, as its area does.
         """
         efficiency: Real = fin_efficiency(h, k, self.thickness, self.height + self.thickness / 2.0)
         return (self.unfinned + efficiency * self.finned) / self.bare

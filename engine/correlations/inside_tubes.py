@@ -384,12 +384,19 @@ def excursions_tube(
 # What the tube and the annulus share
 
 
+def check_above_zero(**numbers: Real) -> None:
+    """ValueError that names the first of the numbers which is not finite and above zero throughout."""
+    for name, value in numbers.items():
+        lowest, highest = np.min(value), np.max(value)
+        if not 0.0 < lowest <= highest < np.inf:
+            raise ValueError(
+                f"{name} must be a number above zero at every point and cell; given {lowest:g} to {highest:g}."
+            )
+
+
 def checked_cells(Re: Real, Pr: Real, x1: Real, x2: Real) -> tuple[Array, Array, Array, Array]:
     """The arguments as arrays; ValueError where Re or Pr is not above zero or a cell has no length."""
-    for name, value in (("Re", Re), ("Pr", Pr)):
-        lowest = np.min(value)
-        if not lowest > 0.0:
-            raise ValueError(f"{name} must be a number above zero in every cell; the lowest given is {lowest:g}.")
+    check_above_zero(Re=Re, Pr=Pr)
     Re, Pr, x1, x2 = (np.asarray(v, dtype=float) for v in (Re, Pr, x1, x2))
     if not (np.all(x1 >= 0.0) and np.all(x2 > x1)):
         raise ValueError("A cell must end further from the inlet of its leg than it starts: 0 <= x1 < x2.")

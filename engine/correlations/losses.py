@@ -10,7 +10,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from engine.correlations import Array, Range, Source, correlation
-from engine.correlations.inside_tubes import AS_BULK, RE_LAMINAR, Real, Wall, turbulent_share
+from engine.correlations.inside_tubes import AS_BULK, RE_LAMINAR, Real, Wall, check_above_zero, turbulent_share
 from engine.correlations.sources import (
     CHURCHILL_1977,
     COLEBROOK_1939,
@@ -127,7 +127,11 @@ def wall_factor_friction_petukhov(mu_ratio: Array) -> Array:
 
 
 def friction_tube(Re: Real, roughness_ratio: Real, *, wall: Wall = AS_BULK) -> Array:
-    """Darcy friction factor in a tube at every Re, with the wall's viscosity for liquids."""
+    """Darcy friction factor in a tube at every Re, with the wall's viscosity for liquids.
+
+    Raises ValueError where Re is not above zero.
+    """
+    check_above_zero(Re=Re)
     f: Array = churchill(Re, roughness_ratio)
     return f * friction_wall_factor(Re, wall)
 

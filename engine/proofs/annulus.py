@@ -156,7 +156,7 @@ ROWS: tuple[Proof, ...] = (
         value=1834.1,
         unit="W/m2K",
         tolerance=0.10,
-        reason="another method (equivalent diameter, a factor read off a chart); one standard deviation of the relation",
+        reason="another method: equivalent diameter, a factor read off a chart; the slack is one standard deviation",
         kind="from memory",
         source="Kern, D. Q., Process Heat Transfer, 1950, Example 6.1",
     ),

@@ -252,7 +252,7 @@ ROWS: tuple[Proof, ...] = (
             value=Nu,
             unit="-",
             tolerance=0.08,
-            reason="the relation of 1976 with Petukhov's friction factor; the two part by (Re - 1000)/Re and by the friction",
+            reason="the relation of 1976 carries (Re - 1000)/Re and Petukhov's friction factor",
             kind="independent",
             source=HT + "turbulent_Gnielinski",
         )
@@ -309,7 +309,7 @@ ROWS: tuple[Proof, ...] = (
             tolerance=1e-4,
             reason="four decimals",
             kind="derived",
-            source="Gnielinski, V., Int. J. Heat Mass Transfer 63 (2013) 134-140: formulas evaluated apart from this code",
+            source="Gnielinski, V., Int. J. Heat Mass Transfer 63 (2013) 134-140: evaluated apart from this code",
         )
         for Re, Pr, d_over_L, _, Nu in TRANSITION
     ),
@@ -321,7 +321,7 @@ ROWS: tuple[Proof, ...] = (
             value=Nu,
             unit="-",
             tolerance=0.15,
-            reason="transitional flow depends on the inlet, here fitted inlet by inlet to the authors' own measurements; "
+            reason="transitional flow depends on the inlet; the example's relation is fitted inlet by inlet; "
             "after a bell-mouth the flow is still laminar (21.3), which no relation without the inlet can give",
             kind="independent",
             source="Çengel, Y. A., Ghajar, A. J., Heat and Mass Transfer, Example 8-8 (Ghajar & Tam 1994)" + COMPANION,
