@@ -54,9 +54,9 @@ _WALLS |= {same: _WALLS[one] for same, one in {"5": "5S", "10": "10S", "40S": "S
 
 
 def _inches(nps: str) -> Fraction | None:
-    """ "1 1/2", "1-1/2" and "1.5" are one size; None where it is no number."""
+    """The size that 1 1/2, 1-1/2, 1.5 and 1.5 in stand for; None where it is no number."""
     try:
-        return sum((Fraction(part) for part in nps.replace("-", " ").split()), Fraction(0))
+        return sum((Fraction(part) for part in nps.rstrip('in "').replace("-", " ").split()), Fraction(0))
     except (ValueError, ZeroDivisionError):
         return None
 
@@ -419,7 +419,7 @@ def tube_count(
     shell_id: float, tube_od: float, tube_pitch: float, layout_angle: float, tube_passes: int, *, u_tubes: bool = False
 ) -> TubeCount:
     """Tubes (U-tubes: legs) that usually fit a shell, from the published tables with 5 % or 4 tubes of slack, else the
-    area estimate between the outer tube limit of a fixed head and the bore, within 12 %.
+    area estimate between the outer tube limit of a split-ring head and the bore, within 12 %.
 
     Raises ValueError for an angle that is no tube layout.
     """
@@ -443,7 +443,7 @@ def tube_count(
     CTP = {1: 0.93, 2: 0.90}.get(tube_passes, 0.85)
     per_area = 0.785 * CTP / CL / tube_pitch**2
     return TubeCount(
-        low=0.88 * per_area * outer_tube_limit(shell_id, "L") ** 2,
+        low=0.88 * per_area * outer_tube_limit(shell_id, "S") ** 2,
         high=1.12 * per_area * shell_id**2,
         sources=(COUNT_ESTIMATE,),
     )
