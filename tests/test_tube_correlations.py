@@ -307,8 +307,8 @@ def test_finned_cross_section():
     assert fins.flow_area == pytest.approx(np.pi / 4 * (0.0779**2 - 0.0483**2) - 24 * 0.0127 * 0.89e-3)
     wetted = np.pi * 0.0779 + np.pi * 0.0483 - 24 * 0.89e-3 + 24 * (2 * 0.0127 + 0.89e-3)
     assert fins.d_h == pytest.approx(4.0 * fins.flow_area / wetted)
-    assert fins.area_factor(1e-9, 50.0) == pytest.approx((fins.unfinned + fins.finned) / fins.bare)
-    assert fins.unfinned / fins.bare < fins.area_factor(1e9, 50.0) < 1.0
+    assert fins.effective_share(1e-9, 50.0) == pytest.approx((fins.unfinned + fins.finned) / fins.bare)
+    assert fins.unfinned / fins.bare < fins.effective_share(1e9, 50.0) < 1.0
     assert nusselt_finned_annulus(5e4, 5.0, fins.d_h, 0.0, 6.0)[0] == nusselt_tube(5e4, 5.0, fins.d_h, 0.0, 6.0)[0]
 
 

@@ -318,7 +318,7 @@ class FinnedAnnulus:
         """Four times the free area over the wetted perimeter, that of the outer pipe included [m]."""
         return 4.0 * self.flow_area / (float(np.pi * self.D_o) + self.unfinned + self.finned)
 
-    def area_factor(self, h: Real, k: Real) -> Real:
+    def effective_share(self, h: Real, k: Real) -> Real:
         """(A_unfinned + efficiency A_fin)/A_bare: turns h on the wetted area into h on the bare tube.
 
         With a deposit, h is that of film and deposit in series, since both lie on the whole wetted area. The tip counts

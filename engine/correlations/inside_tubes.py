@@ -33,7 +33,6 @@ RE_TURBULENT = 1.0e4
 RE_TURBULENT_2013 = 4000.0
 """The same limit in Gnielinski's paper of 2013."""
 NU_ISOTHERMAL = 3.66
-NU_UNIFORM_FLUX = 48.0 / 11.0
 
 LAMINAR, TRANSITIONAL, TURBULENT = 0, 1, 2
 REGIMES = ("laminar", "transitional", "turbulent")
