@@ -17,7 +17,7 @@ import sys
 import threading
 from abc import ABC, abstractmethod
 from collections.abc import Callable, Iterator
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, fields
 from functools import cache, lru_cache
 from typing import Any, Literal
 
@@ -192,6 +192,10 @@ class Fluid(ABC):
         digits = 0 if abs(T - limit) >= 2 else 1 if abs(T - limit) >= 0.1 else 3
         return f"{where}: {self.name} at {_celsius(T, digits)} {reason} ({_celsius(limit, digits)})"
 
+    def within(self, T_low: float, T_high: float) -> Fluid:
+        """The same fluid made fast for temperatures between two limits; itself where that gains nothing."""
+        return self
+
     def saturation_temperature(self, p: float) -> float | None:
         """Boiling temperature at absolute pressure p; None where it is not known or p is above the critical."""
         return _saturation(self.boils_like, float(p))[0] if self.boils_like else None
@@ -220,6 +224,21 @@ class Interpolated(Fluid):
         heats = self._over(T, 1, lambda piece, t: piece.heat[None, :] @ piece.basis(t, piece.heat.size))
         return heats.reshape(T.shape)
 
+    def within(self, T_low: float, T_high: float) -> Fluid:
+        """One short polynomial a property over the limits, where the properties have no corner between them."""
+        low, high = max(T_low, self.T_low), min(T_high, self.T_high)
+        if not high > low:
+            return self
+        T = 0.5 * (low + high) + 0.5 * (high - low) * _nodes(_NODES)
+        rows = _coefficients(np.stack([*self.values(T, *PROPERTIES), self.values(T, "Pr")[0], self.enthalpy(T)]))
+        size = np.abs(rows).max(axis=1, keepdims=True)
+        small = (np.abs(rows) < _WINDOW_AGREES * size).all(axis=0)
+        terms = int(np.flatnonzero(~small)[-1]) + 1
+        if terms > _NODES - 4:
+            return self
+        given = {f.name: getattr(self, f.name) for f in fields(Fluid)}
+        return Windowed(**given, low=low, high=high, rows=rows[:, :terms])
+
     def _over(self, T: ArrayLike, rows: int, evaluate: Callable[[_Piece, Array], Array]) -> Array:
         """`evaluate(piece, T)` of shape (rows, T.size), piece by piece, as an array of shape (rows, *T.shape)."""
         T = np.asarray(T, dtype=float)
@@ -243,6 +262,32 @@ class Interpolated(Fluid):
             by_piece, out = out, np.empty_like(out)
             out[:, order] = by_piece
         return out.reshape(rows, *T.shape)
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Windowed(Fluid):
+    """A fluid on one Chebyshev polynomial a property, between `low` and `high`; at the nearer of them beyond."""
+
+    low: float
+    high: float
+    rows: Array
+    """Chebyshev coefficients of rho, cp, mu, k, Pr and enthalpy; shape (6, terms)."""
+
+    def values(self, T: ArrayLike, *names: str) -> tuple[Array, ...]:
+        return tuple(self._polynomials(T, [_ROWS[name] for name in names]))
+
+    def _enthalpy(self, T: Array) -> Array:
+        return self._polynomials(T, [5])[0]
+
+    def _polynomials(self, T: ArrayLike, which: list[int]) -> Array:
+        T = np.asarray(T, dtype=float)
+        rows = self.rows[which]
+        x = (np.clip(T.ravel(), self.low, self.high) - 0.5 * (self.low + self.high)) * (2 / (self.high - self.low))
+        out = np.empty((len(which), x.size))
+        for start in range(0, x.size, _CHUNK):
+            part = slice(start, start + _CHUNK)
+            out[:, part] = rows @ _chebyshev(x[part], self.rows.shape[1])
+        return out.reshape(len(which), *T.shape)
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -306,7 +351,8 @@ class Saturation:
     p: float
     T_sat: float
     h_fg: float
-    surface_tension: float
+    surface_tension: float | None
+    """None where the library has no model of it."""
     liquid: Fluid
     """The condensate, from freezing up to T_sat."""
     vapour: Fluid
@@ -376,7 +422,7 @@ def saturation(p: float, name: str = "water") -> Saturation:
         p=float(p),
         T_sat=bubble,
         h_fg=h_vapour - h_liquid,
-        surface_tension=state.surface_tension(),
+        surface_tension=_positive(state.surface_tension),
         liquid=_pure(code, float(p), "liquid"),
         vapour=_pure(code, float(p), "gas"),
     )
@@ -494,7 +540,10 @@ def _saturation(code: str, p: float) -> tuple[float | None, float | None]:
         return None, None
     found = []
     for quality in (0, 1):
-        state.update(C.PQ_INPUTS, p, quality)
+        try:
+            state.update(C.PQ_INPUTS, p, quality)
+        except ValueError as error:
+            raise FluidError(f"no boiling temperature is found for {_plain(code)} at {_bar(p)}") from error
         found.append(float(state.T()))
     return found[0], found[1]
 
@@ -696,6 +745,8 @@ _NEGLIGIBLE = 1e-12
 _NARROWEST = 1e-3
 """Kelvin. CoolProp's transport properties have corners and steps; a piece this narrow holds one."""
 _LARGEST_STEP = 0.03
+_WINDOW_AGREES = 1e-11
+"""Relative size below which a term of a windowed polynomial is left out."""
 _CHUNK = 2048
 
 
@@ -715,16 +766,20 @@ class _Piece:
 
     def basis(self, T: Array, terms: int) -> Array:
         """Chebyshev polynomials at T by recurrence, shape (terms, T.size)."""
-        x = (T - 0.5 * (self.low + self.high)) * (2 / (self.high - self.low))
-        basis = np.empty((terms, x.size))
-        basis[0] = 1.0
-        if terms > 1:
-            basis[1] = x
-        twice = 2 * x
-        for j in range(2, terms):
-            np.multiply(twice, basis[j - 1], out=basis[j])
-            basis[j] -= basis[j - 2]
-        return basis
+        return _chebyshev((T - 0.5 * (self.low + self.high)) * (2 / (self.high - self.low)), terms)
+
+
+def _chebyshev(x: Array, terms: int) -> Array:
+    """Chebyshev polynomials at x by recurrence, shape (terms, x.size)."""
+    basis = np.empty((terms, x.size))
+    basis[0] = 1.0
+    if terms > 1:
+        basis[1] = x
+    twice = 2 * x
+    for j in range(2, terms):
+        np.multiply(twice, basis[j - 1], out=basis[j])
+        basis[j] -= basis[j - 2]
+    return basis
 
 
 def _pieces(sample: Sample, T_low: float, T_high: float, name: str, agrees: float = _AGREES) -> tuple[_Piece, ...]:
@@ -802,6 +857,8 @@ SOLUTIONS = {
     "MITSW": "sea salt",
 }
 """Plain names of the aqueous solutions, by CoolProp's code (Melinder 2010; sea water: Sharqawy et al. 2010)."""
+_RICHEST = {"MMG": 0.205}
+"""Mass fractions beyond which the library's freezing curve leaves the measured one."""
 _OTHER_SOLUTIONS = ("MEG2", "MPG2", "MGL2", "MEA2", "MMA2", "MAM2", "MCA2", "MNA2", "MMG2", "MKC2", "MKA2")
 _OTHER_BRINES = ("VCA", "VKC", "VMA", "VMG", "VNA", "FRE")
 _SOLUTE_ALIASES = {"seawater": "MITSW", "brine": "MNA", "glycol": "MEG", "monoethyleneglycol": "MEG", "salt": "MNA"}
@@ -813,9 +870,9 @@ _OILS_LEFT_OUT = {"HFE": "conductivity", "PCL": "viscosity", "NaK": "conductivit
 
 @lru_cache(maxsize=256)
 def _solution(code: str, x: float, p: float) -> Fluid:
-    C, state = _library(), _state("INCOMP", code)
+    state = _state("INCOMP", code)
     solute = SOLUTIONS.get(code, code)
-    low, high = (float(state.keyed_output(getattr(C, limit))) for limit in ("ifraction_min", "ifraction_max"))
+    low, high = _fractions(state, code)
     if not low <= x <= high:
         raise FluidError(
             f"{solute} in water: a mass fraction of {x:.4g} is outside the {low:g} to {high:g} that the property model "
@@ -849,6 +906,12 @@ def _solution(code: str, x: float, p: float) -> Fluid:
         notes=(f"the boiling point of {name} is not known and not checked",) if volatile else (),
         pieces=_pieces(_sampler(state, p, name), T_low, T_high, name),
     )
+
+
+def _fractions(state: Any, code: str) -> tuple[float, float]:
+    C = _library()
+    high = float(state.keyed_output(C.ifraction_max))
+    return float(state.keyed_output(C.ifraction_min)), min(high, _RICHEST.get(code, high))
 
 
 def _solution_freezing(state: Any) -> float | None:
@@ -1026,7 +1089,7 @@ def _offer_incompressible(code: str, kind: Kind) -> Offer:
     C, state = _library(), _state("INCOMP", code)
     low = high = None
     if kind == "solution":
-        low, high = (float(state.keyed_output(getattr(C, limit))) for limit in ("ifraction_min", "ifraction_max"))
+        low, high = _fractions(state, code)
         state.set_mass_fractions([high])
     T_low, T_high = float(state.Tmin()), float(state.Tmax())
     if kind == "solution":

@@ -27,6 +27,8 @@ CHUNK = 256
 """Points solved at once: small enough for the work arrays to stay in the processor's cache."""
 TOLERANCE = 1e-9
 """Of the outer loop: largest change of a temperature between two iterations over the inlet difference."""
+NEAR = 1e-3
+"""Residual at which the slowly changing parts of a step are settled."""
 MOST_ITERATIONS = 60
 
 Texts = NDArray[np.object_]
@@ -251,7 +253,10 @@ def solve(case: Case, points: Points, *, fineness: int = 1) -> Iterator[tuple[sl
     Points must be sound (see `points_of`). A point that leaves a fluid's usable span carries a sentence in `problem`.
     """
     cells = case.exchanger.cells(fineness)
-    fluids = {side: case.fluid(side) for side in SIDES}
+    # No temperature leaves the span between the inlets by more than a heat loss can pull it.
+    ends = np.concatenate([points.T_in[side] for side in SIDES])
+    room = 2.0 + (0.5 * np.ptp(ends) if case.exchanger.heat_loss else 0.0)
+    fluids = {side: case.fluid(side).within(ends.min() - room, ends.max() + room) for side in SIDES}
     for first in range(0, len(points), CHUNK):
         rows = slice(first, min(first + CHUNK, len(points)))
         yield rows, _march(case, points.part(rows), cells, fluids)
@@ -269,15 +274,20 @@ def _properties(fluid: Fluid, T: Array, side: Side, points: Points) -> Propertie
 
 def _flowing(fluid: Fluid, side: Side, points: Points, T: Array, T_wall: Array) -> Flowing:
     bulk = _properties(fluid, T, side, points)
-    wall = _properties(fluid, T_wall, side, points)
+    mu_wall, Pr_wall = fluid.values(T_wall, "mu", "Pr")
+    doubt = points.factors
+    if any(f"{side}:{name}" in doubt for name in ("mu", "cp", "k")):
+        one = np.ones(len(points))
+        mu, cp, k = (doubt.get(f"{side}:{name}", one)[:, None] for name in ("mu", "cp", "k"))
+        mu_wall, Pr_wall = mu_wall * mu, Pr_wall * mu * cp / k
     prefix = f"{side}:"
     return Flowing(
         flow=points.flow[side],
         T=T,
         T_wall=T_wall,
         bulk=bulk,
-        mu_wall=wall.mu,
-        Pr_wall=wall.Pr,
+        mu_wall=mu_wall,
+        Pr_wall=Pr_wall,
         gas=fluid.phase == "gas",
         heated=(points.T_in[side] < points.T_in[opposite(side)])[:, None],
         R_fouling=points.R_fouling[side],
@@ -303,17 +313,13 @@ class _Step:
         )
 
 
-def _capacity(fluid: Fluid, at: Flowing, entry: Array, exit: Array, scale: Array | None) -> Array:
-    """flow·cp with cp the exact mean over each cell, so that the enthalpy balance closes whatever its curvature."""
-    cp = fluid.mean_cp(entry, exit)
-    return at.flow[:, None] * (cp if scale is None else cp * scale[:, None])
-
-
 def _step(
-    case: Case, points: Points, cells: Cells, fluids: Mapping[Side, Fluid], guess: Array, edges: Array, heat: Array
+    case: Case, points: Points, cells: Cells, fluids: Mapping[Side, Fluid], guess: Array, bend: Array, heat: Array
 ) -> _Step:
-    """Properties, films, U and the temperatures they lead to. `guess` (P, 4, n): inside and outside bulk, inside and
-    outside surface; `edges` (P, 4, n): inside entry and exit, outside entry and exit; `heat` (P, n) inside to outside.
+    """Properties, films, U and the temperatures they lead to, from a guess.
+
+    `guess` (P, 4, n): inside and outside bulk, inside and outside surface. `bend` (P, 2, n): per side the mean of cp
+    over a cell over cp at its mean temperature. `heat` (P, n): from the inside to the outside.
     """
     exchanger = case.exchanger
     flowing: dict[Side, Flowing] = {}
@@ -322,14 +328,13 @@ def _step(
     for i, side in enumerate(SIDES):
         flowing[side] = _flowing(fluids[side], side, points, guess[:, i], guess[:, 2 + i])
         films[side] = exchanger.film(side, cells, flowing[side])
-        scale = points.factors.get(f"{side}:cp")
-        capacity[side] = _capacity(fluids[side], flowing[side], edges[:, 2 * i], edges[:, 2 * i + 1], scale)
+        capacity[side] = points.flow[side][:, None] * flowing[side].bulk.cp * bend[:, i]
     share = cells.layout.area_share
-    loss = float(exchanger.heat_loss) * share
     lossy = np.zeros(len(points), dtype=bool)
     if exchanger.heat_loss:
         # What the outside stream loses to the surroundings changes how far it warms or cools for the heat it gets:
         # the same as another heat capacity in that cell.
+        loss = float(exchanger.heat_loss) * share
         ratio = heat / np.where(heat == loss, np.nan, heat - loss)
         bad = ~((ratio > 0.02) & (ratio < 50.0))
         lossy = bad.any(axis=1)
@@ -350,6 +355,13 @@ def _step(
         "outside": found.outside_mean + flux * r["outside film"],
     }
     return _Step(flowing=flowing, films=films, r=r, found=found, surface=surface, lossy=lossy)
+
+
+def _bend(fluids: Mapping[Side, Fluid], found: march.Temperatures, guess: Array) -> Array:
+    """Mean cp over each cell over cp at its mean temperature: with it the enthalpy balance closes exactly."""
+    ends = ((found.inside_entry, found.inside_exit), (found.outside_entry, found.outside_exit))
+    cp = [fluids[side].mean_cp(*ends[i]) / fluids[side].values(guess[:, i], "cp")[0] for i, side in enumerate(SIDES)]
+    return np.stack(cp, axis=1)
 
 
 def resistances(case: Case, points: Points, films: Mapping[Side, Film], T_metal: Array) -> dict[str, Array]:
@@ -375,28 +387,31 @@ def _march(case: Case, points: Points, cells: Cells, fluids: Mapping[Side, Fluid
     # A quarter of the way from each inlet to the other is near enough to start from.
     guess = np.stack([np.broadcast_to(x, (P, n)) for x in (0.75 * T_i + 0.25 * T_o, 0.25 * T_i + 0.75 * T_o)] * 2, 1)
     guess[:, 2:] = 0.5 * (T_i + T_o)[:, None]
-    edges = np.repeat(guess[:, :2], 2, axis=1)
     heat = np.broadcast_to(T_i - T_o, (P, n)) * 1e12
+    bend, bent = np.ones((P, 2, n)), np.zeros(P, dtype=bool)
     iterations, residual = np.zeros(P, dtype=int), np.full(P, np.inf)
     active, before = np.arange(P), None
     for count in range(1, MOST_ITERATIONS + 1):
         part = points if active.size == P else points.part(active)
-        step = _step(case, part, cells, fluids, guess[active], edges[active], heat[active])
+        step = _step(case, part, cells, fluids, guess[active], bend[active], heat[active])
         new = step.guess()
         change = new - guess[active]
-        found = step.found
-        edges[active] = np.stack([found.inside_entry, found.inside_exit, found.outside_entry, found.outside_exit], 1)
         if case.exchanger.heat_loss:
             heat = heat.copy()
-            heat[active] = found.heat
+            heat[active] = step.found.heat
         iterations[active], residual[active] = count, np.abs(change).max(axis=(1, 2)) / span[active]
         guess[active] = _accelerated(new, change, before)
-        going = residual[active] > TOLERANCE
+        if (residual[active] < NEAR).all() and not bent[active].all():
+            # The curvature of cp within a cell hardly depends on the last digits: once, near the end, is enough.
+            bend[active], bent[active] = _bend(fluids, step.found, new), True
+            before = None
+            continue
+        going = (residual[active] > TOLERANCE) | ~bent[active]
         before = (new[going], change[going])
         active = active[going]
         if not active.size:
             break
-    step = _step(case, points, cells, fluids, guess, edges, heat)
+    step = _step(case, points, cells, fluids, guess, bend, heat)
     return _solution(case, points, cells, fluids, step, iterations, residual)
 
 
