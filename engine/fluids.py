@@ -277,7 +277,9 @@ class Windowed(Fluid):
         return tuple(self._polynomials(T, [_ROWS[name] for name in names]))
 
     def _enthalpy(self, T: Array) -> Array:
-        return self._polynomials(T, [5])[0]
+        inside = np.clip(T, self.low, self.high)
+        cp, h = self._polynomials(inside, [_ROWS["cp"], 5])
+        return np.asarray(h + cp * (T - inside))
 
     def _polynomials(self, T: ArrayLike, which: list[int]) -> Array:
         T = np.asarray(T, dtype=float)
