@@ -157,22 +157,10 @@ def _quantity(name: str, si: str, us: str, metric: str, *others: str) -> _Quanti
     return _Quantity(name=name, shown={"si": si, "us": us, "metric": metric}, labels=labels)
 
 
-_PRESSURES: tuple[str, ...] = (
-    "bar",
-    "psi",
-    "kgf/cm²",
-    "kPa",
-    "Pa",
-    "hPa",
-    "MPa",
-    "mbar",
-    "mmHg",
-    "inHg",
-    "torr",
-    "atm",
-    "at",
-)
-_PRESSURES += ("mmH2O", "cmH2O", "mH2O", "inH2O", "ftH2O", "lbf/ft²", "N/m²")
+_PRESSURES = (
+    "bar", "psi", "kgf/cm²", "kPa", "Pa", "hPa", "MPa", "mbar", "mmHg", "inHg", "torr", "atm", "at",
+    "mmH2O", "cmH2O", "mH2O", "inH2O", "ftH2O", "lbf/ft²", "N/m²",
+)  # fmt: skip
 
 
 def _marked(mark: str, labels: tuple[str, ...] = _PRESSURES) -> tuple[str, ...]:
@@ -233,7 +221,7 @@ _QUANTITIES: dict[str, _Quantity] = {
     "mass_flux": _quantity("a mass flux", "kg/m²s", "lb/h·ft²", "kg/m²s", "lb/s·ft²", "kg/h·m²"),
     "momentum_flux": _quantity("a momentum flux ρv²", "kg/m·s²", "lb/ft·s²", "kg/m·s²", "Pa", "N/m²"),
     "velocity": _quantity("a velocity", "m/s", "ft/s", "m/s", "mm/s", "cm/s", "m/min", "ft/min", "m/h"),
-    "time": _quantity("a time", "h", "h", "h", "s", "min", "d", "yr"),
+    "time": _quantity("a time", "d", "d", "d", "h", "min", "s", "yr"),
     "frequency": _quantity("a frequency", "Hz", "Hz", "Hz", "1/s", "1/min", "rpm"),
     "modulus": _quantity("an elastic modulus or stress", "GPa", "ksi", "kgf/mm²", "MPa", "Pa", "kPa", "N/mm²", "psi"),
     "surface_tension": _quantity("a surface tension", "mN/m", "dyn/cm", "dyn/cm", "N/m", "lbf/ft"),
@@ -299,7 +287,7 @@ def _lexicon(fold: bool) -> _Lexicon:
         re.escape(x) if not fold else f"{x[0]}(?i:{re.escape(x[1:])})" if x[0] in "mM" else f"(?i:{re.escape(x)})"
         for x in sorted(symbols, key=len, reverse=True)
     ]
-    token = rf"([(])|([)])|(/)|[\s·*.-]+|1(?!\d)|(?P<name>{'|'.join(names)})(?:\^?(?P<power>-?\d))?"
+    token = rf"([(])|([)])|(/|per\b)|[\s·*.-]+|1(?!\d)|(?P<name>{'|'.join(names)})(?:\^?(?P<power>-?\d))?"
     return _Lexicon(re.compile(token, re.ASCII), symbols)
 
 
@@ -345,12 +333,13 @@ _ALSO: dict[_Powers, _Powers] = {
 }
 """Habits that the symbols would misread: a mass that is a force, and Btu/lb°F in capitals."""
 
-_MARKED = re.compile(r"(.*?)\s*\(?(?:(a|abs|absolute)|(g|ga|gauge|gage)|(d|diff|differential))\.?\)?", re.IGNORECASE)
+_MARKED = re.compile(r"(.*?)\s*\(?(?:(a|abs|absolute)|(g|gauge|gage)|(d|diff|differential))\.?\)?", re.IGNORECASE)
 
 
 def _readings(unit: str) -> Iterator[tuple[str, _Powers]]:
     """Each way to read a cleaned unit, as (mark, powers), the likeliest first."""
-    unit = re.sub(r"(?i)(?:°|deg(?:rees?|\.)?)\s*(?=[CFKR])", "", unit)
+    unit = re.sub(r"(?i)(?:°|deg(?:rees?|\.)?(?!ree))\s*(?=[CFKR])", "", unit)
+    unit = re.sub(r"(?i)\b(mm|cm|m|in|ft)\.? (?=(?:H2O|Hg|W[CGS])\b)", r"\1", unit)
     unit = re.sub(r"(?i)\bsq\.? ?(mm|cm|m|ft|feet|foot|in)", r"\g<1>2", unit)
     unit = re.sub(r"(?i)\bcu\.? ?(mm|cm|m|ft|feet|foot|in)", r"\g<1>3", unit)
     unit = re.sub(r"(?i)\bu\.?s\.? (?=g)| ?\(us\)", "", unit)
@@ -462,11 +451,12 @@ def _plain(label: str) -> str:
 
 
 def _allowed(quantities: tuple[str, ...]) -> str:
-    several = []
-    for quantity in quantities:
-        labels = units_of(quantity)
-        several.append(f"{_QUANTITIES[quantity].name} in {', '.join(labels[:6])}{', …' if len(labels) > 6 else ''}")
-    return " or ".join(several)
+    def one(quantity: str) -> str:
+        labels = [label for label in units_of(quantity) if label != "-"]
+        units = ", ".join(labels[:6]) + ", …" * (len(labels) > 6)
+        return _QUANTITIES[quantity].name + (f" in {units}" if units else "")
+
+    return " or ".join(map(one, quantities))
 
 
 def _why_not(given: str, unit: str, quantities: tuple[str, ...], number: str = "") -> str:
@@ -482,9 +472,7 @@ def _why_not(given: str, unit: str, quantities: tuple[str, ...], number: str = "
     if other:
         return f"{given} is {_QUANTITIES[other.quantity].name}; allowed is {_allowed(quantities)}"
     if meant := _find(unit.translate(str.maketrans("mM", "Mm")), quantities):
-        return (
-            f'{given} takes the m of milli for the M of mega or the other way; write "{_plain(meant.label)}" if meant'
-        )
+        return f'{given} mixes up m for milli and M for mega; write "{number}{_plain(meant.label)}" if that is meant'
     return f"{given} has a unit that is not known here; allowed is {_allowed(quantities)}"
 
 
@@ -520,9 +508,8 @@ def _number(text: str, given: str, quantities: tuple[str, ...]) -> tuple[_Number
         raise UnitError(f"{given} is not a finite number")
     found = _NUMBER.match(text)
     if found is None:
-        raise UnitError(
-            f'{given} does not begin with a number; write for example "42 {_plain(unit_of(quantities[0]))}"'
-        )
+        example = f"42 {_plain(unit_of(quantities[0]))}"
+        raise UnitError(f'{given} does not begin with a number; write for example "{example}"')
     if len(found[0]) > 40:
         raise UnitError(f"{given} has a number of {len(found[0])} characters; write at most 40")
     sign, mantissa, *powers = found.groups()
@@ -537,12 +524,7 @@ def _number(text: str, given: str, quantities: tuple[str, ...]) -> tuple[_Number
 
 def _point(mantissa: str, given: str) -> str:
     """The digits with one decimal point at most; what commas, points and spaces mean where only one meaning is left."""
-    if (
-        mantissa.count(",") == 1
-        and "." not in mantissa
-        and " " not in mantissa
-        and re.fullmatch(r"[1-9]\d{0,2},\d{3}", mantissa)
-    ):
+    if re.fullmatch(r"[1-9]\d{0,2},\d{3}", mantissa):
         whole, _, rest = mantissa.partition(",")
         raise UnitError(f"{given} can be read as {whole}.{rest} or as {whole}{rest}; write it without the comma")
     for group, point in ((" ", "."), (" ", ","), (",", "."), (".", ",")):
@@ -569,7 +551,7 @@ def parse(text: str, *quantities: str) -> Typed:
         raise UnitError(f"{given} has more than one ±")
     number, unit = _number(stated.strip(), given, quantities)
     spread, spread_unit = _number(deviation[0].strip(), given, quantities) if deviation else (None, "")
-    in_common = spread is not None and not unit and (not _is_percent(spread_unit) or "fraction" in quantities)
+    in_common = not unit and (not _is_percent(spread_unit) or ("fraction" in quantities and number.value > 1))
     known = _known(number, spread_unit if in_common else unit, given, quantities)
     exact = known.to_si(number.value)
     if exact < 0 and known.quantity in ("temperature", "pressure_absolute"):
