@@ -592,6 +592,7 @@ def _pure(code: str, p: float, phase: Phase) -> Fluid:
         if T_melt is not None and T_melt > T_low:
             T_low, low_reason, T_freeze = T_melt, "freezes", T_melt
     notes: tuple[str, ...] = ()
+    imposed = C.iphase_not_imposed
     bubble, dew = _saturation(code, p)
     if p >= state.p_critical():
         notes = (
@@ -602,14 +603,20 @@ def _pure(code: str, p: float, phase: Phase) -> Fluid:
         if bubble is None:
             raise FluidError(f"{name} has no liquid state at {_bar(p)}")
         T_high, high_reason = bubble, f"boils at {_bar(p)}"
-        state.specify_phase(C.iphase_liquid)
+        imposed = C.iphase_liquid
     else:
         if dew is not None and dew > T_low:
             T_low, low_reason = dew, f"condenses at {_bar(p)}"
-        state.specify_phase(C.iphase_gas)
+        imposed = C.iphase_gas
     if T_low >= T_high:
         raise FluidError(f"{name} has no {phase} state at {_bar(p)} inside the property model")
-    sample = _without_spike(_sampler(state, p, name), _CONDUCTIVITY_SPIKES.get(code))
+
+    def in_phase() -> Any:
+        state = _state("HEOS", code)
+        state.specify_phase(imposed)
+        return state
+
+    sample = _without_spike(_sampler(in_phase, p, name), _CONDUCTIVITY_SPIKES.get(code))
     # Next to the critical point CoolProp's own density iteration leaves noise above the tighter figure.
     agrees = _AGREES if p < 0.9 * state.p_critical() else 1e-6
     low, high = T_low, T_high
@@ -710,11 +717,12 @@ class _Gap(FluidError):
         self.T = T
 
 
-def _sampler(state: Any, p: float, name: str) -> Sample:
-    """rho, cp, mu, k of the state at (p, T), each refused unless finite and above zero."""
-    C = _library()
+def _sampler(new_state: Callable[[], Any], p: float, name: str) -> Sample:
+    """rho, cp, mu, k at (p, T), each refused unless finite and above zero."""
+    C, state = _library(), new_state()
 
     def sample(T: float) -> tuple[float, ...]:
+        nonlocal state
         try:
             state.update(C.PT_INPUTS, p, T)
         except ValueError as error:
@@ -723,7 +731,9 @@ def _sampler(state: Any, p: float, name: str) -> Sample:
         if rho is None or cp is None:
             raise FluidError(f"{name} at {_celsius(T, 1)} and {_bar(p)} is outside its property model")
         if mu is None or k is None:
-            raise _Gap(f"the property library has no {_lacking(state)} for {name}: type a property table for it", T)
+            gap = _Gap(f"the property library has no {_lacking(state)} for {name}: type a property table for it", T)
+            state = new_state()
+            raise gap
         return rho, cp, mu, k
 
     return sample
@@ -880,7 +890,13 @@ def _solution(code: str, x: float, p: float) -> Fluid:
             f"{solute} in water: a mass fraction of {x:.4g} is outside the {low:g} to {high:g} that the property model "
             "covers"
         )
-    state.set_mass_fractions([x])
+
+    def mixed() -> Any:
+        state = _state("INCOMP", code)
+        state.set_mass_fractions([x])
+        return state
+
+    state = mixed()
     name = f"{solute} {100 * x:.4g} % in water"
     T_low, T_high = float(state.Tmin()), float(state.Tmax())
     low_reason, high_reason = "is below the property model's limit", "is above the property model's limit"
@@ -891,6 +907,8 @@ def _solution(code: str, x: float, p: float) -> Fluid:
     if not volatile:
         # A dissolved salt or glycol only raises the boiling point of water.
         boiling = _saturation("Water", p)[0]
+        if boiling is None and p < bar:
+            raise FluidError(f"{name} has no liquid state at {_bar(p)}")
         if boiling is not None and boiling < T_high:
             T_high, high_reason = boiling, f"may boil at {_bar(p)}"
     if T_low >= T_high:
@@ -906,7 +924,7 @@ def _solution(code: str, x: float, p: float) -> Fluid:
         freezing_temperature=T_freeze,
         boils_like=None if volatile else "Water",
         notes=(f"the boiling point of {name} is not known and not checked",) if volatile else (),
-        pieces=_pieces(_sampler(state, p, name), T_low, T_high, name),
+        pieces=_pieces(_sampler(mixed, p, name), T_low, T_high, name),
     )
 
 
@@ -938,7 +956,7 @@ def _thermal_oil(code: str, p: float) -> Fluid:
         T_high=T_high,
         low_reason="is below the property model's limit",
         high_reason=high_reason,
-        pieces=_pieces(_sampler(state, p, name), T_low, T_high, name),
+        pieces=_pieces(_sampler(lambda: _state("INCOMP", code), p, name), T_low, T_high, name),
     )
 
 
