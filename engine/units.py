@@ -301,13 +301,14 @@ def _powers(unit: str, lexicon: _Lexicon = _LEXICONS[0]) -> _Powers:
     if unit in ("", "-"):
         return (("-", 1),)
     powers: Counter[str] = Counter()
-    sign, group, at = 1, 1, 0
+    sign, group, at, divides = 1, 1, 0, False
     outside: list[tuple[int, int]] = []
     while at < len(unit):
         token = lexicon.token.match(unit, at)
-        if token is None or (token[2] and not outside):
+        if token is None or (token[2] and not outside) or (divides and (token[2] or token[3])):
             return ()
         at = token.end()
+        divides = bool(token[3]) or (divides and token["name"] is None)
         if token[1]:
             outside.append((sign, group))
             group = sign
@@ -321,7 +322,7 @@ def _powers(unit: str, lexicon: _Lexicon = _LEXICONS[0]) -> _Powers:
     if len(powers) > 1:  # within a compound unit a degree is a difference
         powers["K"] += powers.pop("C", 0)
         powers["F"] += powers.pop("R", 0)
-    return () if outside else tuple(sorted((symbol, power) for symbol, power in powers.items() if power))
+    return () if outside or divides else tuple(sorted((symbol, power) for symbol, power in powers.items() if power))
 
 
 _ALSO: dict[_Powers, _Powers] = {
@@ -338,7 +339,7 @@ _MARKED = re.compile(r"(.*?)\s*\(?(?:(a|abs|absolute)|(g|gauge|gage)|(d|diff|dif
 
 def _readings(unit: str) -> Iterator[tuple[str, _Powers]]:
     """Each way to read a cleaned unit, as (mark, powers), the likeliest first."""
-    unit = re.sub(r"(?i)(?:°|deg(?:rees?|\.)?(?!ree))\s*(?=[CFKR])", "", unit)
+    unit = re.sub(r"(?i)(?:°|deg(?:rees?|\.)?)\s*(?=[CFKR]\b|celsius|fahrenheit)", "", unit)
     unit = re.sub(r"(?i)\b(mm|cm|m|in|ft)\.? (?=(?:H2O|Hg|W[CGS])\b)", r"\1", unit)
     unit = re.sub(r"(?i)\bsq\.? ?(mm|cm|m|ft|feet|foot|in)", r"\g<1>2", unit)
     unit = re.sub(r"(?i)\bcu\.? ?(mm|cm|m|ft|feet|foot|in)", r"\g<1>3", unit)

@@ -470,6 +470,14 @@ REFUSED = [
         '"5 furlong/h" has a unit that is not known here; allowed is a velocity in m/s, ft/s, mm/s, cm/s, m/min, '
         "ft/min, …",
     ),
+    *(
+        (
+            f"5 {unit}",
+            "mass",
+            f'"5 {unit}" has a unit that is not known here; allowed is a mass in kg, lb, g, t, klb',
+        )
+        for unit in ("kg/", "kg//h", "kg/()", ")kg(", "°kg", "kg(", "kilo", "kg+")
+    ),
     (
         "5 m/(s",
         "velocity",
