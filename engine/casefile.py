@@ -99,7 +99,7 @@ def raw_of(data: bytes | str) -> dict[str, Any]:
 
 def parse_case(raw: dict[str, Any]) -> Case:
     """The case that the keys state. Raises CaseError with every problem found at once."""
-    raw = _upgraded(raw)
+    raw = upgraded(raw)
     problems: list[Problem] = []
     try:
         case = Case.model_validate(raw, context={"file": True})
@@ -113,7 +113,8 @@ def parse_case(raw: dict[str, Any]) -> Case:
     return case
 
 
-def _upgraded(raw: dict[str, Any]) -> dict[str, Any]:
+def upgraded(raw: dict[str, Any]) -> dict[str, Any]:
+    """The keys as the present version names them. Raises CaseError where they are not a case of a known version."""
     form = raw.get("format")
     if form != FORMAT:
         says = f'"{form}" is not a case' if form is not None else "is missing"
@@ -135,11 +136,18 @@ def _problems_of_sound_parts(raw: dict[str, Any], known: set[str]) -> list[Probl
     found: list[Problem] = []
     streams: dict[str, Stream] = {}
     for side in ("inside", "outside"):
-        part = _lenient(Stream, raw.get(side))
+        given = raw.get(side)
+        if not isinstance(given, dict):
+            continue
+        sound = {key: value for key, value in given.items() if not _any_at(f"{side}.{key}", known)}
+        if "fluid" not in sound and not (isinstance(given.get("fluid"), dict) and "steam" in given["fluid"]):
+            # What else is missing beside the fluid does not depend on which fluid it will be.
+            sound["fluid"] = "Water"
+        part = _lenient(Stream, sound)
         if isinstance(part, Stream):
             own = [problem.under(side) for problem in part.problems()]
             found += own
-            if not own and not any(path.startswith(side) for path in known):
+            if not own and not _any_at(side, known):
                 streams[side] = part
     kind = raw.get("exchanger", {}).get("type") if isinstance(raw.get("exchanger"), dict) else None
     exchanger = _lenient(EXCHANGERS[kind], raw["exchanger"]) if kind in EXCHANGERS else None
@@ -148,6 +156,10 @@ def _problems_of_sound_parts(raw: dict[str, Any], known: set[str]) -> list[Probl
     if len(streams) == 2:
         found += stream_problems(streams["inside"], streams["outside"], 101325.0)
     return [problem for problem in found if problem.path not in known]
+
+
+def _any_at(place: str, paths: set[str]) -> bool:
+    return any(path == place or path.startswith((f"{place}.", f"{place}[")) for path in paths)
 
 
 def _lenient(model: type[Input], raw: Any) -> Input | None:
@@ -216,4 +228,15 @@ def schema() -> dict[str, Any]:
     return Case.model_json_schema()
 
 
-__all__ = ["Limits", "dump_case", "load_case", "parse_case", "raw_case", "raw_of", "read_raw", "save_case", "schema"]
+__all__ = [
+    "Limits",
+    "dump_case",
+    "load_case",
+    "parse_case",
+    "raw_case",
+    "raw_of",
+    "read_raw",
+    "save_case",
+    "schema",
+    "upgraded",
+]

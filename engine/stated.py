@@ -8,6 +8,7 @@ import difflib
 import types
 from collections.abc import Iterable, Iterator, Mapping
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Any, Literal, Union, get_args, get_origin
 
 from pydantic import BaseModel, ConfigDict, GetCoreSchemaHandler, GetJsonSchemaHandler, ValidationError
@@ -254,7 +255,8 @@ def problems_of(error: ValidationError, model: type[BaseModel], tags: frozenset[
     """pydantic's errors as sentences with the user's own paths. `tags` are union labels to leave out of the path."""
     found = []
     for item in error.errors(include_url=False, include_input=True):
-        place = tuple(step for step in item["loc"] if step not in tags)
+        # A tag stands once, right after the key that holds the union; a field may bear the same name.
+        place = tuple(step for before, step in pairwise(("", *item["loc"])) if step not in tags or before in tags)
         path = dotted(place)
         kind = item["type"]
         if kind == "extra_forbidden":

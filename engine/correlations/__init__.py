@@ -70,6 +70,10 @@ class Correlation:
     def __call__(self, *args: Any, **kwargs: Any) -> Any:
         return self.formula(*args, **kwargs)
 
+    def __reduce__(self) -> tuple[Callable[[str], Correlation], tuple[str]]:
+        # The formula is known under the name of its Correlation, so that a copy is found by name instead of made.
+        return registered, (self.name,)
+
     def excursions(self, **arguments: Array) -> tuple[Excursion, ...]:
         """The limits that the given arguments leave, with how far and in what share of the values.
 
@@ -108,6 +112,11 @@ class Excursion:
 
 
 REGISTER: dict[str, Correlation] = {}
+
+
+def registered(name: str) -> Correlation:
+    """The correlation of that name."""
+    return REGISTER[name]
 
 
 def correlation(
