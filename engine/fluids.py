@@ -18,7 +18,7 @@ import threading
 from abc import ABC, abstractmethod
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field, fields
-from functools import cache, lru_cache
+from functools import cache, lru_cache, partial
 from typing import Any, Literal
 
 import numpy as np
@@ -133,8 +133,8 @@ class Fluid(ABC):
     low_reason: str
     high_reason: str
     freezing_temperature: float | None = None
-    boils_like: str | None = None
-    """CoolProp's name of the substance whose saturation line bounds the liquid, where one does."""
+    boils_at: Callable[[float], float | None] = lambda p: None
+    """Boiling temperature at an absolute pressure; None where none is known."""
     notes: tuple[str, ...] = ()
     """What a reader must know about these properties; one sentence each."""
 
@@ -198,7 +198,7 @@ class Fluid(ABC):
 
     def saturation_temperature(self, p: float) -> float | None:
         """Boiling temperature at absolute pressure p; None where it is not known or p is above the critical."""
-        return _saturation(self.boils_like, float(p))[0] if self.boils_like else None
+        return self.boils_at(float(p))
 
 
 PROPERTIES = ("rho", "cp", "mu", "k")
@@ -534,6 +534,10 @@ def _origin() -> str:
     return f"CoolProp {_library().__version__}"
 
 
+def _bubble(code: str, p: float) -> float | None:
+    return _saturation(code, p)[0]
+
+
 @lru_cache(maxsize=4096)
 def _saturation(code: str, p: float) -> tuple[float | None, float | None]:
     """Bubble and dew temperature at p; (None, None) at and above the critical pressure and below the triple point."""
@@ -637,7 +641,7 @@ def _pure(code: str, p: float, phase: Phase) -> Fluid:
         low_reason=low_reason if low == T_low else _NO_TRANSPORT,
         high_reason=high_reason if high == T_high else _NO_TRANSPORT,
         freezing_temperature=T_freeze,
-        boils_like=code,
+        boils_at=partial(_bubble, code),
         notes=(*notes, *_steps(pieces, name)),
         pieces=pieces,
     )
@@ -876,8 +880,14 @@ _OTHER_BRINES = ("VCA", "VKC", "VMA", "VMG", "VNA", "FRE")
 _SOLUTE_ALIASES = {"seawater": "MITSW", "brine": "MNA", "glycol": "MEG", "monoethyleneglycol": "MEG", "salt": "MNA"}
 _VOLATILE = ("MEA", "MMA", "MAM", "MEA2", "MMA2", "MAM2", "VMA")
 
-_OILS_LEFT_OUT = {"HFE": "conductivity", "PCL": "viscosity", "NaK": "conductivity", "LiqNa": "film correlation"}
-"""Incompressible fluids whose data in the library cannot be right, or that no correlation here covers."""
+_UNKNOWN_BOILING = "the boiling point of {} is not known and not checked"
+_LEFT_OUT = {
+    "HFE": "its conductivity in the property library is that of another kind of fluid",
+    "PCL": "its viscosity in the property library is that of another kind of fluid",
+    "NaK": "its conductivity in the property library is not that of a metal",
+    "LiqNa": "no film correlation here covers liquid metals",
+}
+"""Thermal fluids that the library lists and that are not offered, and why."""
 
 
 @lru_cache(maxsize=256)
@@ -922,8 +932,8 @@ def _solution(code: str, x: float, p: float) -> Fluid:
         low_reason=low_reason,
         high_reason=high_reason,
         freezing_temperature=T_freeze,
-        boils_like=None if volatile else "Water",
-        notes=(f"the boiling point of {name} is not known and not checked",) if volatile else (),
+        boils_at=partial(_bubble, "Water") if not volatile else lambda p: None,
+        notes=(_UNKNOWN_BOILING.format(name),) if volatile else (),
         pieces=_pieces(_sampler(mixed, p, name), T_low, T_high, name),
     )
 
@@ -945,9 +955,12 @@ def _thermal_oil(code: str, p: float) -> Fluid:
     state, name = _state("INCOMP", code), code
     T_low, T_high = float(state.Tmin()), float(state.Tmax())
     high_reason = "is above the property model's limit"
-    boiling = _oil_boiling(code, p, T_low, T_high)
-    if boiling < T_high:
+    boiling = _oil_boiling(code, p)
+    if boiling is not None:
         T_high, high_reason = boiling, f"boils at {_bar(p)}"
+    if T_low >= T_high:
+        raise FluidError(f"{name} has no liquid state at {_bar(p)}")
+    known = _oil_boiling(code, 1.0) is not None
     return Interpolated(
         name=name,
         origin=f"{_origin()} ({code})",
@@ -956,13 +969,17 @@ def _thermal_oil(code: str, p: float) -> Fluid:
         T_high=T_high,
         low_reason="is below the property model's limit",
         high_reason=high_reason,
+        boils_at=partial(_oil_boiling, code),
+        notes=() if known else (_UNKNOWN_BOILING.format(name),),
         pieces=_pieces(_sampler(lambda: _state("INCOMP", code), p, name), T_low, T_high, name),
     )
 
 
-def _oil_boiling(code: str, p: float, low: float, high: float) -> float:
-    """The highest temperature at which the library still calls the oil liquid at p; `high` where it always does."""
-    C = _library()
+@lru_cache(maxsize=1024)
+def _oil_boiling(code: str, p: float) -> float | None:
+    """The highest temperature at which the library calls the oil liquid at p; None where it always does."""
+    C, state = _library(), _state("INCOMP", code)
+    low, high = float(state.Tmin()), float(state.Tmax())
 
     def liquid(T: float) -> bool:
         try:
@@ -971,10 +988,8 @@ def _oil_boiling(code: str, p: float, low: float, high: float) -> float:
             return False
         return True
 
-    if not liquid(low):
-        raise FluidError(f"{code} has no liquid state at {_bar(p)}")
     if liquid(high):
-        return high
+        return None
     while high - low > 1e-3:
         middle = 0.5 * (low + high)
         low, high = (middle, high) if liquid(middle) else (low, middle)
@@ -1040,7 +1055,7 @@ def _oils() -> tuple[str, ...]:
         sorted(
             code
             for code in listed
-            if code not in doubles and code not in _OILS_LEFT_OUT and not code.startswith(("Example", "Food"))
+            if code not in doubles and code not in _LEFT_OUT and not code.startswith(("Example", "Food"))
         )
     )
 
@@ -1057,6 +1072,9 @@ def _pure_code(name: str) -> tuple[str, str]:
     if found is None:
         if _folded(name) in _solute_names():
             raise FluidError(f"{name} is offered as a solution in water: state its mass fraction")
+        for code, reason in _LEFT_OUT.items():
+            if _folded(name) == _folded(code):
+                raise FluidError(f"{code} is not offered: {reason}")
         raise FluidError(_unknown("fluid", name))
     return found
 
@@ -1136,7 +1154,8 @@ def _lacking(state: Any) -> str:
 
 
 def _celsius(T: float, digits: int = 0) -> str:
-    return f"{T - zero_Celsius:.{digits}f} °C"
+    # Adding zero turns -0 into 0.
+    return f"{round(T - zero_Celsius, digits) + 0.0:.{digits}f} °C"
 
 
 def _bar(p: float) -> str:

@@ -142,6 +142,9 @@ def test_solutions_end_at_freezing_and_boiling():
 def test_a_thermal_oil_ends_where_it_boils():
     assert "boils at 1 bar abs" in fluid_at(Pure("T66"), 1e5).problem(640.0, "inside fluid")
     assert "model's limit" in fluid_at(Pure("T66"), 20e5).problem(660.0, "inside fluid")
+    oil = fluid_at(Pure("T66"), 20e5)
+    assert oil.saturation_temperature(1e5) == pytest.approx(fluid_at(Pure("T66"), 1e5).T_high)
+    assert oil.saturation_temperature(20e5) is None
 
 
 def test_above_the_critical_pressure_one_phase_is_used_and_noted():
@@ -171,6 +174,7 @@ def test_above_the_critical_pressure_one_phase_is_used_and_noted():
         (Pure("sulfur dioxide"), 1e5, "type a property table"),
         (Pure("cyclohexane"), 1e5, "no conductivity for cyclohexane"),
         (Pure("propylene glycol"), 1e5, "type a property table"),
+        (Pure("NaK"), 1e5, "NaK is not offered: its conductivity"),
         (Pure("water"), 0.0, "not above zero"),
         (Pure("water"), math.nan, "not above zero"),
         (Pure("water"), 2e9, "above the property model's limit"),
