@@ -241,6 +241,7 @@ def _row_problems(case: Case, points: Points) -> Texts:
             refuse(np.arange(len(points)) == i, f"{side}.T_in: {sentence}")
     refuse(np.abs(points.T_in["inside"] - points.T_in["outside"]) < 1e-6, "both inlets have the same temperature")
     refuse(~(points.tubes_plugged >= 0), "tubes_plugged is not a count from 0 on")
+    refuse(~(case.exchanger.area_at(points.tubes_plugged) > 0), "tubes_plugged leaves no tube open")
     return problem
 
 
@@ -343,7 +344,7 @@ def _step(
     U = 1.0 / sum(r.values())
     found = march.temperatures(
         cells.layout,
-        U * (exchanger.area * share),
+        U * (exchanger.area_at(points.tubes_plugged)[:, None] * share),
         capacity["inside"],
         capacity["outside"],
         points.T_in["inside"],
@@ -567,7 +568,7 @@ def _columns(case: Case, solved: Solution) -> dict[str, Array]:
         "duty": solved.duty,
         "inside.T_out": solved.T_out["inside"],
         "outside.T_out": solved.T_out["outside"],
-        "mtd": solved.duty / (solved.U * case.exchanger.area),
+        "mtd": solved.duty / (solved.U * case.exchanger.area_at(solved.points.tubes_plugged)),
         "U_clean": solved.U_clean,
         "U_dirty": solved.U,
         "inside.h": case.exchanger.area_ratio / R["inside film"],
@@ -639,7 +640,8 @@ def state_of(case: Case, solved: Solution, i: int, name: str) -> State:
     """One solved point as a State."""
     exchanger = case.exchanger
     R = {key: float(value[i]) for key, value in solved.resistances.items()}
-    U, area, duty = float(solved.U[i]), exchanger.area, float(solved.duty[i])
+    area = float(exchanger.area_at(solved.points.tubes_plugged)[i])
+    U, duty = float(solved.U[i]), float(solved.duty[i])
     mtd = duty / (U * area)
     T_in: dict[Side, Array] = {side: solved.points.T_in[side][i : i + 1] for side in SIDES}
     T_out: dict[Side, Array] = {side: solved.T_out[side][i : i + 1] for side in SIDES}

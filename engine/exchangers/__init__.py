@@ -13,7 +13,7 @@ from typing import Any, Protocol
 import numpy as np
 from numpy.typing import NDArray
 
-from engine.correlations import Array, Correlation, Excursion
+from engine.correlations import Array, Correlation, Excursion, Source
 from engine.exchangers.layout import Layout
 from engine.fluids import Properties
 from engine.stated import Problem, Side
@@ -90,7 +90,13 @@ class Exchanger(Protocol):
 
     @property
     def area(self) -> float:
-        """Outside bare tube area of the whole exchanger [m²]."""
+        """Outside bare tube area of the whole exchanger that is open to flow [m²]."""
+
+    def area_at(self, tubes_plugged: Array) -> Array:
+        """The same with so many tubes plugged in each shell, of its shape; 0 or less where none is left open."""
+
+    def derived(self) -> list[tuple[str, str, Source]]:
+        """What follows from tables where the user stated nothing: path, figure in words, source."""
 
     @property
     def area_ratio(self) -> float:

@@ -10,7 +10,7 @@ import numpy as np
 from pydantic import Field
 
 from engine import effectiveness as exact
-from engine.correlations import Array, Correlation, Excursion, annulus, inside_tubes, losses
+from engine.correlations import Array, Correlation, Excursion, Source, annulus, inside_tubes, losses
 from engine.exchangers import Cells, Film, Flowing, layout, standard_sizes
 from engine.stated import Choice, Count, Input, Problem, Side, Stated, Words
 
@@ -200,6 +200,17 @@ class DoublePipe(Input):
     @property
     def area(self) -> float:
         return float(np.pi * self.tube_od * self.leg_length * self.legs_in_series * self.banks)
+
+    def area_at(self, tubes_plugged: Array) -> Array:
+        return np.full(np.shape(tubes_plugged), self.area)
+
+    def derived(self) -> list[tuple[str, str, Source]]:
+        return [
+            (name, f"{od * 1e3:.4g} mm outside, {id * 1e3:.4g} mm inside", standard_sizes.ASME_B36)
+            for name, pipe in (("inner_pipe", self.inner_pipe), ("outer_pipe", self.outer_pipe))
+            if pipe.nps is not None
+            for od, id in [pipe.diameters]
+        ]
 
     @property
     def area_ratio(self) -> float:
