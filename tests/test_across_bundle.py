@@ -242,6 +242,12 @@ def test_limits_are_reported():
     assert kern_film.excursions(Re=np.array([100.0]))[0].lowest == 100.0
 
 
+def test_the_common_pitch_ratios_lie_inside_the_limits():
+    for od, pitch in ((0.01905, 0.0238125), (0.0254, 0.03175), (0.020, 0.025), (0.01905, 0.028575)):
+        g = shell(tube_od=od, tube_pitch=pitch, tubes=250)
+        assert bell_delaware_film.excursions(pitch_ratio=np.array(g.pitch_ratio)) == ()
+
+
 def test_factors_agree_with_an_independent_code():
     g = shell()
     bell = ht.conv_tube_bank

@@ -41,12 +41,31 @@ PITCH_RATIO = Range(argument="pitch_ratio", low=1.25, high=1.5)
 BAFFLE_CUT = Range(argument="baffle_cut", low=0.15, high=0.45)
 
 
-# Geometry
+# Tube layouts
+
+_ROW_ENDS = np.array([10.0, 1e2, 1e3, 1e4])
+
+
+@dataclass(frozen=True)
+class _Curve:
+    """c1 (1.33/(pt/do))^c Re^c2, c = c3/(1 + 0.14 Re^c4): c1 and c2 by Re row on [low, high), c3 and c4 for all."""
+
+    rows: tuple[tuple[float, float], ...]
+    """(c1, c2) for Re below 10, 1e2, 1e3, 1e4 and above."""
+    c3: float
+    c4: float
+
+    def __call__(self, Re: Array, pitch_ratio: Real) -> Array:
+        row = np.searchsorted(_ROW_ENDS, Re, side="right")
+        ln_Re = np.log(Re)
+        c1, c2 = np.array(self.rows).T
+        spread = self.c3 / (1.0 + 0.14 * np.exp(self.c4 * ln_Re))
+        return np.asarray(np.exp(np.log(c1)[row] + c2[row] * ln_Re + spread * np.log(1.33 / np.asarray(pitch_ratio))))
 
 
 @dataclass(frozen=True, kw_only=True)
-class Layout:
-    """A tube layout: its pitches over the tube pitch, and how much width one pitch of free gap stands for."""
+class TubeLayout:
+    """A layout's pitches over the tube pitch, and its curves for the ideal bank (60 degrees has those of 30)."""
 
     staggered: bool
     transverse: float
@@ -55,22 +74,36 @@ class Layout:
     """Row pitch along the flow over tube pitch."""
     gap: float
     """Bundle width per free gap (pt - do), over tube pitch: below `transverse` where the diagonal gaps govern."""
+    j: _Curve
+    f: _Curve
 
 
-LAYOUTS: Mapping[float, Layout] = {
-    30.0: Layout(staggered=True, transverse=1.0, row=0.75**0.5, gap=1.0),
-    45.0: Layout(staggered=True, transverse=2.0**0.5, row=0.5**0.5, gap=0.5**0.5),
-    60.0: Layout(staggered=True, transverse=3.0**0.5, row=0.5, gap=0.75**0.5),
-    90.0: Layout(staggered=False, transverse=1.0, row=1.0, gap=1.0),
+# 1.498 (45 degrees, Re 10 to 100), 0.391 and +0.022 (90 degrees), the minus of 30 degrees b2: other prints differ, and
+# only these join the neighbouring rows
+_J_30 = _Curve(((1.400, -0.667), (1.360, -0.657), (0.593, -0.477), (0.321, -0.388), (0.321, -0.388)), 1.450, 0.519)
+_J_45 = _Curve(((1.550, -0.667), (1.498, -0.656), (0.730, -0.500), (0.370, -0.396), (0.370, -0.396)), 1.930, 0.500)
+_J_90 = _Curve(((0.970, -0.667), (0.900, -0.631), (0.408, -0.460), (0.107, -0.266), (0.370, -0.395)), 1.187, 0.370)
+_F_30 = _Curve(((48.0, -1.000), (45.1, -0.973), (4.570, -0.476), (0.486, -0.152), (0.372, -0.123)), 7.00, 0.500)
+_F_45 = _Curve(((32.0, -1.000), (26.2, -0.913), (3.500, -0.476), (0.333, -0.136), (0.303, -0.126)), 6.59, 0.520)
+_F_90 = _Curve(((35.0, -1.000), (32.1, -0.963), (6.090, -0.602), (0.0815, 0.022), (0.391, -0.148)), 6.30, 0.378)
+
+TUBE_LAYOUTS: Mapping[float, TubeLayout] = {
+    30.0: TubeLayout(staggered=True, transverse=1.0, row=0.75**0.5, gap=1.0, j=_J_30, f=_F_30),
+    45.0: TubeLayout(staggered=True, transverse=2.0**0.5, row=0.5**0.5, gap=0.5**0.5, j=_J_45, f=_F_45),
+    60.0: TubeLayout(staggered=True, transverse=3.0**0.5, row=0.5, gap=0.75**0.5, j=_J_30, f=_F_30),
+    90.0: TubeLayout(staggered=False, transverse=1.0, row=1.0, gap=1.0, j=_J_90, f=_F_90),
 }
 """By layout angle in degrees."""
 
 
-def layout(layout_angle: float) -> Layout:
+def tube_layout(layout_angle: float) -> TubeLayout:
     """Raises ValueError for an angle that is no tube layout."""
-    if layout_angle not in LAYOUTS:
+    if layout_angle not in TUBE_LAYOUTS:
         raise ValueError(f"a layout angle of {layout_angle:g} degrees is not offered; offered are 30, 45, 60 and 90")
-    return LAYOUTS[layout_angle]
+    return TUBE_LAYOUTS[layout_angle]
+
+
+# Geometry
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -119,7 +152,7 @@ class BundleGeometry:
 
     @property
     def pitch_ratio(self) -> float:
-        return self.pt / self.do
+        return round(self.pt / self.do, 9)  # 15/16 over 3/4 inch, stated in metres, still is 1.25: the end of the range
 
     def mass_velocity(self, m: Real) -> Real:
         """Cross-flow G [kg/(m² s)] from the flow of the whole shell [kg/s]."""
@@ -135,7 +168,7 @@ def crossflow_area(layout_angle: float, Ds: float, Dotl: float, do: float, pt: f
 
     At 45 and 60 degrees the diagonal gaps govern. Source: TABOREK_HEDH.
     """
-    return length * (Ds - Dotl + (Dotl - do) / (layout(layout_angle).gap * pt) * (pt - do))
+    return length * (Ds - Dotl + (Dotl - do) / (tube_layout(layout_angle).gap * pt) * (pt - do))
 
 
 def bundle_geometry(
@@ -168,7 +201,7 @@ def bundle_geometry(
 
     Raises ValueError with a sentence where the dimensions contradict each other. Source: TABOREK_HEDH.
     """
-    lay = layout(layout_angle)
+    lay = tube_layout(layout_angle)
     Ds, Dotl, do, pt, Nt, Nb = shell_id, bundle_diameter, tube_od, tube_pitch, tubes, baffles * length_share
     Lbc, lc = baffle_spacing, baffle_cut * shell_id
     Dctl = Dotl - do
@@ -235,43 +268,6 @@ def bundle_geometry(
 
 # The ideal bank
 
-_ROW_ENDS = np.array([10.0, 1e2, 1e3, 1e4])
-
-
-@dataclass(frozen=True)
-class _Curve:
-    """c1 (1.33/(pt/do))^c Re^c2, c = c3/(1 + 0.14 Re^c4): c1 and c2 by Re row on [low, high), c3 and c4 for all."""
-
-    rows: tuple[tuple[float, float], ...]
-    """(c1, c2) for Re below 10, 1e2, 1e3, 1e4 and above."""
-    c3: float
-    c4: float
-
-    def __call__(self, Re: Array, pitch_ratio: Real) -> Array:
-        row = np.searchsorted(_ROW_ENDS, Re, side="right")
-        ln_Re = np.log(Re)
-        c1, c2 = np.array(self.rows).T
-        spread = self.c3 / (1.0 + 0.14 * np.exp(self.c4 * ln_Re))
-        return np.asarray(np.exp(np.log(c1)[row] + c2[row] * ln_Re + spread * np.log(1.33 / np.asarray(pitch_ratio))))
-
-
-# 1.498 (45 degrees, Re 10 to 100), 0.391 and +0.022 (90 degrees), the minus of 30 degrees b2: other prints differ, and
-# only these join the neighbouring rows
-_J_30 = _Curve(((1.400, -0.667), (1.360, -0.657), (0.593, -0.477), (0.321, -0.388), (0.321, -0.388)), 1.450, 0.519)
-_F_30 = _Curve(((48.0, -1.000), (45.1, -0.973), (4.570, -0.476), (0.486, -0.152), (0.372, -0.123)), 7.00, 0.500)
-_J: Mapping[float, _Curve] = {
-    30.0: _J_30,
-    45.0: _Curve(((1.550, -0.667), (1.498, -0.656), (0.730, -0.500), (0.370, -0.396), (0.370, -0.396)), 1.930, 0.500),
-    60.0: _J_30,
-    90.0: _Curve(((0.970, -0.667), (0.900, -0.631), (0.408, -0.460), (0.107, -0.266), (0.370, -0.395)), 1.187, 0.370),
-}
-_F: Mapping[float, _Curve] = {
-    30.0: _F_30,
-    45.0: _Curve(((32.0, -1.000), (26.2, -0.913), (3.500, -0.476), (0.333, -0.136), (0.303, -0.126)), 6.59, 0.520),
-    60.0: _F_30,
-    90.0: _Curve(((35.0, -1.000), (32.1, -0.963), (6.090, -0.602), (0.0815, 0.022), (0.391, -0.148)), 6.30, 0.378),
-}
-
 
 @correlation(
     gives="Colburn factor j",
@@ -281,8 +277,7 @@ _F: Mapping[float, _Curve] = {
 )
 def taborek_j(layout_angle: float, Re: Array, pitch_ratio: Real) -> Array:
     """j = h/(cp G) Pr^(2/3). Steps by 4.0 % at Re 1e3 (45 degrees) and 5.4 % at Re 1e4 (90 degrees), as printed."""
-    layout(layout_angle)
-    return _J[layout_angle](Re, pitch_ratio)
+    return tube_layout(layout_angle).j(Re, pitch_ratio)
 
 
 @correlation(
@@ -293,8 +288,7 @@ def taborek_j(layout_angle: float, Re: Array, pitch_ratio: Real) -> Array:
 )
 def taborek_f(layout_angle: float, Re: Array, pitch_ratio: Real) -> Array:
     """dP = 2 f G²/rho a row: neither Darcy's factor nor Fanning's."""
-    layout(layout_angle)
-    return _F[layout_angle](Re, pitch_ratio)
+    return tube_layout(layout_angle).f(Re, pitch_ratio)
 
 
 def ideal_film(
@@ -465,9 +459,8 @@ def bell_delaware_drop(g: BundleGeometry, *, m: Real, rho: Real, mu: Real, mu_ra
 
 def kern_equivalent_diameter(layout_angle: float, tube_od: float, tube_pitch: float) -> float:
     """De [m]: four times the free area between tubes over the tubes' perimeter, along the tubes. Source: KERN_1950."""
-    cell = 1.0 if layout_angle in (45.0, 90.0) else np.sqrt(0.75)
-    layout(layout_angle)
-    return float(4 * (cell * tube_pitch**2 - np.pi * tube_od**2 / 4) / (np.pi * tube_od))
+    lay = tube_layout(layout_angle)
+    return float(4 * (lay.transverse * lay.row * tube_pitch**2 - np.pi * tube_od**2 / 4) / (np.pi * tube_od))
 
 
 def kern_area(
@@ -518,7 +511,7 @@ def kern_drop(De: float, *, shell_id: float, crossings: Real, Gs: Real, rho: Rea
 )
 def gaddis_gnielinski_drag(layout_angle: float, Re: Array, pitch_ratio: Real, mu_ratio: Real = 1.0) -> Array:
     """xi of dP = xi rows rho u²/2, u in the smallest gap: xi stands where Taborek has 4 f."""
-    lay = layout(layout_angle)
+    lay = tube_layout(layout_angle)
     a, b = lay.transverse * np.asarray(pitch_ratio), lay.row * np.asarray(pitch_ratio)
     if lay.staggered:
         X = np.where(b >= 0.5 * np.sqrt(2 * a + 1), a, np.sqrt((a / 2) ** 2 + b**2))
