@@ -16,6 +16,7 @@ from engine.correlations.across_bundle import (
     drop_factors,
     film_factors,
     gaddis_gnielinski_drag,
+    gaddis_gnielinski_drop,
     kern_area,
     kern_drop,
     kern_equivalent_diameter,
@@ -221,6 +222,21 @@ KERN_H: tuple[tuple[KernShell, str, float, float, str, Kind, str], ...] = (
 )
 
 
+def tight_shell(part: str) -> float:
+    """A part of Gaddis and Gnielinski's drop at Re 1e4 without leakage and bypass, over the unit named in the row."""
+    g = replace(METHANOL_COOLER.geometry, rlm=0.0, rss=0.5)
+    rho, mu = 1e3, 1e-3
+    u = 1e4 * mu / (rho * g.do)
+    drop = gaddis_gnielinski_drop(g, m=u * rho * g.Sm, rho=rho, mu=mu, mu_ratio=1.0, Re_mean=1e4)
+    rows_w = 0.8 * g.baffle_cut * g.Ds / g.Xl
+    heads = {
+        "crossflow": drop.crossflow / ((g.Nb - 1) * g.Ncc * rho * u**2 / 2),
+        "ends": drop.ends / (2 * (g.Ncc + rows_w) * rho * u**2 / 2),
+        "window": drop.window / (g.Nb * rho * u**2 / 2 * g.Sm / g.Sw) / ((0.6 * rows_w + 2) ** 2 + 2**2) ** 0.5,
+    }
+    return float(heads[part])
+
+
 def zukauskas_air() -> float:
     """Nu of seven staggered rows: the row factor 0.95 of the source's table stands beside the relation."""
     return 0.95 * float(zukauskas_bank(np.asarray(13943.0), 0.71, 0.701 / 0.71, 0.0313, 0.0343, True))
@@ -312,6 +328,24 @@ ROWS: tuple[Proof, ...] = (
         )
         for angle, pitch_ratio, values in DRAG
         for Re, value in zip((10.0, 1e2, 1e3, 1e4, 1e5), values, strict=True)
+    ),
+    *(
+        Proof(
+            subject="gaddis_gnielinski_drop",
+            what=f"Re 1e4 without leakage and bypass, {part} over {over}",
+            ours=partial(tight_shell, part),
+            value=value,
+            unit="-",
+            tolerance=tolerance,
+            reason=reason,
+            kind="derived",
+            source=SECOND_CODE,
+        )
+        for part, over, value, tolerance, reason in (
+            ("crossflow", "rows and velocity heads", 0.598281, 1e-5, "six digits"),
+            ("ends", "rows and velocity heads", 0.598281, 1e-5, "six digits"),
+            ("window", "its limit at high Re", 1.0, 0.01, "the viscous share left at Re 1e4"),
+        )
     ),
     Proof(
         subject="zukauskas_bank",
