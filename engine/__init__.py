@@ -49,7 +49,7 @@ _WHERE = {
     "upgraded": "casefile",
 }
 
-__all__ = sorted([*_WHERE, "__version__"])  # noqa: PLE0605
+__all__ = sorted([*_WHERE, "__version__"])
 
 
 def __getattr__(name: str) -> Any:
