@@ -125,8 +125,8 @@ def effectiveness_split_banks(
     series_change = bank(NTU / n_banks, Cr * n_banks)
 
     def over_all(change: Array) -> Array:
-        with np.errstate(divide="ignore"):
-            together: Array = -np.expm1(n_banks * np.log1p(-change))
+        with np.errstate(divide="ignore"):  # rounding may put the change of a huge bank a hair above 1
+            together: Array = -np.expm1(n_banks * np.log1p(-np.minimum(change, 1.0)))
         return together
 
     split = np.where(Cr == 0, split_change, over_all(Cr * split_change / n_banks) / np.where(Cr == 0, 1.0, Cr))

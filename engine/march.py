@@ -91,7 +91,7 @@ def _shell(layout: Layout, UA: Array, C_inside: Array, C_outside: Array) -> Temp
     ntu = UA / C_inside
     stay = np.exp(-ntu)
     gain = UA * _phi(ntu)
-    bay_rate = gain @ np.eye(n)[layout.bay]
+    in_bay = np.eye(n)[layout.bay]
 
     # Affine in the bay means (columns 0 to n - 1) and the inside inlet (column n): cell entries and path exits,
     # heat to each bay.
@@ -108,11 +108,11 @@ def _shell(layout: Layout, UA: Array, C_inside: Array, C_outside: Array) -> Temp
             T = T * stay[:, c, None]
             T[:, layout.bay[c]] += 1 - stay[:, c]
         exits[p] = T
-    heat[np.arange(n), :, np.arange(n)] -= bay_rate.T
+    heat[np.arange(n), :, np.arange(n)] -= (gain @ in_bay).T
 
     mixed_from = layout.outside_links[:-1, :-1].T / layout.outside_links[:-1].sum(axis=1)[:, None]
     exit_from_rises = np.linalg.inv(np.eye(n) - mixed_from).astype(float)
-    lead = _lead(bay_rate / C_bay)
+    lead = _lead(UA @ in_bay / C_bay)
     M = heat / C_bay.T[:, :, None]
     A = M[..., :n] * lead - M[..., :n] @ exit_from_rises
     A[np.arange(n), :, np.arange(n)] += 1
@@ -133,7 +133,7 @@ def _shell(layout: Layout, UA: Array, C_inside: Array, C_outside: Array) -> Temp
         outside_exit=outside_exit[:, layout.bay],
         outside_mean=bay_mean,
         heat=heat_cell,
-        inside_outlet=inside_exit[:, ends] @ layout.inside_links[:-1, -1],
+        inside_outlet=inside_exit[:, ends] @ layout.inside_links[:-1, -1] + layout.inside_links[-1, -1],
         outside_outlet=outside_exit @ layout.outside_links[:-1, -1],
     )
 

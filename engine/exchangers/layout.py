@@ -228,15 +228,14 @@ def f_shell(
     """TEMA F: two shell passes either side of a longitudinal baffle, `n_bays` along each, half the tube passes in each.
 
     `leakage` is the share of the outside flow that slips past the baffle at the nozzles' end, from the inlet straight
-    into the last bay. `lengths` from that end on.
+    to the outlet. `lengths` from that end on.
     """
     if tube_passes % 2:
         raise ValueError(f"an F shell has an even number of tube passes, half in each shell pass; given {tube_passes}")
     if not 0 <= leakage < 1:
         raise ValueError(f"the leakage past the longitudinal baffle is {leakage}; it must be at least 0 and below 1")
     links = (1 - leakage) * in_turn(2 * n_bays)
-    links[-1, -2] += leakage
-    links[-2, -1] = 1.0
+    links[-1, -1] = leakage
     shell_passes = [np.arange(n_bays), np.arange(n_bays, 2 * n_bays)[::-1]]
     order = shell_passes if first_pass == "co-current" else shell_passes[::-1]
     rows = [[row] for row in order for _ in range(tube_passes // 2)]
