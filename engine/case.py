@@ -12,6 +12,7 @@ from pydantic import BeforeValidator, Discriminator, Field, Tag
 
 from engine import fluids
 from engine.exchangers.double_pipe import DoublePipe
+from engine.exchangers.shell_and_tube import ShellAndTube
 from engine.stated import SIDES, Choice, Figure, Input, Problem, Side, Stated, Words
 
 ATMOSPHERE = 101325.0
@@ -244,12 +245,23 @@ class Limits(Input):
     outside_velocity_max: Annotated[float | None, Stated("velocity", "Highest velocity, outside", above=0.0)] = None
 
 
-EXCHANGERS: dict[str, type[Input]] = {"double-pipe": DoublePipe}
+EXCHANGERS: dict[str, type[Input]] = {"double-pipe": DoublePipe, "shell-and-tube": ShellAndTube}
 
 
 def _exchanger_tag(given: Any) -> str | None:
     tag = given.get("type") if isinstance(given, dict) else getattr(given, "type", None)
     return tag if isinstance(tag, str) and tag in EXCHANGERS else None
+
+
+ExchangerInput = Annotated[
+    Annotated[DoublePipe, Tag("double-pipe")] | Annotated[ShellAndTube, Tag("shell-and-tube")],
+    Discriminator(
+        _exchanger_tag,
+        custom_error_type="not_an_exchanger",
+        custom_error_message="is not an exchanger",
+        custom_error_context={"says": 'is not an exchanger; "type" says which: "double-pipe" or "shell-and-tube"'},
+    ),
+]
 
 
 class Case(Input):
@@ -278,7 +290,7 @@ class Case(Input):
     ] = ATMOSPHERE
     inside: Stream
     outside: Stream
-    exchanger: DoublePipe
+    exchanger: ExchangerInput
     limits: Limits = Limits()
 
     def stream(self, side: Side) -> Stream:

@@ -1,0 +1,925 @@
+"""Shell-and-tube exchanger: TEMA E, F, G, H, J and X shells, baffled, in series and in parallel.
+
+The shell side is rated by Bell-Delaware in Taborek's form; Kern's method and the drag of Gaddis and Gnielinski stand
+beside it. Shell letters and heads are those of the TEMA Standards, figure N-1.2.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Annotated, Any, ClassVar, Literal
+
+import numpy as np
+from pydantic_core import PydanticCustomError
+
+from engine import effectiveness as exact
+from engine.correlations import Array, Correlation, Excursion, Source, inside_tubes, losses
+from engine.correlations import across_bundle as shell
+from engine.exchangers import Cells, Film, Flowing, layout, standard_sizes
+from engine.exchangers.double_pipe import Factors, length
+from engine.stated import Choice, Count, Input, Problem, Side, Stated, Words
+
+FRONT_HEADS = "ABCN"
+REAR_HEADS = "LMNPSTUW"
+
+
+@dataclass(frozen=True, kw_only=True)
+class ShellType:
+    """How the shell-side fluid runs: it splits into equal paths, alike by symmetry, so that one stands for all."""
+
+    name: str
+    paths: int = 1
+    passes: int = 1
+    """Shell passes either side of a longitudinal baffle on one path."""
+    inlets: int = 1
+    outlets: int = 1
+
+    @property
+    def share(self) -> float:
+        """Of the shell's flow and of its length that one path takes."""
+        return 1 / self.paths
+
+
+SHELLS: Mapping[str, ShellType] = {
+    "E": ShellType(name="one shell pass"),
+    "F": ShellType(name="two shell passes with a longitudinal baffle", passes=2),
+    "G": ShellType(name="split flow", paths=2, passes=2),
+    "H": ShellType(name="double split flow", paths=4, passes=2, inlets=2, outlets=2),
+    "J": ShellType(name="divided flow", paths=2, outlets=2),
+    "X": ShellType(name="cross-flow"),
+}
+
+RE_LAMINAR, RE_TRANSITIONAL = 100.0, 1000.0
+"""Names of the shell-side regimes: below the switch of the method's constants, and below its row for Re from 1000."""
+
+CLEAR_COUNT, REFUSED_COUNT = 0.12, 0.30
+"""By how much more tubes than published a shell is taken without a word, and from where on it is refused."""
+
+DERIVED_BAFFLES = Source(
+    key="derived-baffles",
+    text="as many baffles at the stated spacing as the tube length holds, the end spacings sharing the rest",
+    checked=True,
+)
+
+
+class _BaffleType(Choice):
+    """Single-segmental baffles; the other types that exist are refused for what they are."""
+
+    def read(self, given: Any) -> str:
+        known = ("double-segmental", "triple-segmental", "no-tubes-in-window", "disc-and-doughnut", "rod", "helical")
+        if isinstance(given, str) and given.strip().lower() in known:
+            sentence = f'"{given}" baffles are not rated: the shell-side method holds for single-segmental baffles only'
+            raise PydanticCustomError("stated", "{sentence}", {"sentence": sentence})
+        return super().read(given)
+
+
+class ShellAndTube(Input):
+    """The stated dimensions of a shell-and-tube exchanger, and its films and drops. Counts are those of one shell."""
+
+    type: Literal["shell-and-tube"] = "shell-and-tube"
+    tema: Annotated[str, Words("TEMA type", 3, help='Front head, shell and rear head, such as "AES" or "BEM".')]
+    shell_id: Annotated[float, length("Shell inside diameter", "591 mm", 5.0)]
+    tube_od: Annotated[float, length("Tube outside diameter", "19.05 mm", 0.2)]
+    tube_wall: Annotated[float | None, length("Tube wall", "2.11 mm", 0.05)] = None
+    gauge: Annotated[str | None, Words("Tube gauge", 12, help='Birmingham gauge of the wall, such as "14 BWG".')] = None
+    tube_length: Annotated[
+        float, length("Tube length", "4.88 m", 50.0, help="Straight and effective, between the tubesheets.")
+    ]
+    tube_pitch: Annotated[float, length("Tube pitch", "25.4 mm", 0.5)]
+    layout_angle: Annotated[str, Choice("Layout angle", ("30 deg", "45 deg", "60 deg", "90 deg"))]
+    tubes: Annotated[
+        int, Count("Tubes", 1, 50000, help="Of one shell: straight tubes, or the legs of U-tubes (two for each U).")
+    ]
+    tube_passes: Annotated[int, Count("Tube passes", 1, 16)]
+    tubes_plugged: Annotated[
+        int, Count("Tubes plugged", 0, 50000, help="Of one shell, counted as the tubes.", assumed="no tube is plugged")
+    ] = 0
+    first_pass: Annotated[
+        str,
+        Choice(
+            "First tube pass",
+            ("counter", "co-current"),
+            help="How the first tube pass runs against the shell flow.",
+            assumed="the first tube pass meets the shell outlet first (common practice)",
+        ),
+    ] = "counter"
+    shells_in_series: Annotated[int, Count("Shells in series", 1, 24, assumed="one shell in series")] = 1
+    shells_in_parallel: Annotated[int, Count("Shells in parallel", 1, 24, assumed="one train of shells")] = 1
+    shell_inlets: Annotated[
+        int,
+        Count(
+            "Shell inlets of a J shell", 1, 2, help="1: one inlet, two outlets. 2: the reverse.", assumed="one inlet"
+        ),
+    ] = 1
+    orientation: Annotated[
+        str, Choice("Orientation", ("horizontal", "vertical"), assumed="horizontal, the usual position")
+    ] = "horizontal"
+
+    baffle_type: Annotated[
+        str,
+        _BaffleType("Baffle type", ("single-segmental",), assumed="single-segmental baffles, the usual type"),
+    ] = "single-segmental"
+    baffle_cut: Annotated[
+        float | None,
+        Stated(
+            "fraction",
+            "Baffle cut",
+            low=0.0,
+            high=1.0,
+            help="Height of the window over the shell bore.",
+            example="25 %",
+        ),
+    ] = None
+    baffle_spacing: Annotated[float | None, length("Baffle spacing", "300 mm", 20.0, help="Between two baffles.")] = (
+        None
+    )
+    inlet_spacing: Annotated[
+        float | None,
+        length("Inlet spacing", "400 mm", 20.0, help="From the tubesheet at the inlet to the first baffle."),
+    ] = None
+    outlet_spacing: Annotated[float | None, length("Outlet spacing", "400 mm", 20.0)] = None
+    baffles: Annotated[int | None, Count("Baffles", 1, 500, help="Of one shell.")] = None
+    bundle_diameter: Annotated[float | None, length("Bundle diameter", "540 mm", 5.0, help="Outer tube limit.")] = None
+    tube_hole_clearance: Annotated[
+        float | None,
+        Stated("length", "Clearance of the baffle holes", low=0.0, high=0.01, help="Diametral.", example="0.8 mm"),
+    ] = None
+    shell_baffle_clearance: Annotated[
+        float | None,
+        Stated("length", "Clearance shell to baffle", low=0.0, high=0.1, help="Diametral.", example="4.8 mm"),
+    ] = None
+    sealing_strip_pairs: Annotated[int, Count("Pairs of sealing strips", 0, 50, assumed="no sealing strips")] = 0
+    pass_lanes: Annotated[
+        int, Count("Pass lanes along the cross-flow", 0, 10, assumed="no pass lane lies along the cross-flow")
+    ] = 0
+    pass_lane_width: Annotated[
+        float, Stated("length", "Width of a pass lane", low=0.0, high=0.5, assumed="no pass lane", example="19 mm")
+    ] = 0.0
+    long_baffle_leakage: Annotated[
+        float,
+        Stated(
+            "fraction",
+            "Leakage past the longitudinal baffle",
+            low=0.0,
+            high=0.9,
+            help="F shells: share of the shell flow that slips from the inlet to the outlet.",
+            assumed="the longitudinal baffle is tight",
+            example="5 %",
+        ),
+    ] = 0.0
+
+    material: Annotated[str | None, Words("Tube material", 60)] = None
+    wall_conductivity: Annotated[
+        float | None, Stated("conductivity", "Wall conductivity", above=0.0, high=500.0, example="50 W/mK")
+    ] = None
+    inside_roughness: Annotated[
+        float,
+        Stated("length", "Roughness of the tubes", low=0.0, high=5e-3, assumed="drawn tube", example="0.0015 mm"),
+    ] = losses.DRAWN_TUBE.value
+    u_bend_length: Annotated[
+        float,
+        Stated(
+            "length",
+            "Mean length of a U-bend",
+            low=0.0,
+            high=20.0,
+            help="Counts for friction, not for heat.",
+            assumed="no wall friction in U-bends beyond the losses of each pass",
+            example="0.4 m",
+        ),
+    ] = 0.0
+    u_bend_area: Annotated[
+        float,
+        Stated(
+            "area",
+            "Area of the U-bends that takes part",
+            low=0.0,
+            high=1e4,
+            help="Outside area of all bends of one shell, swept by the shell flow.",
+            assumed="the U-bends take no part in the heat transfer",
+            example="2.3 m2",
+        ),
+    ] = 0.0
+    tube_nozzle_id: Annotated[float | None, length("Tube-side nozzle bore", "154 mm", 3.0)] = None
+    shell_nozzle_id: Annotated[float | None, length("Shell-side nozzle bore", "154 mm", 3.0)] = None
+    deposit_conductivity: Annotated[
+        float | None,
+        Stated(
+            "conductivity",
+            "Deposit conductivity",
+            above=0.0,
+            high=50.0,
+            help="When stated, fouling narrows the tube bore.",
+            example="1 W/mK",
+        ),
+    ] = None
+    heat_loss: Annotated[
+        float,
+        Stated(
+            "heat_flow",
+            "Heat loss of the shell-side stream to the surroundings",
+            low=-1e9,
+            high=1e9,
+            assumed="no loss to the surroundings",
+            example="2 kW",
+        ),
+    ] = 0.0
+    film_factor: Factors = Factors()
+    dp_factor: Factors = Factors()
+
+    title: ClassVar[str] = "Shell and tube"
+    side_names: ClassVar[Mapping[Side, str]] = {"inside": "Tube side", "outside": "Shell side"}
+
+    # --- geometry ---------------------------------------------------------------------------------------------------
+
+    @property
+    def shell_letter(self) -> str:
+        return self.tema[1].upper()
+
+    @property
+    def rear_letter(self) -> str:
+        return self.tema[2].upper()
+
+    @property
+    def shell_type(self) -> ShellType:
+        return SHELLS[self.shell_letter]
+
+    @property
+    def u_tubes(self) -> bool:
+        return self.rear_letter == "U"
+
+    @property
+    def angle(self) -> float:
+        """Layout angle in degrees."""
+        return float(self.layout_angle.split()[0])
+
+    @cached_property
+    def tube_id(self) -> float:
+        wall = standard_sizes.gauge_wall(self.gauge) if self.gauge is not None else self.tube_wall
+        assert wall is not None
+        return float(self.tube_od - 2 * wall)
+
+    @property
+    def shells(self) -> int:
+        return self.shells_in_series * self.shells_in_parallel
+
+    @property
+    def area(self) -> float:
+        return float(self.area_at(np.asarray(self.tubes_plugged, dtype=float)))
+
+    def area_at(self, tubes_plugged: Array) -> Array:
+        of_a_tube = np.pi * self.tube_od * self.tube_length + self.u_bend_area / self.tubes
+        return np.asarray(of_a_tube * (self.tubes - tubes_plugged) * self.shells)
+
+    @property
+    def area_ratio(self) -> float:
+        return float(self.tube_od / self.tube_id)
+
+    def tubes_per_pass(self, tubes_plugged: Array) -> Array:
+        """Open tubes in the mean pass; passes of unlike size are rated at the mean."""
+        return np.asarray((self.tubes - tubes_plugged) / self.tube_passes)
+
+    @cached_property
+    def path_spacings(self) -> tuple[float, float, float]:
+        """Baffles along one path of the shell-side fluid, one way, and the spacings at its inlet and outlet [m].
+
+        A stated number of baffles stands; else as many as fit. What they leave goes to the ends not stated, or to both.
+        Raises ValueError with a sentence where the baffles do not fit.
+        """
+        assert self.baffle_spacing is not None
+        room, spacing = float(self.tube_length) * self.shell_type.share, float(self.baffle_spacing)
+        stated = [None if end is None else float(end) for end in (self.inlet_spacing, self.outlet_spacing)]
+        if self.baffles is not None:
+            count = self.baffles * self.shell_type.share
+        else:
+            fit = (room - sum(spacing if end is None else end for end in stated)) / spacing
+            count = max(1.0, 1.0 + np.floor(fit + 1e-9))
+        rest = room - (count - 1) * spacing - sum(end or 0.0 for end in stated)
+        both = None not in stated
+        if both and self.baffles is not None and abs(rest) > 0.02 * room:
+            raise ValueError(
+                f"{self.baffles} baffles with their spacings take {(room - rest) * 1e3:.4g} mm of the "
+                f"{room * 1e3:.4g} mm of tube they stand on; leave out their number or one of the spacings"
+            )
+        share = rest / (2 if both else stated.count(None))
+        ends = [end + share if both and end is not None else share if end is None else end for end in stated]
+        if min(ends) <= 0:
+            raise ValueError(
+                f"{count:.4g} baffles {spacing * 1e3:.4g} mm apart and their end spacings are longer than the "
+                f"{room * 1e3:.4g} mm of tube they stand on"
+            )
+        return float(count), ends[0], ends[1]
+
+    @property
+    def baffle_count(self) -> int:
+        """Baffles of one shell, stated or as many as fit."""
+        return self.baffles if self.baffles is not None else round(self.path_spacings[0]) * self.shell_type.paths
+
+    @cached_property
+    def outer_tube_limit(self) -> float:
+        """Bundle diameter [m], stated or what the usual clearance of the rear head leaves."""
+        if self.bundle_diameter is not None:
+            return float(self.bundle_diameter)
+        return standard_sizes.outer_tube_limit(float(self.shell_id), self.rear_letter)
+
+    @cached_property
+    def hole_clearance(self) -> float:
+        """Diametral clearance of the baffle holes [m], stated or the usual one."""
+        if self.tube_hole_clearance is not None:
+            return float(self.tube_hole_clearance)
+        return standard_sizes.tube_hole_clearance(float(self.tube_od), self.longest_span)
+
+    @cached_property
+    def baffle_clearance(self) -> float:
+        """Diametral clearance between shell and baffle [m], stated or the usual one."""
+        if self.shell_baffle_clearance is not None:
+            return float(self.shell_baffle_clearance)
+        return standard_sizes.shell_baffle_clearance(float(self.shell_id))
+
+    @property
+    def longest_span(self) -> float:
+        """Longest unsupported span of a tube in the windows [m]."""
+        assert self.baffle_spacing is not None
+        count, inlet, outlet = self.path_spacings
+        return max(inlet, outlet) + (self.baffle_spacing if count > 1 else min(inlet, outlet))
+
+    @cached_property
+    def geometry(self) -> shell.BundleGeometry:
+        """Areas and rows of one path through one shell. Raises ValueError where the dimensions contradict."""
+        assert self.baffle_cut is not None
+        assert self.baffle_spacing is not None
+        _, inlet, outlet = self.path_spacings
+        return shell.bundle_geometry(
+            layout_angle=self.angle,
+            shell_id=float(self.shell_id),
+            bundle_diameter=self.outer_tube_limit,
+            tube_od=float(self.tube_od),
+            tube_pitch=float(self.tube_pitch),
+            tubes=self.tubes,
+            baffle_cut=float(self.baffle_cut),
+            baffles=self.baffle_count,
+            baffle_spacing=float(self.baffle_spacing),
+            inlet_spacing=inlet,
+            outlet_spacing=outlet,
+            tube_hole_clearance=self.hole_clearance,
+            shell_baffle_clearance=self.baffle_clearance,
+            sealing_strip_pairs=self.sealing_strip_pairs,
+            pass_lanes=self.pass_lanes,
+            pass_lane_width=float(self.pass_lane_width),
+            shell_passes=self.shell_type.passes,
+            flow_share=self.shell_type.share,
+            length_share=self.shell_type.share,
+        )
+
+    @cached_property
+    def usual_tube_count(self) -> standard_sizes.TubeCount:
+        return standard_sizes.tube_count(
+            float(self.shell_id),
+            float(self.tube_od),
+            float(self.tube_pitch),
+            self.angle,
+            self.tube_passes,
+            u_tubes=self.u_tubes,
+        )
+
+    def derived(self) -> list[tuple[str, str, Source]]:
+        mm = lambda x: f"{x * 1e3:.4g} mm"  # noqa: E731
+        found: list[tuple[str, str, Source]] = []
+        if self.gauge is not None:
+            found.append(("tube_wall", mm((self.tube_od - self.tube_id) / 2), standard_sizes.BWG))
+        if self.bundle_diameter is None:
+            found.append(("bundle_diameter", mm(self.outer_tube_limit), standard_sizes.SINNOTT_BUNDLE))
+        if self.shell_letter == "X":
+            return found
+        _, inlet, outlet = self.path_spacings
+        if self.baffles is None:
+            found.append(("baffles", str(self.baffle_count), DERIVED_BAFFLES))
+        for name, stated, used in (
+            ("inlet_spacing", self.inlet_spacing, inlet),
+            ("outlet_spacing", self.outlet_spacing, outlet),
+        ):
+            if stated is None or abs(used - stated) > 1e-6:
+                found.append((name, mm(used), DERIVED_BAFFLES))
+        if self.tube_hole_clearance is None:
+            found.append(("tube_hole_clearance", mm(self.hole_clearance), standard_sizes.TEMA))
+        if self.shell_baffle_clearance is None:
+            found.append(("shell_baffle_clearance", mm(self.baffle_clearance), standard_sizes.TEMA))
+        return found
+
+    # --- cells ------------------------------------------------------------------------------------------------------
+
+    def cells(self, fineness: int = 1) -> Cells:
+        """The baffle compartments, cut or joined to as many bays as the temperatures need; `fineness` multiplies."""
+        return self._cells(self._layout(fineness))
+
+    def whole(self, fineness: int = 1) -> Cells:
+        return self._cells(layout.counter_chain(24 * fineness))
+
+    def _cells(self, order: layout.Layout) -> Cells:
+        L = float(self.tube_length)
+        start, end = (order.span * L).T
+        return Cells(
+            layout=order,
+            start={"inside": start, "outside": start},
+            end={"inside": end, "outside": end},
+            leg={"inside": L, "outside": L},
+        )
+
+    def _layout(self, fineness: int) -> layout.Layout:
+        letter, passes = self.shell_letter, self.tube_passes
+        first: layout.Arrangement = "counter" if self.first_pass == "counter" else "co-current"
+        if letter == "X":
+            n = 8 * fineness
+            unit = layout.x_shell(n, passes, first, rows=max(1, n // passes))
+        else:
+            paths = self.shell_type.paths
+            bays = self._bays(-(-self._bays_needed // paths) * fineness)
+            n = paths * len(bays)
+            if letter == "E":
+                unit = layout.shell_pass(n, passes, first, bays)
+            elif letter == "F":
+                unit = layout.f_shell(n, passes, first, float(self.long_baffle_leakage), bays)
+            else:
+                # The path begins where the fluid enters: at mid-length, or at one and at three quarters of it.
+                along = np.tile(np.concatenate([bays[::-1], bays]), paths // 2)
+                if letter == "J":
+                    unit = layout.j_shell(n, passes, 1 if self.shell_inlets == 1 else 2, along)
+                else:
+                    split = layout.g_shell if letter == "G" else layout.h_shell
+                    unit = split(n, passes, first, along)
+        return layout.in_series(unit, self.shells_in_series)
+
+    @property
+    def _bays_needed(self) -> int:
+        """Along the shell, for an error of the march below 1e-4 in effectiveness; a plain chain has none."""
+        return 24 if self.tube_passes == 1 else 28
+
+    def _bays(self, needed: int) -> Array:
+        """Lengths [m] of about so many bays along one path, each a part of a compartment or several of them."""
+        count, inlet, outlet = self.path_spacings
+        compartments = np.array([inlet, *[float(self.baffle_spacing or 0.0)] * (max(1, round(count)) - 1), outlet])
+        if len(compartments) < needed:
+            cut = -(-needed // len(compartments))
+            return np.repeat(compartments / cut, cut)
+        joined = len(compartments) // needed
+        return np.add.reduceat(compartments, np.arange(0, len(compartments), joined))
+
+    # --- films ------------------------------------------------------------------------------------------------------
+
+    def _bore(self, R_inside: Array) -> Array:
+        """(P, 1) free bore of the tubes, narrowed by the deposit when its conductivity is stated."""
+        if self.deposit_conductivity is None:
+            return np.full((np.size(R_inside), 1), self.tube_id)
+        return np.asarray(self.tube_id * np.exp(-2 * self.deposit_conductivity * R_inside / self.tube_id))[:, None]
+
+    def _tube_flow(self, at: Flowing) -> tuple[Array, Array]:
+        """(P, 1) mass velocity in the tubes [kg/m²s] and their bore [m]."""
+        d = self._bore(at.R_fouling)
+        tubes = self.tubes_per_pass(at.tubes_plugged) * self.shells_in_parallel
+        return (at.flow / tubes)[:, None] / (np.pi / 4 * d**2), d
+
+    @staticmethod
+    def _wall(at: Flowing) -> inside_tubes.Wall:
+        return inside_tubes.Wall(mu=at.mu_wall / at.bulk.mu, Pr=at.Pr_wall / at.bulk.Pr, T=at.T_wall / at.T, gas=at.gas)
+
+    def _shell_flow(self, at: Flowing) -> Array:
+        """(P, 1) flow of one shell [kg/s]."""
+        return at.flow[:, None] / self.shells_in_parallel
+
+    def _shell_Re(self, cells: Cells, at: Flowing) -> tuple[Array, Array, Array]:
+        """Mass velocity (P, 1), local Re (P, n) and mean Re of the shell that a cell lies in."""
+        m = self._shell_flow(at)
+        G = m / self._cross_flow_area if self.shell_letter == "X" else self.geometry.mass_velocity(m)
+        Re = np.asarray(G * self.tube_od / at.bulk.mu)
+        order = cells.layout
+        if Re.shape[1] != order.n_cells:
+            return np.asarray(G), Re, Re
+        mean = Re.reshape(len(Re), order.units, -1) @ order.area
+        return np.asarray(G), Re, np.repeat(mean, len(order.area), axis=1) if order.units > 1 else mean
+
+    @cached_property
+    def _cross_flow_area(self) -> float:
+        """Of an X shell, all of its length [m²]."""
+        return shell.crossflow_area(
+            self.angle,
+            float(self.shell_id),
+            self.outer_tube_limit,
+            float(self.tube_od),
+            float(self.tube_pitch),
+            float(self.tube_length),
+        )
+
+    @property
+    def _rows_crossed(self) -> float:
+        """Of an X shell, at its middle."""
+        row_pitch = shell.layout(self.angle).row * self.tube_pitch
+        return float((self.outer_tube_limit - self.tube_od) / row_pitch + 1)
+
+    @property
+    def _pitch_ratio(self) -> float:
+        return float(self.tube_pitch / self.tube_od)
+
+    def film(self, side: Side, cells: Cells, at: Flowing) -> Film:
+        if side == "inside":
+            G, d = self._tube_flow(at)
+            Re, relations = G * d / at.bulk.mu, inside_tubes.TUBE_RELATIONS
+            x1, x2 = cells.start[side], cells.end[side]
+            factors = at.factors_of(relations)
+            Nu, regime = inside_tubes.nusselt_tube(Re, at.bulk.Pr, d, x1, x2, wall=self._wall(at), factors=factors)
+            h = Nu * at.bulk.k / self.tube_id * self.film_factor.inside
+            return Film(h=h, Re=Re, Pr=at.bulk.Pr, velocity=G / at.bulk.rho, regime=regime, relations=relations)
+        G, Re, Re_mean = self._shell_Re(cells, at)
+        local: dict[str, Any] = {
+            "G": G, "Re": Re, "Pr": at.bulk.Pr, "cp": at.bulk.cp, "mu_ratio": at.mu_wall / at.bulk.mu
+        }  # fmt: skip
+        if self.shell_letter == "X":
+            relation = shell.taborek_j
+            h = shell.ideal_film(self.angle, self._pitch_ratio, **local)
+        else:
+            relation = shell.bell_delaware_film
+            h = relation(self.geometry, Re_mean=Re_mean, **local)
+        regime = (Re >= RE_LAMINAR).astype(np.int8) + (Re >= RE_TRANSITIONAL)
+        factor = np.asarray(at.factor_of(relation))[..., None] * self.film_factor.outside
+        return Film(
+            h=h * factor, Re=Re, Pr=at.bulk.Pr, velocity=G / at.bulk.rho, regime=regime, relations=(relation,) * 3
+        )
+
+    def second_opinions(self, side: Side, cells: Cells, at: Flowing) -> dict[str, Array]:
+        Pr, mu_ratio = at.bulk.Pr, at.mu_wall / at.bulk.mu
+        if side == "outside":
+            found: dict[str, Array] = {}
+            De, _, Re = self._kern_flow(at)
+            if self.shell_letter != "X" and not shell.kern_film.valid[0].outside(Re).any():
+                h = shell.kern_film(De, k=at.bulk.k, Re=Re, Pr=Pr, mu_ratio=mu_ratio)
+                found[shell.kern_film.name] = h.mean(axis=1) * self.film_factor.outside
+            return found
+        G, d = self._tube_flow(at)
+        Re, L = G * d / at.bulk.mu, cells.leg[side]
+        lowest, highest = float(Re.min()), float(Re.max())
+        numbers: dict[Correlation, Array] = {}
+        if lowest >= inside_tubes.RE_TURBULENT:
+            numbers[inside_tubes.gnielinski_1976] = inside_tubes.gnielinski_1976(Re, Pr)
+            numbers[inside_tubes.dittus_boelter] = inside_tubes.dittus_boelter(Re, Pr, at.heated)
+            numbers[inside_tubes.sieder_tate_turbulent] = inside_tubes.sieder_tate_turbulent(Re, Pr, mu_ratio)
+        elif highest < inside_tubes.RE_LAMINAR:
+            numbers[inside_tubes.hausen_laminar] = inside_tubes.hausen_laminar(Re, Pr, d / L)
+            numbers[inside_tubes.sieder_tate_laminar] = inside_tubes.sieder_tate_laminar(Re, Pr, d / L, mu_ratio)
+        if inside_tubes.RE_LAMINAR < highest < inside_tubes.RE_TURBULENT:
+            numbers[inside_tubes.transition_2013] = inside_tubes.nusselt_tube(
+                Re, Pr, d, 0.0, L, wall=self._wall(at), joined_by=inside_tubes.transition_2013
+            )[0]
+        to_h = at.bulk.k / self.tube_id * self.film_factor.inside
+        return {relation.name: (Nu * to_h).mean(axis=1) for relation, Nu in numbers.items()}
+
+    def _kern_flow(self, at: Flowing) -> tuple[float, Array, Array]:
+        """Kern's equivalent diameter [m], mass velocity [kg/m²s] and Re of one path."""
+        assert self.baffle_spacing is not None or self.shell_letter == "X"
+        De = shell.kern_equivalent_diameter(self.angle, float(self.tube_od), float(self.tube_pitch))
+        As = shell.kern_area(
+            float(self.shell_id),
+            float(self.tube_od),
+            float(self.tube_pitch),
+            float(self.baffle_spacing or self.tube_length),
+            self.shell_type.passes,
+        )
+        Gs = self._shell_flow(at) * self.shell_type.share / As
+        return De, Gs, np.asarray(De * Gs / at.bulk.mu)
+
+    def excursions(self, side: Side, cells: Cells, at: Flowing, film: Film) -> tuple[Excursion, ...]:
+        if side == "inside":
+            _, d = self._tube_flow(at)
+            return inside_tubes.excursions_tube(film.Re, film.Pr, d, cells.leg[side], wall=self._wall(at))
+        cut = np.asarray(self.baffle_cut if self.baffle_cut is not None else np.nan, dtype=float)
+        return film.relations[0].excursions(Re=film.Re, pitch_ratio=np.asarray(self._pitch_ratio), baffle_cut=cut)
+
+    def shell_details(self, at: Flowing) -> dict[str, Array]:
+        """Areas [m²], rows, ratios and correction factors of the shell-side method, scalars or (P,), at one state a
+        point: names as in Taborek's text. Empty for an X shell, whose bank takes no correction."""
+        if self.shell_letter == "X":
+            return {}
+        g = self.geometry
+        _, Re, _ = self._shell_Re(self.whole(), at)
+        Re = Re.mean(axis=1)
+        J, R = shell.film_factors(g, Re), shell.drop_factors(g, Re)
+        areas = ("Sm", "Sw", "Dw", "Ssb", "Stb", "Sb", "Fc", "Fw", "Ncc", "Ncw", "Nb", "rs", "rlm", "Fbp", "rss")
+        return {
+            **{name: np.asarray(getattr(g, name)) for name in areas},
+            "Re": Re,
+            **{name: np.asarray(getattr(J, name)) for name in ("Jc", "Jl", "Jb", "Js", "Jr")},
+            **{name: np.asarray(getattr(R, name)) for name in ("Rl", "Rb", "Rs")},
+        }
+
+    # --- walls ------------------------------------------------------------------------------------------------------
+
+    def wall_resistance(self, T_metal: Array) -> Array:
+        return np.asarray(self.tube_od * np.log(self.tube_od / self.tube_id) / (2 * self.metal_conductivity(T_metal)))
+
+    def metal_conductivity(self, T: Array) -> Array:
+        if self.wall_conductivity is not None:
+            return np.full_like(T, float(self.wall_conductivity))
+        return standard_sizes.conductivity(str(self.material), T)
+
+    def fouling_resistance(self, side: Side, R: Array) -> Array:
+        return R * self.area_ratio if side == "inside" else R
+
+    # --- drops ------------------------------------------------------------------------------------------------------
+
+    def drop(self, side: Side, cells: Cells, at: Flowing, film: Film) -> dict[str, Array]:
+        parts = self._tube_drop(cells, at, film) if side == "inside" else self._shell_drop(cells, at)
+        factor = getattr(self.dp_factor, side) * at.factor_of(self.drop_relation(side))
+        return {name: part * factor for name, part in parts.items()}
+
+    def _tube_drop(
+        self, cells: Cells, at: Flowing, film: Film, heads: losses.Figure = losses.TUBE_PASS
+    ) -> dict[str, Array]:
+        G, d = self._tube_flow(at)
+        f = losses.friction_tube(film.Re, float(self.inside_roughness) / d, wall=self._wall(at))
+        head = losses.velocity_head(G, at.bulk.rho)
+        share, passes = cells.layout.area_share, self.tube_passes * self.shells_in_series
+        mean = lambda x: np.broadcast_to(x, (len(G), len(share))) @ share  # noqa: E731
+        along = passes * self.tube_length + passes // 2 * self.u_bend_length
+        # A gas also pays for its acceleration as density falls along the way.
+        gained = G[:, 0] ** 2 * (1 / at.bulk.rho[:, -1] - 1 / at.bulk.rho[:, 0]) if at.gas else np.zeros(len(G))
+        return {
+            "friction": mean(f * head / d) * along,
+            "returns": heads.value * passes * mean(head),
+            "entrance_exit": gained,
+            "nozzles": self._nozzle_drop(self.tube_nozzle_id, at, mean(at.bulk.rho), 1, 1),
+        }
+
+    def _shell_drop(self, cells: Cells, at: Flowing) -> dict[str, Array]:
+        G, Re, Re_mean = self._shell_Re(cells, at)
+        rho, mu_ratio, share = at.bulk.rho, at.mu_wall / at.bulk.mu, cells.layout.area_share
+        mean = lambda x: np.broadcast_to(x, (len(G), len(share))) @ share  # noqa: E731
+        if self.shell_letter == "X":
+            rows = self._rows_crossed
+            crossflow = shell.ideal_drop(self.angle, self._pitch_ratio, rows, G=G, Re=Re, rho=rho, mu_ratio=mu_ratio)
+            parts = {"crossflow": crossflow, "window": 0.0, "ends": 0.0}
+        else:
+            m = self._shell_flow(at)
+            found = shell.bell_delaware_drop(
+                self.geometry, m=m, rho=rho, mu=at.bulk.mu, mu_ratio=mu_ratio, Re_mean=Re_mean
+            )
+            parts = {"crossflow": found.crossflow, "window": found.window, "ends": found.ends}
+        return {
+            **{name: mean(part) * self.shells_in_series for name, part in parts.items()},
+            "nozzles": self._shell_nozzles(at, mean(rho)),
+        }
+
+    def _shell_nozzles(self, at: Flowing, rho: Array) -> Array:
+        kind = self.shell_type
+        inlets, outlets = kind.inlets, kind.outlets
+        if self.shell_letter == "J" and self.shell_inlets == 2:
+            inlets, outlets = 2, 1
+        return self._nozzle_drop(self.shell_nozzle_id, at, rho, inlets, outlets)
+
+    def _nozzle_drop(self, bore: float | None, at: Flowing, rho: Array, inlets: int, outlets: int) -> Array:
+        """(P,) loss in the nozzles of all shells in series; each shell has its own."""
+        if bore is None:
+            return np.zeros_like(rho)
+        head = losses.velocity_head(at.flow / self.shells_in_parallel / (np.pi / 4 * float(bore) ** 2), rho)
+        heads = losses.NOZZLE_IN.value / inlets**2 + losses.NOZZLE_OUT.value / outlets**2
+        return np.asarray(head * heads * self.shells_in_series)
+
+    def drop_relation(self, side: Side) -> Correlation:
+        if side == "inside":
+            return losses.churchill
+        return shell.taborek_f if self.shell_letter == "X" else shell.bell_delaware_drop
+
+    def second_opinion_drops(self, side: Side, cells: Cells, at: Flowing) -> dict[str, Array]:
+        """Total drop by other published relations, by name, at mean conditions (P,), nozzles and dp_factor included."""
+        factor = getattr(self.dp_factor, side)
+        if side == "inside":
+            parts = self._tube_drop(cells, at, self.film(side, cells, at), losses.TUBE_PASS_KERN)
+            return {losses.TUBE_PASS_KERN.what: sum(parts.values(), np.zeros(len(at.flow))) * factor}
+        if self.shell_letter == "X":
+            return {}
+        rho, mu_ratio = at.bulk.rho, at.mu_wall / at.bulk.mu
+        found: dict[Correlation, Array] = {}
+        De, Gs, Re = self._kern_flow(at)
+        if not shell.kern_drop.valid[0].outside(Re).any():
+            crossings = (self.baffle_count * self.shell_type.share + 1) * self.shell_type.passes
+            found[shell.kern_drop] = shell.kern_drop(
+                De, shell_id=float(self.shell_id), crossings=crossings, Gs=Gs, rho=rho, Re=Re, mu_ratio=mu_ratio
+            )
+        _, Re, Re_mean = self._shell_Re(cells, at)
+        if not shell.gaddis_gnielinski_drop.valid[0].outside(Re).any():
+            found[shell.gaddis_gnielinski_drop] = shell.gaddis_gnielinski_drop(
+                self.geometry, m=self._shell_flow(at), rho=rho, mu=at.bulk.mu, mu_ratio=mu_ratio, Re_mean=Re_mean
+            ).total
+        nozzles = self._shell_nozzles(at, rho.mean(axis=1))
+        return {
+            relation.name: (dp.mean(axis=1) * self.shells_in_series + nozzles) * factor
+            for relation, dp in found.items()
+        }
+
+    # --- the whole --------------------------------------------------------------------------------------------------
+
+    @property
+    def arrangement(self) -> Literal["counter", "co-current"]:
+        """Which terminal differences an LMTD of this exchanger takes."""
+        one_way = self.tube_passes == self.shell_type.passes and self.shell_letter in "EF"
+        return "co-current" if one_way and self.first_pass == "co-current" and self.shells_in_series == 1 else "counter"
+
+    def _relation(self, inside_is_min: Array) -> exact.Relation | str:
+        """ε(NTU, Cr) of the arrangement, or the reason why there is none."""
+        letter, passes, n = self.shell_letter, self.tube_passes, self.shells_in_series
+        counter = self.first_pass == "counter"
+        if letter == "F" and self.long_baffle_leakage:
+            return "no closed relation is known for an F shell with leakage past its longitudinal baffle"
+        if letter in "EF" and passes == self.shell_type.passes:
+            if counter:
+                return exact.effectiveness_counter
+            return lambda NTU, Cr: self._in_series(exact.effectiveness_cocurrent, NTU, Cr)
+        if letter == "E" and passes % 2 == 0:
+            shells, of_shell = n, passes
+        elif letter == "F" and passes % 4 == 0 and counter:
+            # Each shell pass with its tubes is an E shell; the two are in series.
+            shells, of_shell = 2 * n, passes // 2
+        elif letter == "X" and passes == 1:
+            return lambda NTU, Cr: self._in_series(exact.effectiveness_crossflow_unmixed, NTU, Cr)
+        else:
+            return (
+                f"no closed relation is used for a {letter} shell with {passes} tube "
+                f"{'pass' if passes == 1 else 'passes'}; the march stands alone"
+            )
+        return lambda NTU, Cr: exact.effectiveness_shell(
+            NTU, Cr, shells, tube_passes=of_shell, tubes_are_min=inside_is_min
+        )
+
+    def _in_series(self, relation: exact.Relation, NTU: Array, Cr: Array) -> Array:
+        """A train in counterflow of shells that each follow a relation alike for both fluids."""
+        n = self.shells_in_series
+        if n == 1:
+            return relation(NTU, Cr)
+        return exact.effectiveness_counter(n * exact.ntu_counter(relation(NTU / n, Cr), Cr), Cr)
+
+    def effectiveness(self, NTU: Array, Cr: Array, inside_is_min: Array) -> Array | str:
+        relation = self._relation(inside_is_min)
+        return relation if isinstance(relation, str) else relation(NTU, Cr)
+
+    def driving_force(self, T_in: Mapping[Side, Array], T_out: Mapping[Side, Array]) -> tuple[Array, Array] | str:
+        change = {side: np.abs(T_out[side] - T_in[side]) for side in T_in}
+        inside_is_min = change["inside"] >= change["outside"]
+        relation = self._relation(inside_is_min)
+        if isinstance(relation, str):
+            return relation
+        outside = (
+            (T_out["outside"], T_in["outside"])
+            if self.arrangement == "counter"
+            else (T_in["outside"], T_out["outside"])
+        )
+        ends = [np.abs(a - b) for a, b in zip((T_in["inside"], T_out["inside"]), outside, strict=True)]
+        lmtd = exact.log_mean(*ends)
+        if relation is exact.effectiveness_counter or self.arrangement == "co-current":
+            return lmtd, np.ones_like(lmtd)
+        larger, smaller = np.maximum(*change.values()), np.minimum(*change.values())
+        P = larger / np.abs(T_in["inside"] - T_in["outside"])
+        R = smaller / np.where(larger == 0, 1.0, larger)
+        if self.shell_letter == "E" and self.tube_passes == 2:
+            return lmtd, exact.correction_factor(P, R, self.shells_in_series)
+        needed = exact.ntu(relation, P, R)
+        return lmtd, np.where(np.isinf(needed), 0.0, exact.ntu_counter(P, R) / np.where(needed == 0, 1.0, needed))
+
+    # --- what does not go together ----------------------------------------------------------------------------------
+
+    def problems(self) -> Iterator[Problem]:
+        tema_sound = True
+        for problem in self._tema_problems():
+            tema_sound = False
+            yield problem
+        yield from self._wall_problems()
+        size_sound = True
+        for problem in self._size_problems(tema_sound):
+            size_sound = False
+            yield problem
+        if tema_sound:
+            yield from self._baffle_problems(size_sound)
+
+    def _tema_problems(self) -> Iterator[Problem]:
+        letters = self.tema.upper()
+        if len(letters) != 3:
+            says = f'"{self.tema}" is not a TEMA type; allowed are three letters: front head, shell, rear head'
+            yield Problem(path="tema", says=says)
+            return
+        front, kind, rear = letters
+        if front not in FRONT_HEADS:
+            says = f'"{front}" is not a front head that is offered; allowed are {", ".join(FRONT_HEADS)}'
+            yield Problem(path="tema", says=says)
+        if kind == "K":
+            says = '"K" shells are kettle reboilers, which boil; they are not rated here'
+            yield Problem(path="tema", says=says)
+        elif kind not in SHELLS:
+            yield Problem(path="tema", says=f'"{kind}" is not a shell that is offered; allowed are {", ".join(SHELLS)}')
+        if rear not in REAR_HEADS:
+            yield Problem(path="tema", says=f'"{rear}" is not a rear head; allowed are {", ".join(REAR_HEADS)}')
+        passes = self.tube_passes
+        if rear == "U" and passes % 2:
+            says = f"{passes} cannot be: U-tubes lead back to the front head, so their passes are even"
+            yield Problem(path="tube_passes", says=says)
+        if kind == "F" and passes % 2:
+            says = f"{passes} cannot be halved: an F shell has half of its tube passes in each shell pass"
+            yield Problem(path="tube_passes", says=says)
+        if kind in "GH" and passes > 1 and passes % 2:
+            says = f"{passes} does not fit: a {kind} shell has one tube pass or an even number"
+            yield Problem(path="tube_passes", says=says)
+        if rear == "U" and self.tubes % 2:
+            says = f"{self.tubes} is odd; U-tubes are counted by their legs, two for each"
+            yield Problem(path="tubes", says=says)
+        if kind != "F" and self.long_baffle_leakage:
+            says = f"is for F shells only; an {kind} shell has no longitudinal baffle that it could pass in that way"
+            yield Problem(path="long_baffle_leakage", says=says)
+        if kind != "J" and self.shell_inlets != 1:
+            yield Problem(path="shell_inlets", says="is for J shells only")
+
+    def _wall_problems(self) -> Iterator[Problem]:
+        if (self.material is None) == (self.wall_conductivity is None):
+            says = 'one of "material" and "wall_conductivity" must be stated, not both and not neither'
+            yield Problem(path="material", says=says)
+        elif self.material is not None:
+            try:
+                standard_sizes.conductivity(self.material, np.asarray(300.0))
+            except ValueError as error:
+                yield Problem(path="material", says=str(error))
+        if (self.tube_wall is None) == (self.gauge is None):
+            says = 'one of "tube_wall" and "gauge" must be stated, not both and not neither'
+            yield Problem(path="tube_wall", says=says)
+            return
+        try:
+            bore = self.tube_id
+        except ValueError as error:
+            yield Problem(path="gauge", says=str(error))
+            return
+        if bore <= 0:
+            says = f"leaves no bore in a tube of {self.tube_od * 1e3:.4g} mm; allowed is below half of the diameter"
+            yield Problem(path="gauge" if self.gauge is not None else "tube_wall", says=says)
+        elif self.inside_roughness > 0.05 * bore:
+            says = f"is over 5 % of the bore of {bore * 1e3:.4g} mm; allowed is up to that"
+            yield Problem(path="inside_roughness", says=says)
+
+    def _size_problems(self, tema_sound: bool) -> Iterator[Problem]:
+        mm = lambda x: f"{x * 1e3:.4g} mm"  # noqa: E731
+        if self.tubes_plugged >= self.tubes:
+            says = f"{self.tubes_plugged} of {self.tubes} tubes leaves none open; allowed is up to {self.tubes - 1}"
+            yield Problem(path="tubes_plugged", says=says)
+        if self.tubes < self.tube_passes:
+            says = f"{self.tubes} cannot fill {self.tube_passes} passes; allowed is at least one tube a pass"
+            yield Problem(path="tubes", says=says)
+        if self.tube_pitch < 1.15 * self.tube_od:
+            says = (
+                f"{mm(self.tube_pitch)} is below 1.15 tube diameters of {mm(self.tube_od)}; allowed is from "
+                f"{mm(1.15 * self.tube_od)}"
+            )
+            yield Problem(path="tube_pitch", says=says)
+        if self.bundle_diameter is not None and self.bundle_diameter >= self.shell_id:
+            says = f"{mm(self.bundle_diameter)} does not fit into the shell of {mm(self.shell_id)}"
+            yield Problem(path="bundle_diameter", says=says)
+        elif tema_sound and self.outer_tube_limit < 2 * self.tube_od + self.tube_pitch:
+            says = f"{mm(self.shell_id)} is too small for a bundle of tubes of {mm(self.tube_od)}"
+            yield Problem(path="shell_id", says=says)
+        elif tema_sound and self.crowding > REFUSED_COUNT:
+            says = (
+                f"{self.tubes} in a shell of {mm(self.shell_id)} is {self.crowding:.0%} more than published layouts "
+                f"hold; allowed is up to {REFUSED_COUNT:.0%} more"
+            )
+            yield Problem(path="tubes", says=says)
+
+    @property
+    def crowding(self) -> float:
+        """By how much the tubes exceed the largest published count, as a fraction of it; negative when below."""
+        return self.tubes / self.usual_tube_count.high - 1
+
+    def _baffle_problems(self, size_sound: bool) -> Iterator[Problem]:
+        if self.shell_letter == "X":
+            return
+        sound = True
+        for name in ("baffle_cut", "baffle_spacing"):
+            if getattr(self, name) is None:
+                sound = False
+                yield Problem(path=name, says="is missing")
+        if self.baffle_cut is not None and not 0.10 <= self.baffle_cut <= 0.49:
+            sound = False
+            says = f"{self.baffle_cut:.3g} of the shell bore is out of bounds; allowed is 10 to 49 %"
+            yield Problem(path="baffle_cut", says=says)
+        if self.baffle_spacing is not None:
+            try:
+                _ = self.path_spacings
+            except ValueError as error:
+                sound = False
+                path = "baffles" if self.baffles is not None else "baffle_spacing"
+                yield Problem(path=path, says=str(error))
+        try:
+            _ = self.baffle_clearance
+        except ValueError as error:
+            sound = False
+            yield Problem(path="shell_baffle_clearance", says=str(error))
+        if sound and size_sound:
+            try:
+                _ = self.geometry
+            except ValueError as error:
+                yield Problem(path="", says=str(error))
+
+
+__all__ = ["SHELLS", "ShellAndTube", "ShellType"]
