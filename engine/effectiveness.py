@@ -258,27 +258,25 @@ def ntu(relation: Relation, effectiveness: ArrayLike, Cr: ArrayLike) -> Array:
     goal, Cr = np.broadcast_arrays(_within("effectiveness", effectiveness, 1.0), _within("Cr", Cr, 1.0))
     shape, goal, Cr = goal.shape, goal.ravel(), Cr.ravel()
     grid = np.concatenate([[0.0], 2.0 ** np.arange(-2, np.log2(LARGEST_NTU) + 1)])
-    values = relation(grid[:, None], Cr)
-    top, best = values.argmax(axis=0), values.max(axis=0)
-    peak, below, beyond = grid[top], np.maximum(top - 1, 0), np.minimum(top + 1, len(grid) - 1)
-    on_grid = goal <= best
-
-    # A relation that falls again has its peak between grid points.
-    turns = values[beyond, np.arange(len(goal))] < best * (1 - 1e-9)
-    if turns.any():
-        around = (grid[below][turns], peak[turns], grid[beyond][turns])
-        highest = elementwise.find_minimum(lambda N, ratio: -relation(N, ratio), around, args=(Cr[turns],))
-        peak[turns], best[turns] = highest.x, -highest.f_x
-
-    reached = (goal <= best) & (goal < 1)
-    least = np.where(reached, 0.0, np.inf)
-    seek = reached & (goal > 0)
+    low, high = np.zeros_like(goal), np.where(goal == 0, 0.0, np.inf)
+    highest = np.zeros_like(goal)
+    climbing = np.flatnonzero((goal > 0) & (goal < 1))
+    for k in range(1, len(grid)):
+        value = relation(grid[k], Cr[climbing])
+        reached, falls = value >= goal[climbing], value < highest[climbing] * (1 - 1e-9)
+        low[climbing], highest[climbing] = grid[k - 1], value
+        high[climbing[reached]] = grid[k]
+        turned = climbing[falls & ~reached]
+        if turned.size:
+            around = (grid[k - 2], grid[k - 1], grid[k])
+            peak = elementwise.find_minimum(lambda N, ratio: -relation(N, ratio), around, args=(Cr[turned],))
+            low[turned], high[turned] = grid[k - 2], np.where(-peak.f_x >= goal[turned], peak.x, np.inf)
+        climbing = climbing[~reached & ~falls]
+        if not climbing.size:
+            break
+    seek = np.isfinite(high) & (high > 0)
     if seek.any():
-        first = (values >= goal).argmax(axis=0)
-        low = np.where(on_grid, grid[np.maximum(first - 1, 0)], grid[below])[seek]
-        high = np.where(on_grid, grid[first], peak)[seek]
-        root = elementwise.find_root(
-            lambda N, ratio, e: relation(N, ratio) - e, (low, high), args=(Cr[seek], goal[seek])
-        )
-        least[seek] = root.x
-    return least.reshape(shape)
+        bracket = (low[seek], high[seek])
+        root = elementwise.find_root(lambda N, ratio, e: relation(N, ratio) - e, bracket, args=(Cr[seek], goal[seek]))
+        high[seek] = root.x
+    return high.reshape(shape)
