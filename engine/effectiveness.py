@@ -94,18 +94,22 @@ def _ntu_counter(P: Array, R: Array) -> Array:
 
 
 def effectiveness_counter(NTU: ArrayLike, Cr: ArrayLike) -> Array:
+    """Counterflow."""
     return _counter(_within("NTU", NTU), _within("Cr", Cr, 1.0))
 
 
 def effectiveness_cocurrent(NTU: ArrayLike, Cr: ArrayLike) -> Array:
+    """Co-current flow."""
     return _cocurrent(_within("NTU", NTU), _within("Cr", Cr, 1.0))
 
 
 def ntu_counter(effectiveness: ArrayLike, Cr: ArrayLike) -> Array:
+    """Counterflow; inf where the effectiveness is 1."""
     return _ntu_counter(_within("effectiveness", effectiveness, 1.0), _within("Cr", Cr, 1.0))
 
 
 def ntu_cocurrent(effectiveness: ArrayLike, Cr: ArrayLike) -> Array:
+    """Co-current flow; inf from 1/(1 + Cr) on."""
     both = 1 + _within("Cr", Cr, 1.0)
     x = both * _within("effectiveness", effectiveness, 1.0)
     return np.where(x < 1, -np.log1p(-np.where(x < 1, x, 0.0)) / both, np.inf)
@@ -170,7 +174,7 @@ def _ntu_shell(P: Array, R: Array) -> Array:
 
 
 def ntu_shell(effectiveness: ArrayLike, Cr: ArrayLike, shells: int = 1) -> Array:
-    """NTU of `shells` 1-2 shells in series together."""
+    """NTU of `shells` 1-2 shells in series together; inf from `largest_P` on."""
     P, Cr = np.broadcast_arrays(_within("effectiveness", effectiveness, 1.0), _within("Cr", Cr, 1.0))
     return shells * _ntu_shell(_per_shell(P, Cr, shells), Cr)
 

@@ -183,7 +183,8 @@ def temperatures(
     for a fluid at constant temperature. T_in_inside, T_in_outside: (P,) inlets [K]. All broadcast.
 
     A chain is exact for any number of cells. In other layouts the inside fluid runs an exponential towards the mean
-    temperature of the bay: second order in the bay's length.
+    temperature of the bay: second order in the bay's length. The cost there grows with the cube of the bays of a unit,
+    the memory with P times its cells times its bays; units in series cost no more than as many points.
     """
     T_i, T_o = np.asarray(T_in_inside, dtype=float), np.asarray(T_in_outside, dtype=float)
     cells = [np.asarray(x, dtype=float) for x in (UA, C_inside, C_outside)]
