@@ -1,0 +1,160 @@
+"""The case: state it, open it, save it."""
+
+from __future__ import annotations
+
+import json
+import re
+from pathlib import Path
+from typing import Any
+
+import streamlit as st
+
+import engine
+from app import fields, session
+from app.display import plain
+from app.frame import state_line
+from app.inputs import Form, Problems
+
+TITLE = "Case"
+SAMPLES = Path(__file__).resolve().parent.parent / "sample_cases"
+FIRST = ("tag", "service")
+"""Of the words about the case; the others stand in a fold."""
+
+
+def show() -> None:
+    problems = Problems(session.checked(session.text_of(session.case())).problems)
+    form = Form(problems)
+    st.title(plain(form.stated(("tag",)) or "New case"))
+    with st.container(horizontal=True):
+        opening()
+        samples()
+        saving()
+        starting()
+    st.markdown(f"**{state_line(problems)}**")
+    top = st.container()
+    about(form)
+    sides(form)
+    st.subheader("Exchanger")
+    form.kinds(_part("exchanger"), ("exchanger",))
+    form.fold("Limits of the equipment", [("limits",)], lambda: _limits(form))
+    with top:
+        unplaced(problems)
+
+
+def opening() -> None:
+    with st.popover("Open", icon=":material/folder_open:"):
+        widget = f"upload{session.view()}"
+        st.file_uploader(
+            "A case file (JSON)",
+            type="json",
+            key=widget,
+            max_upload_size=1,
+            on_change=_uploaded,
+            args=(widget,),
+        )
+
+
+def _uploaded(widget: str) -> None:
+    file = session.typed(widget)
+    if file is not None:
+        session.open_file(file.getvalue(), file.name)
+
+
+def samples() -> None:
+    known = _samples()
+    if not known:
+        return
+    with st.popover("Examples", icon=":material/menu_book:"):
+        for name, sample in known.items():
+            st.button(
+                plain(f"{sample.get('tag') or name}: {sample.get('service') or 'a case'}"),
+                key=f"sample {name}{session.view()}",
+                on_click=session.replace,
+                args=({key: value for key, value in sample.items()}, f"example {name}"),
+                width="stretch",
+            )
+            if sample.get("teaches"):
+                st.caption(plain(sample["teaches"]))
+
+
+@st.cache_data(show_spinner=False, ttl=60)
+def _samples() -> dict[str, dict[str, Any]]:
+    found = {}
+    for path in sorted(SAMPLES.glob("*.json")):
+        try:
+            found[path.stem] = engine.read_raw(path)
+        except engine.CaseError:
+            continue
+    return found
+
+
+def saving() -> None:
+    with st.popover("Save", icon=":material/download:"):
+        st.download_button(
+            "Save the case as a file",
+            case_file(),
+            file_name(session.case(), "json"),
+            "application/json",
+            on_click="ignore",
+        )
+        st.caption("Everything you typed, figures with their units as typed. An unfinished case can be saved too.")
+
+
+def case_file() -> str:
+    raw = session.case()
+    case = session.checked(session.text_of(raw)).case
+    return engine.dump_case(case) if case is not None else json.dumps(raw, indent=1, ensure_ascii=False) + "\n"
+
+
+def file_name(raw: dict[str, Any], ending: str) -> str:
+    words = re.sub(r"[^A-Za-z0-9._-]+", "-", str(raw.get("tag") or "")).strip(".-")
+    return f"{words or 'case'}.{ending}"
+
+
+def starting() -> None:
+    with st.popover("New", icon=":material/note_add:"):
+        st.caption("The present case goes away unless you save it. One step back brings it again.")
+        st.button("Start an empty case", on_click=session.replace, args=(session.empty_case(), "new case"))
+
+
+def about(form: Form) -> None:
+    words = [part for part in fields.parts(engine.Case) if part.shape == "box" and part.name != "format"]
+    form.boxes([part for part in words if part.name in FIRST], (), 2)
+    rest = [part for part in words if part.name not in FIRST]
+    form.fold("About this case", [(part.name,) for part in rest], lambda: form.boxes(rest, (), 2))
+
+
+def sides(form: Form) -> None:
+    """Both streams side by side, each under the name it has in this exchanger."""
+    model = fields.kind_stated(_part("exchanger").models, form.stated(("exchanger",)))
+    for side, place in zip(engine.SIDES, st.columns(2, gap="large"), strict=True):
+        with place:
+            st.subheader(model.side_names[side])
+            stream = _part(side).models[0]
+            form.said((side,))
+            for part in fields.parts(stream):
+                if part.shape == "kinds":
+                    form.kinds(part, (side, part.name))
+            form.boxes([part for part in fields.parts(stream) if part.shape == "box"], (side,), 2)
+
+
+def _limits(form: Form) -> None:
+    form.boxes(fields.parts(_part("limits").models[0]), ("limits",), 2, within=("limits",))
+
+
+def _part(name: str) -> fields.Part:
+    return next(part for part in fields.parts(engine.Case) if part.name == name)
+
+
+def unplaced(problems: Problems) -> None:
+    """What belongs to no field, such as a key that a file holds and no case knows."""
+    for place, sentences in problems.rest().items():
+        for says in sentences:
+            st.error(plain(f"{place}: {says}" if place else says), icon=":material/error:")
+        path = _steps(place)
+        if place and fields.get(session.case(), path) is not None:
+            st.button(f"Take “{plain(place)}” out of the case", on_click=session.put, args=(path, None))
+
+
+def _steps(place: str) -> fields.Path:
+    return tuple(int(step) if step.isdigit() else step for step in re.findall(r"[^.\[\]]+", place))
