@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import copy
+import re
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 from functools import cache
@@ -137,6 +138,33 @@ def figures(model: type[engine.Input], raw: Any) -> Iterator[tuple[str, tuple[st
         elif part.shape == "rows" and isinstance(value, list):
             for row in value:
                 yield from figures(part.models[0], row)
+
+
+def words(model: type[engine.Input], raw: Any, path: Path) -> str:
+    """A place as the form calls it: "Annulus, inlet temperature"."""
+    said: list[str] = []
+    for i, step in enumerate(path):
+        if isinstance(step, int):
+            said.append(f"row {step + 1}")
+            continue
+        part = next((part for part in parts(model) if part.name == step), None)
+        if part is None:
+            return ", ".join([*said, *(f"“{rest}”" for rest in path[i:])])
+        if part.shape == "box":
+            said.append(part.declared.name)
+            continue
+        if part.name in engine.SIDES:
+            exchanger = next(p for p in parts(model) if p.name == "exchanger")
+            said.append(kind_stated(exchanger.models, get(raw, ("exchanger",))).side_names[part.name])
+        elif part.shape != "rows":
+            said.append(part.title)
+        model = kind_stated(part.models, get(raw, path[: i + 1]))
+    return ", ".join([said[0], *(text[:1].lower() + text[1:] for text in said[1:])]) if said else ""
+
+
+def steps(place: str) -> Path:
+    """A dotted place as a path."""
+    return tuple(int(step) if step.isdigit() else step for step in re.findall(r"[^.\[\]]+", place))
 
 
 # --- a raw case at a path ---------------------------------------------------------------------------------------------

@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import logging
 from collections.abc import Callable, Sequence
+from typing import Any
 
 import streamlit as st
 
-from app import session
+import engine
+from app import fields, figures, session
 from app.display import AS_TYPED, CHOICES, plain
-from app.inputs import Problems
+from app.inputs import MISSING, Problems
 
 log = logging.getLogger("countercheck")
 
@@ -73,9 +75,36 @@ def state_line(problems: Problems) -> str:
     return f"✎ {', '.join(parts)}."
 
 
+def sentence(place: str, says: str) -> str:
+    """A problem with its place as the form calls it."""
+    where = fields.words(engine.Case, session.case(), fields.steps(place)) if place else ""
+    if not where:
+        return f"{says[0].upper()}{says[1:]}."
+    return f"{where} {says}." if says == MISSING else f"{where}: {says}."
+
+
 def table(header: Sequence[str], rows: Sequence[Sequence[str]]) -> None:
     """A small table of text; figures stand to the right."""
     lines = [header, *rows]
     text = [f"| {' | '.join(plain(cell).replace(chr(10), '<br>') for cell in line)} |" for line in lines]
     marks = ["---", *["---:"] * (len(header) - 1)]
     st.markdown("\n".join([text[0], f"| {' | '.join(marks)} |", *text[1:]]))
+
+
+def blocks(blocks: Sequence[Any], place: str) -> None:
+    """What a section of the report says, on the screen."""
+    for i, block in enumerate(blocks):
+        if isinstance(block, str):
+            st.markdown(plain(block).replace("\n", "  \n"))
+        elif isinstance(block, engine.Table):
+            if block.title:
+                st.markdown(f"**{plain(block.title)}**")
+            table(block.header, block.rows)
+        elif isinstance(block, engine.Chart):
+            plot(figures.chart(block), block.alt, f"{place} {i}")
+        else:
+            st.markdown(plain(block.alt))
+
+
+def plot(figure: Any, alt: str, key: str) -> None:
+    st.plotly_chart(figure, key=key, alt=alt, config={"displayModeBar": False, "scrollZoom": False})

@@ -12,7 +12,7 @@ import streamlit as st
 import engine
 from app import fields, session
 from app.display import plain
-from app.frame import state_line
+from app.frame import sentence, state_line
 from app.inputs import Form, Problems
 
 TITLE = "Case"
@@ -149,12 +149,8 @@ def _part(name: str) -> fields.Part:
 def unplaced(problems: Problems) -> None:
     """What belongs to no field, such as a key that a file holds and no case knows."""
     for place, sentences in problems.rest().items():
+        path = fields.steps(place)
         for says in sentences:
-            st.error(plain(f"{place}: {says}" if place else says), icon=":material/error:")
-        path = _steps(place)
+            st.error(plain(sentence(place, says)), icon=":material/error:")
         if place and fields.get(session.case(), path) is not None:
             st.button(f"Take “{plain(place)}” out of the case", on_click=session.put, args=(path, None))
-
-
-def _steps(place: str) -> fields.Path:
-    return tuple(int(step) if step.isdigit() else step for step in re.findall(r"[^.\[\]]+", place))

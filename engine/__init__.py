@@ -14,6 +14,7 @@ __version__ = "0.1.0"
 _WHERE = {
     "Case": "case",
     "CaseError": "stated",
+    "Chart": "report.sections",
     "Choice": "stated",
     "Count": "stated",
     "EXCHANGERS": "case",
@@ -23,7 +24,9 @@ _WHERE = {
     "Rating": "rating",
     "SIDES": "stated",
     "SYSTEMS": "units",
+    "Scheme": "report.sections",
     "Stated": "stated",
+    "Table": "report.sections",
     "UnitError": "units",
     "Words": "stated",
     "dotted": "stated",

@@ -1,0 +1,141 @@
+"""plotly figures from results. Knows no streamlit.
+
+Dashes, markers and hatches tell apart what colours tell apart; every colour is readable on light and on dark ground.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from typing import Any
+
+import plotly.graph_objects as go
+
+HOT, COLD, WALL = "#d1603d", "#3d8fc4", "#8b9196"
+PALETTE = (HOT, WALL, "#a9afb3", COLD)
+HATCHES = {"laminar": "", "transitional": "/", "turbulent": "x", "condensing": "-"}
+PART_HATCHES = ("", "/", "x", "-", ".", "\\", "+")
+PART_COLOURS = ("#4f8a8b", "#b08d57", "#7d6b91", "#8b9196", "#a65e5e", "#5f8d4e", "#5b7db1")
+GROUND = "rgba(128,136,140,0.30)"
+MARKERS = {"full circle": "circle", "open square": "square-open"}
+
+
+def chart(data: Any) -> go.Figure:
+    """Lines over a common x, with strips below that say what holds where."""
+    figure = go.Figure()
+    room = 0.085 * len(data.strips)
+    for line, colour in zip(data.lines, PALETTE, strict=False):
+        marked = bool(line.marker)
+        figure.add_scatter(
+            x=data.x,
+            y=line.y,
+            name=line.name,
+            mode="lines+markers" if marked else "lines",
+            line={"color": colour, "width": 2.5 if marked else 1.8, "dash": _dash(line.dash)},
+            marker={"symbol": MARKERS.get(line.marker, "circle"), "size": 6},
+            hovertemplate="%{y:.1f}",
+        )
+    for strip in data.strips:
+        for i, (start, end, what) in enumerate(strip.runs):
+            figure.add_bar(
+                x=[end - start],
+                base=[start],
+                y=[strip.name],
+                orientation="h",
+                yaxis="y2",
+                width=0.82,
+                marker={
+                    "color": GROUND,
+                    "line": {"color": WALL, "width": 1},
+                    "pattern": {"shape": HATCHES.get(what, ""), "fgcolor": WALL, "size": 9, "solidity": 0.12},
+                },
+                text=[f"{strip.name}: {what}" if i == 0 and end - start > 0.35 else what],
+                textposition="inside",
+                insidetextanchor="middle",
+                textangle=0,
+                showlegend=False,
+                hovertemplate=f"{strip.name}: {what}<extra></extra>",
+            )
+    for mark in data.marks:
+        figure.add_vline(x=mark, line={"color": WALL, "width": 0.6, "dash": "dot"}, opacity=0.5)
+    figure.update_layout(
+        xaxis={"title": data.x_label, "range": [0, 1], "tickformat": ".0%", "domain": [0, 1], "anchor": "y2"},
+        yaxis={"title": data.y_label, "domain": [room + 0.03 if room else 0, 1]},
+        yaxis2={"domain": [0, room or 0.01], "showticklabels": False, "showgrid": False, "fixedrange": True},
+        hovermode="x unified",
+        barmode="overlay",
+        uniformtext={"minsize": 9, "mode": "hide"},
+        **_frame(430),
+    )
+    return figure
+
+
+def _dash(dashes: Sequence[float]) -> str:
+    return ",".join(f"{2 * dash:g}px" for dash in dashes) if dashes else "solid"
+
+
+def _frame(height: int) -> dict[str, Any]:
+    return {
+        "height": height,
+        "margin": {"l": 8, "r": 12, "t": 8, "b": 8},
+        "legend": {"orientation": "h", "yanchor": "bottom", "y": 1.01, "x": 0},
+        "dragmode": False,
+    }
+
+
+def shares(names: Sequence[str], parts: Sequence[float]) -> go.Figure:
+    """How a whole is made up, one bar a part, in the order of the parts."""
+    whole = sum(parts)
+    figure = go.Figure(
+        go.Bar(
+            x=[100 * part / whole for part in parts],
+            y=list(names),
+            orientation="h",
+            marker={"color": [HOT if part == max(parts) else WALL for part in parts]},
+            text=[f"{100 * part / whole:.0f} %" for part in parts],
+            textposition="outside",
+            cliponaxis=False,
+            hovertemplate="%{y}: %{x:.1f} %<extra></extra>",
+        )
+    )
+    figure.update_layout(
+        xaxis={"title": "Share of the whole resistance, %", "range": [0, 112]},
+        yaxis={"autorange": "reversed"},
+        **_frame(270),
+    )
+    return figure
+
+
+def stacked(
+    names: Sequence[str], parts: Mapping[str, Sequence[float]], allowed: Sequence[float | None], unit: str
+) -> go.Figure:
+    """One bar a name, made up of parts, with a mark where the allowed value lies."""
+    figure = go.Figure()
+    for i, (part, values) in enumerate(parts.items()):
+        figure.add_bar(
+            x=list(values),
+            y=list(names),
+            name=part,
+            orientation="h",
+            marker={
+                "color": PART_COLOURS[i % len(PART_COLOURS)],
+                "pattern": {"shape": PART_HATCHES[i % len(PART_HATCHES)], "size": 7, "solidity": 0.25},
+            },
+            hovertemplate=f"{part}: %{{x:.3g}} {unit}<extra></extra>",
+        )
+    stated = [(name, limit) for name, limit in zip(names, allowed, strict=True) if limit is not None]
+    if stated:
+        figure.add_scatter(
+            x=[limit for _, limit in stated],
+            y=[name for name, _ in stated],
+            name="Allowed",
+            mode="markers",
+            marker={"symbol": "line-ns", "size": 34, "line": {"width": 3, "color": HOT}},
+            hovertemplate=f"Allowed: %{{x:.3g}} {unit}<extra></extra>",
+        )
+    figure.update_layout(
+        barmode="stack",
+        xaxis={"title": f"Pressure drop, {unit}", "rangemode": "tozero"},
+        yaxis={"autorange": "reversed"},
+        **_frame(270),
+    )
+    return figure

@@ -1,0 +1,335 @@
+"""The rating: the answer first, then what stands behind it, then what would change it."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+import streamlit as st
+
+import engine
+from app import figures, session
+from app.display import plain
+from app.frame import blocks, plot, sentence, table
+
+TITLE = "Rating"
+GRADES = {
+    "stop": ("■ Stop", "red"),
+    "act": ("▲ Act", "orange"),
+    "watch": ("● Watch", "blue"),
+    "note": ("○ Note", "gray"),
+}
+"""Shape, word and colour of each grade, the gravest first."""
+
+
+def show() -> None:
+    raw, present = session.current()
+    problems = session.checked(session.text_of(session.case())).problems
+    st.title(plain(session.case().get("tag") or "Rating"))
+    if raw is None:
+        nothing_yet(problems)
+        return
+    if not present:
+        stale(problems)
+    text, units = session.text_of(raw), session.display()
+    found = session.rated(text)
+    written = {section.key: section for section in session.sections(text, units.system)}
+    answer(written["answer"].blocks)
+    if found.rating.states:
+        key_figures(found)
+    findings(text)
+    if not found.rating.states:
+        return
+    part(written, "profile")
+    left, right = st.columns(2, gap="large")
+    with left:
+        where_resistance_lies(found, written)
+    with right:
+        where_pressure_goes(found, written)
+    if present:
+        what_if(found)
+    for key in ("results", "methods", "contributors"):
+        part(written, key)
+
+
+def nothing_yet(problems: Any) -> None:
+    st.info("There is nothing to rate yet. On the page Case:")
+    listed(problems)
+
+
+def stale(problems: Any) -> None:
+    st.warning(
+        "**Not the present case.** What is shown here is the rating of the case before the last entries, "
+        "which cannot be rated yet:",
+        icon=":material/history:",
+    )
+    listed(problems)
+
+
+def listed(problems: Any, most: int = 12) -> None:
+    said = [f"- {plain(sentence(problem.path, problem.says))}" for problem in problems]
+    more = [f"- and {len(said) - most} more"] if len(said) > most else []
+    st.markdown("\n".join([*said[:most], *more]))
+
+
+def answer(said: tuple[Any, ...]) -> None:
+    first, *rest = said
+    st.markdown(f"#### {plain(first)}")
+    blocks(rest, "answer")
+
+
+def part(written: Mapping[str, Any], key: str) -> None:
+    if key in written:
+        st.subheader(written[key].title)
+        blocks(written[key].blocks, key)
+
+
+# --- key figures ------------------------------------------------------------------------------------------------------
+
+
+def key_figures(found: session.Rated) -> None:
+    """The fouled state in figures, each with its unit in the label and its interval below."""
+    state, names = found.rating.fouled, found.case.exchanger.side_names
+    doubt = found.intervals.get("fouled")
+    figures_ = [("Duty", "duty", state.duty, "heat_flow", 4)]
+    figures_ += [(f"{names[s]} outlet", f"{s}.T_out", state.T_out[s], "temperature", 4) for s in engine.SIDES]
+    figures_.append(("U in service", "U_dirty", state.U_dirty, "heat_transfer_coefficient", 3))
+    figures_ += [(f"{names[s]} drop", f"{s}.dp", state.sides[s].dp, "pressure_difference", 3) for s in engine.SIDES]
+    units = session.display()
+    with st.container(horizontal=True):
+        for label, key, value, quantity, digits in figures_:
+            span = units.span(doubt.of[key], quantity) if doubt and key in doubt.of else None
+            st.metric(
+                f"{label}, {units.unit(quantity)}",
+                units.number(value, quantity, digits),
+                span,
+                delta_color="off",
+                delta_arrow="off",
+                border=True,
+                width=172,
+            )
+        if state.margin is not None:
+            clean = found.rating.clean.margin
+            st.metric(
+                "Margin of U, %",
+                f"{100 * state.margin:+.0f}",
+                f"clean {100 * clean:+.0f}" if clean is not None else None,
+                delta_color="off",
+                delta_arrow="off",
+                border=True,
+                width=172,
+            )
+    st.caption("Fouled state. Below each figure: where it lies with a chance of 95 %.")
+
+
+# --- findings ---------------------------------------------------------------------------------------------------------
+
+
+def findings(text: str) -> None:
+    verdicts = session.judged(text, session.display().system)
+    found = [finding for verdict in verdicts for finding in verdict.findings]
+    st.subheader("Findings")
+    if not found:
+        st.markdown("None: every check that could be made is clear.")
+    loud = [finding for finding in found if finding.grade != "note"]
+    quiet = [finding for finding in found if finding.grade == "note"]
+    for finding in sorted(loud, key=lambda f: list(GRADES).index(f.grade)):
+        with st.container(border=True):
+            one_finding(finding)
+    if quiet:
+        with st.expander(f"{GRADES['note'][0]} · {len(quiet)}, such as what was assumed"):
+            for finding in quiet:
+                one_finding(finding)
+    missing = [verdict for verdict in verdicts if verdict.outcome == "not possible"]
+    if missing:
+        with st.expander(f"Checks that were not possible · {len(missing)}"):
+            for verdict in missing:
+                st.markdown(f"- {plain(verdict.rule.title)}{_at(verdict.where)}: {plain(verdict.missing)}")
+
+
+def one_finding(finding: Any) -> None:
+    word, colour = GRADES[finding.grade]
+    st.markdown(f":{colour}-badge[{word}] **{plain(finding.says)}**")
+    because = "; ".join(f"{name} {figure}" for name, figure in finding.because.items())
+    lines = [plain(line) for line in (because, f"→ {finding.do}" if finding.do else "") if line]
+    st.markdown("  \n".join(lines))
+    st.caption(plain(f"{finding.code}{_at(finding.where)} · {finding.source}"))
+
+
+def _at(where: str) -> str:
+    return f", {where}" if where else ""
+
+
+# --- where it goes ----------------------------------------------------------------------------------------------------
+
+
+def where_resistance_lies(found: session.Rated, written: Mapping[str, Any]) -> None:
+    st.subheader(written["resistances"].title)
+    state, names = found.rating.fouled, found.case.exchanger.side_names
+    labels = [_named(name, names) for name in state.resistances]
+    whole = sum(state.resistances.values())
+    told = ", ".join(f"{n} {100 * R / whole:.0f} %" for n, R in zip(labels, state.resistances.values(), strict=True))
+    plot(figures.shares(labels, list(state.resistances.values())), f"Shares of the resistance: {told}.", "shares")
+    with st.expander("In figures"):
+        blocks(written["resistances"].blocks, "resistances")
+
+
+def where_pressure_goes(found: session.Rated, written: Mapping[str, Any]) -> None:
+    st.subheader("Where the pressure goes")
+    units, names, sides = session.display(), found.case.exchanger.side_names, found.rating.fouled.sides
+    kinds = list(dict.fromkeys(kind for side in engine.SIDES for kind in sides[side].drops))
+    shown = {
+        kind.replace("_", " and ").capitalize(): [
+            float(units.values(sides[side].drops.get(kind, 0.0), "pressure_difference")) for side in engine.SIDES
+        ]
+        for kind in kinds
+        if any(sides[side].drops.get(kind) for side in engine.SIDES)
+    }
+    stated = [found.case.stream(side).dp_allowed for side in engine.SIDES]
+    allowed = [None if a is None else float(units.values(float(a), "pressure_difference")) for a in stated]
+    unit = units.unit("pressure_difference")
+    told = "; ".join(f"{names[s]} {units.show(sides[s].dp, 'pressure_difference', 3)}" for s in engine.SIDES)
+    bars = figures.stacked([names[side] for side in engine.SIDES], shown, allowed, unit)
+    plot(bars, f"Pressure drops by part. In all: {told}.", "drops")
+    with st.expander("In figures"):
+        blocks(written["drops"].blocks, "drops")
+
+
+def _named(place: str, names: Mapping[str, str]) -> str:
+    side, _, rest = place.partition(" ")
+    return f"{names[side]} {rest}" if side in names else place.capitalize()
+
+
+# --- what if ----------------------------------------------------------------------------------------------------------
+
+TRIED = ("flow", "T_in", "R_fouling")
+FOULING_SPAN = 0.0006
+"""Least span of the fouling slider [m²K/W]: a river water's usual allowance, twice over."""
+
+
+def what_if(found: session.Rated) -> None:
+    st.subheader("What if")
+    st.caption("Type a figure with its unit, or drag. The case stays as it is until you adopt the change.")
+    for side, place in zip(engine.SIDES, st.columns(2, gap="large"), strict=True):
+        with place:
+            st.markdown(f"**{found.case.exchanger.side_names[side]}**")
+            for name in TRIED:
+                if getattr(found.case.stream(side), name) is not None:
+                    entry(found.case, side, name)
+    if session.whatif():
+        outcome(found)
+
+
+def entry(case: engine.Case, side: str, name: str) -> None:
+    """One figure to try, as a box and as a slider that follow each other."""
+    stream, place = case.stream(side), f"{side}.{name}"
+    declared, value = type(stream).declared()[name], getattr(stream, name)
+    quantity = getattr(value, "quantity", "") or declared.quantities[0]
+    unit = _unit(value, quantity)
+    low, high = (float(engine.to_unit(end, quantity, unit)) for end in _ends(name, float(value)))
+    stated = float(engine.to_unit(float(value), quantity, unit))
+    text = session.whatif().get(place, "")
+    box, slider = f"try {place}{session.view()}", f"drag {place}{session.view()}"
+    at = min(max(_number(text, declared, quantity, unit, stated), low), high)
+    st.text_input(
+        declared.name,
+        text,
+        key=box,
+        placeholder=f"{stated:.5g} {unit}",
+        on_change=_typed,
+        args=(place, box, slider, (declared, quantity, unit, stated, low, high)),
+    )
+    st.slider(
+        f"{declared.name}, {case.exchanger.side_names[side].lower()}, {unit}",
+        low,
+        high,
+        at,
+        (high - low) / 200,
+        format="%.4g",
+        key=slider,
+        label_visibility="collapsed",
+        on_change=_dragged,
+        args=(place, box, slider, unit),
+    )
+
+
+def _unit(value: Any, quantity: str) -> str:
+    units = session.display()
+    if units.choice == "typed" and getattr(value, "text", ""):
+        return str(engine.parse(value.text, quantity).unit)
+    return units.unit(quantity)
+
+
+def _ends(name: str, value: float) -> tuple[float, float]:
+    if name == "flow":
+        return 0.25 * value, 2.0 * value
+    if name == "T_in":
+        return value - 30.0, value + 30.0
+    return 0.0, max(3.0 * value, FOULING_SPAN)
+
+
+def _number(text: str, declared: Any, quantity: str, unit: str, otherwise: float) -> float:
+    """A typed figure in the unit of its slider; the stated one where it is of another quantity or cannot be read."""
+    try:
+        figure = engine.parse(text, *declared.quantities)
+    except engine.UnitError:
+        return otherwise
+    return float(engine.to_unit(figure.value, quantity, unit)) if figure.quantity == quantity else otherwise
+
+
+def _typed(place: str, box: str, slider: str, about: tuple[Any, ...]) -> None:
+    *how, low, high = about
+    text = session.typed(box).strip()
+    session.try_out(place, text)
+    session.show_in(slider, min(max(_number(text, *how), low), high))
+
+
+def _dragged(place: str, box: str, slider: str, unit: str) -> None:
+    text = f"{session.typed(slider):.5g} {unit}"
+    session.try_out(place, text)
+    session.show_in(box, text)
+
+
+def outcome(found: session.Rated) -> None:
+    trial = session.text_of(session.trial(session.case()))
+    tried, problems = session.rated(trial), session.checked(trial).problems
+    if tried is None:
+        listed(problems)
+    elif not tried.rating.states:
+        st.error(plain(f"No answer: {tried.rating.problem}."))
+    else:
+        compared(found, tried)
+    with st.container(horizontal=True):
+        st.button(
+            "Adopt this in the case",
+            disabled=tried is None,
+            type="primary",
+            on_click=session.replace,
+            args=(session.trial(session.case()), "what-if adopted"),
+        )
+        st.button("Back to the case", on_click=session.end_trial)
+
+
+def compared(found: session.Rated, tried: session.Rated) -> None:
+    units, names = session.display(), found.case.exchanger.side_names
+    pair = (found.rating.fouled, tried.rating.fouled)
+    rows = [_row("Duty", "heat_flow", [s.duty for s in pair])]
+    for side in engine.SIDES:
+        shift = pair[1].T_out[side] - pair[0].T_out[side]
+        shown = [units.show(state.T_out[side], "temperature") for state in pair]
+        rows.append([f"{names[side]} outlet", *shown, _signed(units.show(shift, "temperature_difference", 3))])
+    rows.append(_row("U in service", "heat_transfer_coefficient", [s.U_dirty for s in pair], 3))
+    if all(state.margin is not None for state in pair):
+        rows.append(["Margin of U", *(f"{100 * state.margin:+.0f} %" for state in pair), ""])
+    for side in engine.SIDES:
+        rows.append(_row(f"{names[side]} drop", "pressure_difference", [s.sides[side].dp for s in pair], 3))
+    table(("Fouled", "Case", "What if", "Change"), rows)
+
+
+def _row(name: str, quantity: str, values: list[float], digits: int = 4) -> list[str]:
+    shown = [session.display().show(value, quantity, digits) for value in values]
+    return [name, *shown, f"{100 * (values[1] / values[0] - 1):+.1f} %"]
+
+
+def _signed(text: str) -> str:
+    return text if text.startswith("-") else f"+{text}"
