@@ -12,6 +12,7 @@ from functools import cached_property
 from typing import Annotated, Any, ClassVar, Literal
 
 import numpy as np
+from numpy.typing import NDArray
 from pydantic_core import PydanticCustomError
 
 from engine import effectiveness as exact
@@ -62,6 +63,10 @@ DERIVED_BAFFLES = Source(
     text="as many baffles at the stated spacing as the tube length holds, the end spacings sharing the rest",
     checked=True,
 )
+
+
+def _mm(x: float) -> str:
+    return f"{x * 1e3:.4g} mm"
 
 
 class _BaffleType(Choice):
@@ -385,12 +390,11 @@ class ShellAndTube(Input):
         )
 
     def derived(self) -> list[tuple[str, str, Source]]:
-        mm = lambda x: f"{x * 1e3:.4g} mm"  # noqa: E731
         found: list[tuple[str, str, Source]] = []
         if self.gauge is not None:
-            found.append(("tube_wall", mm((self.tube_od - self.tube_id) / 2), standard_sizes.BWG))
+            found.append(("tube_wall", _mm((self.tube_od - self.tube_id) / 2), standard_sizes.BWG))
         if self.bundle_diameter is None:
-            found.append(("bundle_diameter", mm(self.outer_tube_limit), standard_sizes.SINNOTT_BUNDLE))
+            found.append(("bundle_diameter", _mm(self.outer_tube_limit), standard_sizes.SINNOTT_BUNDLE))
         if self.shell_letter == "X":
             return found
         _, inlet, outlet = self.path_spacings
@@ -401,11 +405,11 @@ class ShellAndTube(Input):
             ("outlet_spacing", self.outlet_spacing, outlet),
         ):
             if stated is None or abs(used - stated) > 1e-6:
-                found.append((name, mm(used), DERIVED_BAFFLES))
+                found.append((name, _mm(used), DERIVED_BAFFLES))
         if self.tube_hole_clearance is None:
-            found.append(("tube_hole_clearance", mm(self.hole_clearance), standard_sizes.TEMA))
+            found.append(("tube_hole_clearance", _mm(self.hole_clearance), standard_sizes.TEMA))
         if self.shell_baffle_clearance is None:
-            found.append(("shell_baffle_clearance", mm(self.baffle_clearance), standard_sizes.TEMA))
+            found.append(("shell_baffle_clearance", _mm(self.baffle_clearance), standard_sizes.TEMA))
         return found
 
     # --- cells ------------------------------------------------------------------------------------------------------
@@ -514,7 +518,7 @@ class ShellAndTube(Input):
     @property
     def _rows_crossed(self) -> float:
         """Of an X shell, at its middle."""
-        row_pitch = shell.layout(self.angle).row * self.tube_pitch
+        row_pitch = shell.tube_layout(self.angle).row * self.tube_pitch
         return float((self.outer_tube_limit - self.tube_od) / row_pitch + 1)
 
     @property
@@ -631,41 +635,44 @@ class ShellAndTube(Input):
         factor = getattr(self.dp_factor, side) * at.factor_of(self.drop_relation(side))
         return {name: part * factor for name, part in parts.items()}
 
+    @staticmethod
+    def _mean(x: Array | float, cells: Cells) -> Array:
+        """Mean over the area of all cells, (P,) from (P, n) or (P, 1)."""
+        return np.asarray((x * np.ones(cells.layout.n_cells)) @ cells.layout.area_share)
+
     def _tube_drop(
         self, cells: Cells, at: Flowing, film: Film, heads: losses.Figure = losses.TUBE_PASS
     ) -> dict[str, Array]:
         G, d = self._tube_flow(at)
         f = losses.friction_tube(film.Re, float(self.inside_roughness) / d, wall=self._wall(at))
         head = losses.velocity_head(G, at.bulk.rho)
-        share, passes = cells.layout.area_share, self.tube_passes * self.shells_in_series
-        mean = lambda x: np.broadcast_to(x, (len(G), len(share))) @ share  # noqa: E731
+        passes = self.tube_passes * self.shells_in_series
         along = passes * self.tube_length + passes // 2 * self.u_bend_length
         # A gas also pays for its acceleration as density falls along the way.
         gained = G[:, 0] ** 2 * (1 / at.bulk.rho[:, -1] - 1 / at.bulk.rho[:, 0]) if at.gas else np.zeros(len(G))
         return {
-            "friction": mean(f * head / d) * along,
-            "returns": heads.value * passes * mean(head),
+            "friction": self._mean(f * head / d, cells) * along,
+            "returns": heads.value * passes * self._mean(head, cells),
             "entrance_exit": gained,
-            "nozzles": self._nozzle_drop(self.tube_nozzle_id, at, mean(at.bulk.rho), 1, 1),
+            "nozzles": self._nozzle_drop(self.tube_nozzle_id, at, self._mean(at.bulk.rho, cells), 1, 1),
         }
 
     def _shell_drop(self, cells: Cells, at: Flowing) -> dict[str, Array]:
         G, Re, Re_mean = self._shell_Re(cells, at)
-        rho, mu_ratio, share = at.bulk.rho, at.mu_wall / at.bulk.mu, cells.layout.area_share
-        mean = lambda x: np.broadcast_to(x, (len(G), len(share))) @ share  # noqa: E731
+        rho, mu_ratio = at.bulk.rho, at.mu_wall / at.bulk.mu
         if self.shell_letter == "X":
-            rows = self._rows_crossed
-            crossflow = shell.ideal_drop(self.angle, self._pitch_ratio, rows, G=G, Re=Re, rho=rho, mu_ratio=mu_ratio)
-            parts = {"crossflow": crossflow, "window": 0.0, "ends": 0.0}
-        else:
-            m = self._shell_flow(at)
-            found = shell.bell_delaware_drop(
-                self.geometry, m=m, rho=rho, mu=at.bulk.mu, mu_ratio=mu_ratio, Re_mean=Re_mean
+            bank = shell.ideal_drop(
+                self.angle, self._pitch_ratio, self._rows_crossed, G=G, Re=Re, rho=rho, mu_ratio=mu_ratio
             )
-            parts = {"crossflow": found.crossflow, "window": found.window, "ends": found.ends}
+            found = shell.ShellDrop(crossflow=bank, window=0 * bank, ends=0 * bank)
+        else:
+            found = shell.bell_delaware_drop(
+                self.geometry, m=self._shell_flow(at), rho=rho, mu=at.bulk.mu, mu_ratio=mu_ratio, Re_mean=Re_mean
+            )
+        parts = {"crossflow": found.crossflow, "window": found.window, "ends": found.ends}
         return {
-            **{name: mean(part) * self.shells_in_series for name, part in parts.items()},
-            "nozzles": self._shell_nozzles(at, mean(rho)),
+            **{name: self._mean(part, cells) * self.shells_in_series for name, part in parts.items()},
+            "nozzles": self._shell_nozzles(at, self._mean(rho, cells)),
         }
 
     def _shell_nozzles(self, at: Flowing, rho: Array) -> Array:
@@ -723,7 +730,7 @@ class ShellAndTube(Input):
         one_way = self.tube_passes == self.shell_type.passes and self.shell_letter in "EF"
         return "co-current" if one_way and self.first_pass == "co-current" and self.shells_in_series == 1 else "counter"
 
-    def _relation(self, inside_is_min: Array) -> exact.Relation | str:
+    def _relation(self, inside_is_min: NDArray[np.bool_]) -> exact.Relation | str:
         """ε(NTU, Cr) of the arrangement, or the reason why there is none."""
         letter, passes, n = self.shell_letter, self.tube_passes, self.shells_in_series
         counter = self.first_pass == "counter"
@@ -757,7 +764,7 @@ class ShellAndTube(Input):
         return exact.effectiveness_counter(n * exact.ntu_counter(relation(NTU / n, Cr), Cr), Cr)
 
     def effectiveness(self, NTU: Array, Cr: Array, inside_is_min: Array) -> Array | str:
-        relation = self._relation(inside_is_min)
+        relation = self._relation(np.asarray(inside_is_min, dtype=bool))
         return relation if isinstance(relation, str) else relation(NTU, Cr)
 
     def driving_force(self, T_in: Mapping[Side, Array], T_out: Mapping[Side, Array]) -> tuple[Array, Array] | str:
@@ -804,7 +811,7 @@ class ShellAndTube(Input):
             says = f'"{self.tema}" is not a TEMA type; allowed are three letters: front head, shell, rear head'
             yield Problem(path="tema", says=says)
             return
-        front, kind, rear = letters
+        front, kind, rear = letters[0], letters[1], letters[2]
         if front not in FRONT_HEADS:
             says = f'"{front}" is not a front head that is offered; allowed are {", ".join(FRONT_HEADS)}'
             yield Problem(path="tema", says=says)
@@ -860,7 +867,6 @@ class ShellAndTube(Input):
             yield Problem(path="inside_roughness", says=says)
 
     def _size_problems(self, tema_sound: bool) -> Iterator[Problem]:
-        mm = lambda x: f"{x * 1e3:.4g} mm"  # noqa: E731
         if self.tubes_plugged >= self.tubes:
             says = f"{self.tubes_plugged} of {self.tubes} tubes leaves none open; allowed is up to {self.tubes - 1}"
             yield Problem(path="tubes_plugged", says=says)
@@ -869,19 +875,19 @@ class ShellAndTube(Input):
             yield Problem(path="tubes", says=says)
         if self.tube_pitch < 1.15 * self.tube_od:
             says = (
-                f"{mm(self.tube_pitch)} is below 1.15 tube diameters of {mm(self.tube_od)}; allowed is from "
-                f"{mm(1.15 * self.tube_od)}"
+                f"{_mm(self.tube_pitch)} is below 1.15 tube diameters of {_mm(self.tube_od)}; allowed is from "
+                f"{_mm(1.15 * self.tube_od)}"
             )
             yield Problem(path="tube_pitch", says=says)
         if self.bundle_diameter is not None and self.bundle_diameter >= self.shell_id:
-            says = f"{mm(self.bundle_diameter)} does not fit into the shell of {mm(self.shell_id)}"
+            says = f"{_mm(self.bundle_diameter)} does not fit into the shell of {_mm(self.shell_id)}"
             yield Problem(path="bundle_diameter", says=says)
         elif tema_sound and self.outer_tube_limit < 2 * self.tube_od + self.tube_pitch:
-            says = f"{mm(self.shell_id)} is too small for a bundle of tubes of {mm(self.tube_od)}"
+            says = f"{_mm(self.shell_id)} is too small for a bundle of tubes of {_mm(self.tube_od)}"
             yield Problem(path="shell_id", says=says)
         elif tema_sound and self.crowding > REFUSED_COUNT:
             says = (
-                f"{self.tubes} in a shell of {mm(self.shell_id)} is {self.crowding:.0%} more than published layouts "
+                f"{self.tubes} in a shell of {_mm(self.shell_id)} is {self.crowding:.0%} more than published layouts "
                 f"hold; allowed is up to {REFUSED_COUNT:.0%} more"
             )
             yield Problem(path="tubes", says=says)
@@ -889,7 +895,7 @@ class ShellAndTube(Input):
     @property
     def crowding(self) -> float:
         """By how much the tubes exceed the largest published count, as a fraction of it; negative when below."""
-        return self.tubes / self.usual_tube_count.high - 1
+        return self.tubes / self.usual_tube_count.most - 1
 
     def _baffle_problems(self, size_sound: bool) -> Iterator[Problem]:
         if self.shell_letter == "X":

@@ -412,6 +412,8 @@ class TubeCount:
 
     low: float
     high: float
+    most: float
+    """The largest published or estimated count itself, without the slack."""
     sources: tuple[Source, ...]
 
 
@@ -437,6 +439,7 @@ def tube_count(
         return TubeCount(
             low=max(0.0, least - max(4.0, 0.05 * least)),
             high=most + max(4.0, 0.05 * most),
+            most=most,
             sources=tuple(source for _, source in found),
         )
     CL = 1.0 if layout == "square" else 0.87
@@ -445,6 +448,7 @@ def tube_count(
     return TubeCount(
         low=0.88 * per_area * outer_tube_limit(shell_id, "S") ** 2,
         high=1.12 * per_area * shell_id**2,
+        most=per_area * shell_id**2,
         sources=(COUNT_ESTIMATE,),
     )
 
