@@ -133,7 +133,8 @@ def effectiveness_split_banks(
             together: Array = -np.expm1(n_banks * np.log1p(-np.minimum(change, 1.0)))
         return together
 
-    split = np.where(Cr == 0, split_change, over_all(Cr * split_change / n_banks) / np.where(Cr == 0, 1.0, Cr))
+    x = Cr * split_change / n_banks
+    split = split_change * np.where(x == 0, 1.0, over_all(x) / np.where(x == 0, 1.0, n_banks * x))
     return np.where(split_is_min, split, over_all(series_change))
 
 
@@ -229,7 +230,8 @@ def effectiveness_crossflow_unmixed(NTU: ArrayLike, Cr: ArrayLike) -> Array:
         k += 1
         term = gammainc(k, N) * gammainc(k, N_max)
         total = total + term
-    return np.where(N_max == 0, -np.expm1(-N), total / np.where(N_max == 0, 1.0, N_max))
+    isothermal = N_max < 1e-17
+    return np.where(isothermal, -np.expm1(-N), total / np.where(isothermal, 1.0, N_max))
 
 
 def effectiveness_crossflow_one_mixed(NTU: ArrayLike, Cr: ArrayLike, *, min_is_mixed: ArrayLike) -> Array:

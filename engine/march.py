@@ -81,7 +81,7 @@ def _chain(arrangement: Arrangement, UA: Array, C_inside: Array, C_outside: Arra
 def _shell(layout: Layout, UA: Array, C_inside: Array, C_outside: Array) -> Temperatures:
     """Solution of one unit of any layout for inlets 1 (inside) and 0 (outside); arrays (P, m).
 
-    The inside temperatures are eliminated along the paths; the unknowns are the outside rises of the bays. The mean
+    The inside temperatures are eliminated along the paths; the unknowns are the outlets of the bays. The mean
     temperature of a bay is weighted between its inlet and its outlet as if the inside fluid were isothermal: second
     order, and no bay overshoots however long it is.
     """
@@ -89,53 +89,73 @@ def _shell(layout: Layout, UA: Array, C_inside: Array, C_outside: Array) -> Temp
     n = len(layout.outside_links) - 1
     C_bay = C_outside[:, np.unique(layout.bay, return_index=True)[1]]
     ntu = UA / C_inside
-    stay = np.exp(-ntu)
+    stay, swing = np.exp(-ntu), -np.expm1(-ntu)
     gain = UA * _phi(ntu)
-    in_bay = np.eye(n)[layout.bay]
-
-    # Affine in the bay means (columns 0 to n - 1) and the inside inlet (column n): cell entries and path exits,
-    # heat to each bay.
-    entry = np.empty((m, P, n + 1))
-    mixes = layout.inside_links[:, :-1] / layout.inside_links[:, :-1].sum(axis=0)
-    exits = np.zeros((len(layout.inside_links), P, n + 1))
-    exits[-1, :, n] = 1.0
-    heat = np.zeros((n, P, n + 1))
-    for p, path in enumerate(layout.inside_paths):
-        T = np.tensordot(mixes[:, p], exits, axes=1)
-        for c in path:
-            entry[c] = T
-            heat[layout.bay[c]] += gain[:, c, None] * T
-            T = T * stay[:, c, None]
-            T[:, layout.bay[c]] += 1 - stay[:, c]
-        exits[p] = T
-    heat[np.arange(n), :, np.arange(n)] -= (gain @ in_bay).T
-
+    lead = _lead(_by_bay(layout, UA) / C_bay)
     mixed_from = layout.outside_links[:-1, :-1].T / layout.outside_links[:-1].sum(axis=1)[:, None]
-    exit_from_rises = np.linalg.inv(np.eye(n) - mixed_from).astype(float)
-    lead = _lead(UA @ in_bay / C_bay)
-    M = heat / C_bay.T[:, :, None]
-    A = M[..., :n] * lead - M[..., :n] @ exit_from_rises
-    A[np.arange(n), :, np.arange(n)] += 1
-    rise = np.linalg.solve(A.swapaxes(0, 1), M[..., n].T[..., None])[..., 0].astype(float)
-    outside_exit = rise @ exit_from_rises.T
-    outside_mean = outside_exit - lead * rise
-    known = np.concatenate([outside_mean, np.ones((P, 1))], axis=1)
-    inside_entry = np.einsum("cpj,pj->pc", entry, known)
-    bay_mean = outside_mean[:, layout.bay]
-    inside_exit = bay_mean + (inside_entry - bay_mean) * stay
-    heat_cell = gain * (inside_entry - bay_mean)
-    ends = [path[-1] for path in layout.inside_paths]
+    upstream = [np.flatnonzero(row) for row in mixed_from]
+
+    # Everything affine in the bay outlets (columns 0 to n - 1) and the inside inlet (column n).
+    ends = np.zeros((len(layout.inside_links), P, n + 1))
+    ends[-1, :, n] = 1.0
+    heat = np.zeros((n, P, n + 1))
+
+    def add_mean(T: Array, bay: int, weight: Array) -> None:
+        T[:, bay] += weight * (1 - lead[:, bay])
+        for other in upstream[bay]:
+            T[:, other] += weight * lead[:, bay] * mixed_from[bay, other]
+
+    for p, path in enumerate(layout.inside_paths):
+        T = _mixed(layout.inside_links[:, p], ends)
+        for c in path:
+            heat[layout.bay[c]] += gain[:, c, None] * T
+            T = stay[:, c, None] * T
+            add_mean(T, layout.bay[c], swing[:, c])
+        ends[p] = T
+    for bay, taken in enumerate(_by_bay(layout, gain).T):
+        add_mean(heat[bay], bay, -taken)
+
+    heat /= C_bay.T[:, :, None]
+    A = (np.eye(n) - mixed_from)[:, None, :] - heat[..., :n]
+    outside_exit = np.linalg.solve(A.swapaxes(0, 1), heat[..., n].T[..., None])[..., 0].astype(float)
+    outside_entry = np.einsum("pa,ba->pb", outside_exit, mixed_from)
+    outside_mean = (outside_exit - lead * (outside_exit - outside_entry))[:, layout.bay]
+
+    difference = np.empty((m, P))
+    outlets = np.ones((len(layout.inside_links), P))
+    for p, path in enumerate(layout.inside_paths):
+        T = _mixed(layout.inside_links[:, p], outlets)
+        for c in path:
+            difference[c] = T - outside_mean[:, c]
+            T = outside_mean[:, c] + stay[:, c] * difference[c]
+        outlets[p] = T
+    difference = difference.T
     return Temperatures(
-        inside_entry=inside_entry,
-        inside_exit=inside_exit,
-        inside_mean=bay_mean + (inside_entry - bay_mean) * _phi(ntu),
-        outside_entry=(outside_exit - rise)[:, layout.bay],
+        inside_entry=outside_mean + difference,
+        inside_exit=outside_mean + stay * difference,
+        inside_mean=outside_mean + _phi(ntu) * difference,
+        outside_entry=outside_entry[:, layout.bay],
         outside_exit=outside_exit[:, layout.bay],
-        outside_mean=bay_mean,
-        heat=heat_cell,
-        inside_outlet=inside_exit[:, ends] @ layout.inside_links[:-1, -1] + layout.inside_links[-1, -1],
-        outside_outlet=outside_exit @ layout.outside_links[:-1, -1],
+        outside_mean=outside_mean,
+        heat=gain * difference,
+        inside_outlet=_mixed(layout.inside_links[:, -1], outlets),
+        outside_outlet=_mixed(layout.outside_links[:-1, -1], outside_exit.T) * layout.outside_links[:-1, -1].sum(),
     )
+
+
+def _mixed(flows: Array, streams: Array) -> Array:
+    """Mean of streams along the first axis, weighted by their flows."""
+    share = flows / flows.sum()
+    total: Array = sum((share[k] * streams[k] for k in np.flatnonzero(share)), np.zeros_like(streams[0]))
+    return total
+
+
+def _by_bay(layout: Layout, x: Array) -> Array:
+    """Sums over the cells of each bay: (P, m) to (P, n)."""
+    total = np.zeros((len(x), len(layout.outside_links) - 1))
+    for cell, bay in enumerate(layout.bay):
+        total[:, bay] += x[:, cell]
+    return total
 
 
 def _met_by_units(layout: Layout, p_inside: Array, p_outside: Array) -> tuple[Array, Array]:

@@ -4,12 +4,15 @@ from functools import partial
 
 import numpy as np
 import pytest
-from hypothesis import given
+from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy.linalg import expm
 
 from engine import effectiveness as exact
 from engine.proofs.effectiveness import PROOFS
+
+settings.register_profile("any machine", deadline=None)
+settings.load_profile("any machine")
 
 one_mixed = exact.effectiveness_crossflow_one_mixed
 RISING = {
