@@ -18,6 +18,12 @@ from engine import units
 
 Side = Literal["inside", "outside"]
 SIDES: tuple[Side, Side] = ("inside", "outside")
+
+
+def opposite(side: Side) -> Side:
+    return "outside" if side == "inside" else "inside"
+
+
 Origin = Literal["measured", "sheet", "assumed", "calculated"]
 
 
@@ -74,7 +80,10 @@ class Stated:
 
     def allowed(self) -> str:
         """The allowed span in words, in SI display units."""
-        show = lambda x: units.show(x, self.quantities[0], "si")  # noqa: E731
+
+        def show(x: float) -> str:
+            return units.show(x, self.quantities[0], "si")
+
         low = f"above {show(self.above)}" if self.above is not None else f"from {show(self.low)}"
         return f"{low} to {show(self.high)}" if self.high < 1e12 else low
 

@@ -11,11 +11,13 @@ from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
+from numpy.typing import NDArray
 
-from engine.case import Case, ConstantFluid, Figure, PureFluid, TableFluid
+from engine.case import Case, ConstantFluid, PureFluid, TableFluid
 from engine.correlations import Array
-from engine.rating import Points, Rating, Solution, joined, points_of, solve
-from engine.stated import SIDES, Side
+from engine.points import SETTLED, Points, Solution, joined, points_of, solve
+from engine.rating import Rating
+from engine.stated import SIDES, Figure, Side
 
 NORMAL_95 = 1.959963984540054
 COMMON_PRACTICE = "common practice"
@@ -217,9 +219,13 @@ def _intervals(
     of = {}
     for q, s in sd.items():
         x = centre[q]
-        of[q] = (x - NORMAL_95 * s, x + NORMAL_95 * s) if q in _LINEAR else (
-            x * float(np.exp(-NORMAL_95 * s)),
-            x * float(np.exp(NORMAL_95 * s)),
+        of[q] = (
+            (x - NORMAL_95 * s, x + NORMAL_95 * s)
+            if q in _LINEAR
+            else (
+                x * float(np.exp(-NORMAL_95 * s)),
+                x * float(np.exp(NORMAL_95 * s)),
+            )
         )
     total = sd["duty"] ** 2 or 1.0
     ranked = sorted(zip(found, slopes["duty"], strict=True), key=lambda pair: -abs(pair[1]))
@@ -264,11 +270,11 @@ def _aligned(parts: list[Points]) -> Points:
     return joined(full)
 
 
-def _figures(case: Case, points: Points) -> tuple[dict[str, Array], Array]:
+def _figures(case: Case, points: Points) -> tuple[dict[str, Array], NDArray[np.bool_]]:
     values = {q: np.full(len(points), np.nan) for q in QUANTITIES}
     good = np.zeros(len(points), dtype=bool)
     for rows, solved in solve(case, points):
-        good[rows] = (solved.problem == "") & (solved.residual < 1e-6)
+        good[rows] = (solved.problem == "") & (solved.residual <= SETTLED)
         for name, column in _of(case, solved).items():
             values[name][rows] = column
     return values, good

@@ -34,6 +34,31 @@ class Cells:
     start: Mapping[Side, Array]
     end: Mapping[Side, Array]
     leg: Mapping[Side, float]
+    nodes: Cells | None = None
+    """Slivers of the cells, `n_nodes` a cell, at which a film that falls off along the leg is looked at more closely;
+    a side that has none there does not change within a cell."""
+    weights: Array | None = None
+    """(n, n_nodes) share of each sliver in its cell."""
+
+
+def entrance_nodes(start: Array, end: Array, from_end: NDArray[np.bool_], leg: float) -> tuple[Array, Array]:
+    """Places (n, 3) within the cells of a leg, and their weights, at which to average what an entrance makes fall off.
+
+    Gauss's nodes in the cube root of the distance from the nearer entrance, in which developing films are smooth;
+    `from_end` says for which cells that entrance is at the end of the leg.
+    """
+    near, far = np.where(from_end, leg - end, start), np.where(from_end, leg - start, end)
+    t, g = np.polynomial.legendre.leggauss(3)
+    low, high = np.cbrt(near)[:, None], np.cbrt(far)[:, None]
+    s = low + (high - low) * (t + 1) / 2
+    weights = g / 2 * (high - low) * 3 * s**2 / (far - near)[:, None]
+    x = np.where(from_end[:, None], leg - s**3, s**3)
+    return x, weights / weights.sum(axis=1, keepdims=True)
+
+
+def sliver(x: Array) -> tuple[Array, Array]:
+    """Begin and end of a piece around each place, short enough for its mean to be the local value."""
+    return x * (1 - 1e-4), x * (1 + 1e-4)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -103,8 +128,8 @@ class Exchanger(Protocol):
         """Outside area over inside area of the tube."""
 
     def cells(self, fineness: int = 1) -> Cells: ...
-    def whole(self) -> Cells:
-        """One cell that stands for the whole exchanger."""
+    def whole(self, fineness: int = 1) -> Cells:
+        """One leg or pass that stands for all, cut as in `cells`: for ratings at mean properties."""
 
     def film(self, side: Side, cells: Cells, at: Flowing) -> Film: ...
     def second_opinions(self, side: Side, cells: Cells, at: Flowing) -> dict[str, Array]:
@@ -132,4 +157,4 @@ class Exchanger(Protocol):
     def problems(self) -> Any: ...
 
 
-__all__ = ["REGIMES", "Cells", "Exchanger", "Film", "Flowing", "Layout", "Problem", "Properties", "Side"]
+__all__ = ["REGIMES", "Cells", "entrance_nodes", "sliver", "Exchanger", "Film", "Flowing", "Layout", "Problem", "Properties", "Side"]

@@ -11,7 +11,7 @@ from pydantic import Field
 
 from engine import effectiveness as exact
 from engine.correlations import Array, Correlation, Excursion, Source, annulus, inside_tubes, losses
-from engine.exchangers import Cells, Film, Flowing, layout, standard_sizes
+from engine.exchangers import Cells, Film, Flowing, entrance_nodes, layout, sliver, standard_sizes
 from engine.stated import Choice, Count, Input, Problem, Side, Stated, Words
 
 LENGTH = ("length",)
@@ -79,9 +79,7 @@ class Fins(Input):
     count: Annotated[int, Count("Fins", 1, 200)]
     height: Annotated[float, length("Fin height", "12.7 mm", 0.2)]
     thickness: Annotated[float, length("Fin thickness", "0.9 mm", 0.05)]
-    conductivity: Annotated[
-        float, Stated("conductivity", "Fin conductivity", above=0.0, high=500.0, example="50 W/mK")
-    ]
+    conductivity: Annotated[float, Stated("conductivity", "Fin conductivity", above=0.0, high=500.0, example="50 W/mK")]
 
 
 class DoublePipe(Input):
@@ -230,11 +228,15 @@ class DoublePipe(Input):
 
     def cells(self, fineness: int = 1) -> Cells:
         """The legs cut into equal cells; `fineness` multiplies their number."""
-        legs = self.legs_in_series * (1 if self._both_split else self.banks)
-        return self._cut(max(2, -(-24 // legs)) * fineness)
+        return self._cut(self._cells_a_leg * fineness)
 
-    def whole(self) -> Cells:
-        return self._cut(1, legs=1, banks=1)
+    def whole(self, fineness: int = 1) -> Cells:
+        return self._cut(self._cells_a_leg * fineness, legs=1, banks=1)
+
+    @property
+    def _cells_a_leg(self) -> int:
+        legs = self.legs_in_series * (1 if self._both_split else self.banks)
+        return max(2, -(-24 // legs))
 
     @property
     def _both_split(self) -> bool:
@@ -252,14 +254,26 @@ class DoublePipe(Input):
             outside="split" if self.branches("outside") > 1 else "in turn",
         )
         leg = float(self.leg_length)
+        counter = self.arrangement == "counter"
         edges = np.linspace(0.0, leg, per_leg + 1)
         start, end = np.tile(edges[:-1], legs * banks), np.tile(edges[1:], legs * banks)
-        from_outside = (leg - end, leg - start) if self.arrangement == "counter" else (start, end)
+        x, weights = entrance_nodes(start, end, counter & (start + end > leg * (1 + 1e-9)), leg)
+        begin, stop = sliver(x.ravel())
+        begin_outside, stop_outside = sliver((leg - x if counter else x).ravel())
+        legs_of = {"inside": leg, "outside": leg}
+        nodes = Cells(
+            layout=order,
+            start={"inside": begin, "outside": begin_outside},
+            end={"inside": stop, "outside": stop_outside},
+            leg=legs_of,
+        )
         return Cells(
             layout=order,
-            start={"inside": start, "outside": from_outside[0]},
-            end={"inside": end, "outside": from_outside[1]},
-            leg={"inside": leg, "outside": leg},
+            start={"inside": start, "outside": leg - end if counter else start},
+            end={"inside": end, "outside": leg - start if counter else end},
+            leg=legs_of,
+            nodes=nodes,
+            weights=weights,
         )
 
     # --- films ------------------------------------------------------------------------------------------------------
@@ -289,9 +303,7 @@ class DoublePipe(Input):
 
     @staticmethod
     def _wall(at: Flowing) -> inside_tubes.Wall:
-        return inside_tubes.Wall(
-            mu=at.mu_wall / at.bulk.mu, Pr=at.Pr_wall / at.bulk.Pr, T=at.T_wall / at.T, gas=at.gas
-        )
+        return inside_tubes.Wall(mu=at.mu_wall / at.bulk.mu, Pr=at.Pr_wall / at.bulk.Pr, T=at.T_wall / at.T, gas=at.gas)
 
     def film(self, side: Side, cells: Cells, at: Flowing) -> Film:
         area, d_h, surface = self._passage(side, at)
@@ -426,7 +438,8 @@ class DoublePipe(Input):
         else:
             ends = (T_in["inside"] - T_in["outside"], T_out["inside"] - T_out["outside"])
         lmtd = exact.log_mean(np.abs(ends[0]), np.abs(ends[1]))
-        return lmtd, np.ones_like(lmtd)
+        # Ends of opposite sign have crossed: no area of this arrangement gives them.
+        return lmtd, np.where(ends[0] * ends[1] > 0, 1.0, 0.0)
 
     def problems(self) -> Iterator[Problem]:
         sound = True
@@ -470,7 +483,8 @@ class DoublePipe(Input):
             d = self.tube_id if side == "inside" else self.shell_id - self.tube_od
             if rough > 0.05 * d:
                 yield Problem(
-                    path=f"{side}_roughness", says=f"is over 5 % of the passage of {d * mm:.4g} mm; allowed is up to that"
+                    path=f"{side}_roughness",
+                    says=f"is over 5 % of the passage of {d * mm:.4g} mm; allowed is up to that",
                 )
 
 

@@ -1,0 +1,539 @@
+"""Any number of operating points of one case, solved cell by cell: local properties, films, wall temperatures.
+
+Arrays first: there is no second, scalar engine. Points go through in chunks, so that memory does not grow with them.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from dataclasses import dataclass, field, replace
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+import pandas as pd
+from numpy.typing import NDArray
+
+from engine import march
+from engine.case import Case
+from engine.correlations import Array
+from engine.exchangers import Cells, Film, Flowing
+from engine.fluids import Fluid, Properties, Tabulated
+from engine.stated import SIDES, CaseError, Problem, Side, opposite
+
+CHUNK = 256
+"""Points solved at once: small enough for the work arrays to stay in the processor's cache."""
+TOLERANCE = 1e-9
+"""Of the outer loop: largest change of a temperature between two iterations over the inlet difference."""
+SETTLED = 1e-6
+"""Residual up to which a point counts as converged."""
+SETTLE_AT = (1e-2, 1e-6)
+"""Residuals at which a point's slowly changing parts are found: roughly, then for good."""
+MOST_ITERATIONS = 60
+
+Texts = NDArray[np.object_]
+
+
+@dataclass(frozen=True, kw_only=True)
+class Points:
+    """Operating points of one case; every array (P,), SI."""
+
+    flow: Mapping[Side, Array]
+    T_in: Mapping[Side, Array]
+    R_fouling: Mapping[Side, Array]
+    tubes_plugged: Array
+    factors: Mapping[str, Array] = field(default_factory=dict)
+    """"side:relation" or "side:property" (rho, cp, mu, k) or "wall" to multipliers: how doubt is propagated."""
+
+    def __len__(self) -> int:
+        return len(self.tubes_plugged)
+
+    def part(self, rows: slice | NDArray[Any]) -> Points:
+        return Points(
+            flow={side: x[rows] for side, x in self.flow.items()},
+            T_in={side: x[rows] for side, x in self.T_in.items()},
+            R_fouling={side: x[rows] for side, x in self.R_fouling.items()},
+            tubes_plugged=self.tubes_plugged[rows],
+            factors={name: x[rows] for name, x in self.factors.items()},
+        )
+
+
+def in_series(r: Mapping[str, Array]) -> Array:
+    """The conductance of a chain of resistances."""
+    return np.asarray(1.0 / sum(r.values()))
+
+
+@dataclass(frozen=True, kw_only=True)
+class Solution:
+    """Solved points by the march, arrays (P,) or (P, n)."""
+
+    points: Points
+    cells: Cells
+    duty: Array
+    T_out: Mapping[Side, Array]
+    entry: Mapping[Side, Array]
+    exit: Mapping[Side, Array]
+    mean: Mapping[Side, Array]
+    surface: Mapping[Side, Array]
+    films: Mapping[Side, Film]
+    flowing: Mapping[Side, Flowing]
+    r: Mapping[str, Array]
+    """Local resistances by name, (P, n_cells), on the outside bare area."""
+    heat: Array
+    drops: Mapping[Side, Mapping[str, Array]]
+    iterations: NDArray[np.int_]
+    residual: Array
+    problem: Texts
+
+    @cached_property
+    def share(self) -> Array:
+        return self.cells.layout.area_share
+
+    @cached_property
+    def U_local(self) -> Array:
+        return in_series(self.r)
+
+    @cached_property
+    def U(self) -> Array:
+        return np.asarray(self.U_local @ self.share)
+
+    @cached_property
+    def resistances(self) -> dict[str, Array]:
+        """⟨U r_k⟩/⟨U⟩: so weighted, they sum to 1/U exactly."""
+        return {name: (self.U_local * r) @ self.share / self.U for name, r in self.r.items()}
+
+    @cached_property
+    def U_clean(self) -> Array:
+        R = self.resistances
+        return 1.0 / (1.0 / self.U - R["outside fouling"] - R["inside fouling"])
+
+    def drop(self, side: Side) -> Array:
+        return np.asarray(sum(self.drops[side].values(), np.zeros(len(self.points))))
+
+
+def points_of(case: Case, frame: pd.DataFrame | None = None) -> tuple[Points, Texts]:
+    """Operating points from a frame (columns by path, SI; what is absent comes from the case), and a problem per row.
+
+    Raises CaseError for an unknown column.
+    """
+    n = 1 if frame is None else len(frame)
+    columns = {f"{side}.{name}" for side in SIDES for name in ("flow", "T_in", "R_fouling")} | {"tubes_plugged"}
+    given = {} if frame is None else {str(name): frame[name].to_numpy(float) for name in frame.columns}
+    unknown = sorted(set(given) - columns)
+    if unknown:
+        allowed = ", ".join(sorted(columns))
+        raise CaseError([Problem(path=name, says=f"is not a known column; allowed are {allowed}") for name in unknown])
+
+    def column(name: str, default: float) -> Array:
+        return np.asarray(given.get(name, np.full(n, default)), dtype=float)
+
+    points = Points(
+        flow={side: column(f"{side}.flow", case.flow(side) or np.nan) for side in SIDES},
+        T_in={side: column(f"{side}.T_in", case.T_in(side)) for side in SIDES},
+        R_fouling={side: column(f"{side}.R_fouling", float(case.stream(side).R_fouling)) for side in SIDES},
+        tubes_plugged=column("tubes_plugged", float(getattr(case.exchanger, "tubes_plugged", 0))),
+    )
+    return points, _row_problems(case, points)
+
+
+def _row_problems(case: Case, points: Points) -> Texts:
+    problem = np.full(len(points), "", dtype=object)
+
+    def refuse(rows: Any, sentence: str) -> None:
+        problem[rows & (problem == "")] = sentence
+
+    for side in SIDES:
+        flow, T, R = points.flow[side], points.T_in[side], points.R_fouling[side]
+        refuse(~(np.isfinite(flow) & (flow > 0)), f"{side}.flow is not a positive finite number of kg/s")
+        refuse(~(np.isfinite(R) & (R >= 0) & (R <= 0.1)), f"{side}.R_fouling is not from 0 to 0.1 m²K/W")
+        fluid = case.fluid(side)
+        for i in np.flatnonzero(~np.isfinite(T) | fluid.outside(np.nan_to_num(T))):
+            sentence = fluid.problem(T[i], "at the inlet") if np.isfinite(T[i]) else "is not a number"
+            refuse(np.arange(len(points)) == i, f"{side}.T_in: {sentence}")
+    refuse(np.abs(points.T_in["inside"] - points.T_in["outside"]) < 1e-6, "both inlets have the same temperature")
+    refuse(~(points.tubes_plugged >= 0), "tubes_plugged is not a count from 0 on")
+    refuse(~(case.exchanger.area_at(points.tubes_plugged) > 0), "tubes_plugged leaves no tube open")
+    return problem
+
+
+def solve(case: Case, points: Points, *, fineness: int = 1) -> Iterator[tuple[slice, Solution]]:
+    """March through all points, chunk after chunk; memory does not grow with their number.
+
+    Points must be sound (see `points_of`). A point that leaves a fluid's usable span carries a sentence in `problem`.
+    """
+    if not len(points):
+        return
+    cells = case.exchanger.cells(fineness)
+    # No temperature leaves the span between the inlets by more than a heat loss can pull it.
+    ends = np.concatenate([points.T_in[side] for side in SIDES])
+    room = 2.0 + (0.5 * np.ptp(ends) if case.exchanger.heat_loss else 0.0)
+    fluids = {side: case.fluid(side).within(ends.min() - room, ends.max() + room) for side in SIDES}
+    for first in range(0, len(points), CHUNK):
+        rows = slice(first, min(first + CHUNK, len(points)))
+        yield rows, _march(case, points.part(rows), cells, fluids)
+
+
+def _properties(fluid: Fluid, T: Array, side: Side, points: Points) -> Properties:
+    found = fluid.at(T)
+    doubt = {
+        name: getattr(found, name) * points.factors[f"{side}:{name}"][:, None]
+        for name in ("rho", "cp", "mu", "k")
+        if f"{side}:{name}" in points.factors
+    }
+    return replace(found, **doubt) if doubt else found
+
+
+def flowing_side(fluid: Fluid, side: Side, points: Points, T: Array, T_wall: Array) -> Flowing:
+    """One side's fluid at bulk and wall temperatures (P, n), with the points' multipliers on its properties."""
+    bulk = _properties(fluid, T, side, points)
+    mu_wall, Pr_wall = fluid.values(T_wall, "mu", "Pr")
+    doubt = points.factors
+    if any(f"{side}:{name}" in doubt for name in ("mu", "cp", "k")):
+        one = np.ones(len(points))
+        mu, cp, k = (doubt.get(f"{side}:{name}", one)[:, None] for name in ("mu", "cp", "k"))
+        mu_wall, Pr_wall = mu_wall * mu, Pr_wall * mu * cp / k
+    prefix = f"{side}:"
+    return Flowing(
+        flow=points.flow[side],
+        T=T,
+        T_wall=T_wall,
+        bulk=bulk,
+        mu_wall=mu_wall,
+        Pr_wall=Pr_wall,
+        gas=fluid.phase == "gas",
+        heated=(points.T_in[side] < points.T_in[opposite(side)])[:, None],
+        R_fouling=points.R_fouling[side],
+        tubes_plugged=points.tubes_plugged,
+        factors={name[len(prefix) :]: value for name, value in points.factors.items() if name.startswith(prefix)},
+    )
+
+
+@dataclass(frozen=True, kw_only=True)
+class _Settled:
+    """Parts of a step that hardly depend on the last digits of the temperatures: found once, near the end."""
+
+    bend: Array
+    """(P, 2, n) per side, mean of cp over a cell over cp at its mean temperature: closes the enthalpy balance."""
+    spread: Array
+    """(P, 2, n) per side, resistance of a film that falls off within a cell over that of its mean h."""
+
+    def part(self, rows: NDArray[Any]) -> _Settled:
+        return _Settled(bend=self.bend[rows], spread=self.spread[rows])
+
+
+@dataclass(frozen=True, kw_only=True)
+class _Step:
+    """All that follows from one guess of the temperatures."""
+
+    settled: _Settled
+
+    flowing: Mapping[Side, Flowing]
+    films: Mapping[Side, Film]
+    r: Mapping[str, Array]
+    found: march.Temperatures
+    surface: Mapping[Side, Array]
+    lossy: NDArray[np.bool_]
+
+    def guess(self) -> Array:
+        return np.stack(
+            [self.found.inside_mean, self.found.outside_mean, self.surface["inside"], self.surface["outside"]], axis=1
+        )
+
+
+def _step(
+    case: Case,
+    points: Points,
+    cells: Cells,
+    fluids: Mapping[Side, Fluid],
+    guess: Array,
+    settled: _Settled,
+    heat: Array,
+) -> _Step:
+    """Properties, films, U and the temperatures they lead to, from a guess (P, 4, n) of inside and outside bulk and
+    inside and outside surface; `heat` (P, n) from the inside to the outside."""
+    exchanger = case.exchanger
+    flowing: dict[Side, Flowing] = {}
+    films: dict[Side, Film] = {}
+    capacity: dict[Side, Array] = {}
+    for i, side in enumerate(SIDES):
+        flowing[side] = flowing_side(fluids[side], side, points, guess[:, i], guess[:, 2 + i])
+        films[side] = exchanger.film(side, cells, flowing[side])
+        capacity[side] = points.flow[side][:, None] * flowing[side].bulk.cp * settled.bend[:, i]
+    share = cells.layout.area_share
+    lossy: NDArray[np.bool_] = np.zeros(len(points), dtype=bool)
+    if exchanger.heat_loss:
+        # What the outside stream loses to the surroundings changes how far it warms or cools for the heat it gets:
+        # the same as another heat capacity in that cell.
+        loss = float(exchanger.heat_loss) * share
+        ratio = heat / np.where(heat == loss, np.nan, heat - loss)
+        bad = ~((ratio > 0.02) & (ratio < 50.0))
+        lossy = np.asarray(bad.any(axis=1))
+        capacity["outside"] = capacity["outside"] * np.where(bad, 1.0, ratio)
+    r = resistances(case, points, films, 0.5 * (guess[:, 2] + guess[:, 3]), settled.spread)
+    U = in_series(r)
+    found = march.temperatures(
+        cells.layout,
+        U * (exchanger.area_at(points.tubes_plugged)[:, None] * share),
+        capacity["inside"],
+        capacity["outside"],
+        points.T_in["inside"],
+        points.T_in["outside"],
+    )
+    flux = U * (found.inside_mean - found.outside_mean)
+    surface: dict[Side, Array] = {
+        "inside": found.inside_mean - flux * r["inside film"],
+        "outside": found.outside_mean + flux * r["outside film"],
+    }
+    return _Step(settled=settled, flowing=flowing, films=films, r=r, found=found, surface=surface, lossy=lossy)
+
+
+def _settle(
+    case: Case, points: Points, cells: Cells, fluids: Mapping[Side, Fluid], step: _Step, rows: NDArray[np.bool_]
+) -> _Settled:
+    """For some rows of a step; `points` are those rows."""
+    found = step.found
+    met: dict[Side, tuple[Array, Array, Array]] = {
+        "inside": (found.inside_entry[rows], found.inside_exit[rows], found.inside_mean[rows]),
+        "outside": (found.outside_entry[rows], found.outside_exit[rows], found.outside_mean[rows]),
+    }
+    flowing: dict[Side, Flowing] = {}
+    for side in SIDES:
+        at = step.flowing[side]
+        flowing[side] = flowing_side(fluids[side], side, points, at.T[rows], at.T_wall[rows])
+    bend = [
+        fluids[side].mean_cp(entry, exit) / fluids[side].values(mean, "cp")[0]
+        for side, (entry, exit, mean) in met.items()
+    ]
+    h = {side: step.films[side].h[rows] for side in SIDES}
+    r = {name: value[rows] for name, value in step.r.items()}
+    return _Settled(bend=np.stack(bend, axis=1), spread=film_spread(case, cells, flowing, h, r))
+
+
+def film_spread(
+    case: Case, cells: Cells, flowing: Mapping[Side, Flowing], h_mean: Mapping[Side, Array], r: Mapping[str, Array]
+) -> Array:
+    """(P, 2, n) by how much a film's resistance in a cell exceeds that of its mean h, since U is not linear in h.
+
+    With local values weighted by local U, as everywhere: r = ⟨U r⟩/⟨U⟩ over the nodes of the cell.
+    """
+    shape = np.broadcast_shapes(*(h_mean[side].shape for side in SIDES))
+    if cells.nodes is None or cells.weights is None:
+        return np.ones((shape[0], 2, shape[1]))
+    count = cells.weights.shape[1]
+    local: list[Array] = []
+    for side in SIDES:
+        h = np.broadcast_to(h_mean[side], shape)
+        if side in cells.nodes.start:
+            at = case.exchanger.film(side, cells.nodes, _repeated(flowing[side], count)).h
+            at = at.reshape(*at.shape[:-1], -1, count)
+            # The printed mean over the cell stands; the nodes only say how it is spread.
+            local.append(at * (h / (at * cells.weights).sum(axis=-1))[..., None])
+        else:
+            local.append(h[..., None])
+    ratio = (case.exchanger.area_ratio, 1.0)
+    films_r = [ratio[i] / h for i, h in enumerate(local)]
+    rest = r["wall"] + r["inside fouling"] + r["outside fouling"]
+    U = cells.weights / (films_r[0] + films_r[1] + rest[..., None])
+    total = U.sum(axis=-1)
+    means = [(U * film).sum(axis=-1) / total for film in films_r]
+    return np.stack([means[i] * h_mean[side] / ratio[i] for i, side in enumerate(SIDES)], axis=1)
+
+
+def _repeated(at: Flowing, count: int) -> Flowing:
+    """Every cell `count` times, for its nodes."""
+
+    def wide(x: Array) -> Array:
+        return np.repeat(x, count, axis=1) if x.shape[1] > 1 else x
+
+    b = at.bulk
+    bulk = replace(b, rho=wide(b.rho), cp=wide(b.cp), mu=wide(b.mu), k=wide(b.k))
+    return replace(
+        at, T=wide(at.T), T_wall=wide(at.T_wall), bulk=bulk, mu_wall=wide(at.mu_wall), Pr_wall=wide(at.Pr_wall)
+    )
+
+
+def resistances(
+    case: Case, points: Points, films: Mapping[Side, Film], T_metal: Array, spread: Array | None = None
+) -> dict[str, Array]:
+    """The chain from the outside to the inside fluid, (P, n) each, on the outside bare area [m²K/W]."""
+    more = np.ones((1, 2, 1)) if spread is None else spread
+    exchanger = case.exchanger
+    wall = exchanger.wall_resistance(T_metal)
+    if "wall" in points.factors:
+        wall = wall / points.factors["wall"][:, None]
+    fouling = {side: exchanger.fouling_resistance(side, points.R_fouling[side])[:, None] for side in SIDES}
+    return {
+        "outside film": more[:, 1] / films["outside"].h,
+        "outside fouling": np.broadcast_to(fouling["outside"], wall.shape),
+        "wall": wall,
+        "inside fouling": np.broadcast_to(fouling["inside"], wall.shape),
+        "inside film": more[:, 0] * exchanger.area_ratio / films["inside"].h,
+    }
+
+
+def _march(case: Case, points: Points, cells: Cells, fluids: Mapping[Side, Fluid]) -> Solution:
+    n, P = cells.layout.n_cells, len(points)
+    T_i, T_o = points.T_in["inside"][:, None], points.T_in["outside"][:, None]
+    span = np.abs(T_i - T_o)[:, 0]
+    # A quarter of the way from each inlet to the other is near enough to start from.
+    guess = np.stack([np.broadcast_to(x, (P, n)) for x in (0.75 * T_i + 0.25 * T_o, 0.25 * T_i + 0.75 * T_o)] * 2, 1)
+    guess[:, 2:] = 0.5 * (T_i + T_o)[:, None]
+    heat = np.broadcast_to(T_i - T_o, (P, n)) * 1e12
+    settled = _Settled(bend=np.ones((P, 2, n)), spread=np.ones((P, 2, n)))
+    level = np.zeros(P, dtype=int)
+    iterations, residual = np.zeros(P, dtype=int), np.full(P, np.inf)
+    active = np.arange(P)
+    old_new = old_change = np.zeros((P, 4, n))
+    fresh = np.ones(P, dtype=bool)
+    for count in range(1, MOST_ITERATIONS + 1):
+        part = points if active.size == P else points.part(active)
+        step = _step(case, part, cells, fluids, guess[active], settled.part(active), heat[active])
+        new = step.guess()
+        change = new - guess[active]
+        if case.exchanger.heat_loss:
+            heat = heat.copy()
+            heat[active] = step.found.heat
+        now = np.abs(change).max(axis=(1, 2)) / span[active]
+        iterations[active], residual[active] = count, now
+        guess[active] = _accelerated(new, change, old_new, old_change, fresh)
+        due = (level[active] < len(SETTLE_AT)) & (now < np.array((*SETTLE_AT, 0.0))[level[active]])
+        if due.any():
+            rows = active[due]
+            found = _settle(case, points.part(rows), cells, fluids, step, due)
+            settled.bend[rows], settled.spread[rows] = found.bend, found.spread
+            level[rows] += 1
+        going = (now > TOLERANCE) | (level[active] < len(SETTLE_AT)) | due
+        old_new, old_change, fresh, active = new[going], change[going], due[going], active[going]
+        if not active.size:
+            break
+    step = _step(case, points, cells, fluids, guess, settled, heat)
+    return _solution(case, points, cells, fluids, step, iterations, residual)
+
+
+def _accelerated(new: Array, change: Array, old_new: Array, old_change: Array, fresh: NDArray[np.bool_]) -> Array:
+    """Anderson's mixing with one step of memory (J. ACM 12 (1965) 547), point by point; `fresh` points have none."""
+    turn = change - old_change
+    size = np.einsum("pij,pij->p", turn, turn)
+    share = np.einsum("pij,pij->p", change, turn) / np.where(size > 0, size, 1.0)
+    # A large share means that the two steps say nothing about the slope; the plain step is safer.
+    share = np.where((np.abs(share) < 1.0) & ~fresh, share, 0.0)
+    return new - share[:, None, None] * (new - old_new)
+
+
+def _solution(
+    case: Case,
+    points: Points,
+    cells: Cells,
+    fluids: Mapping[Side, Fluid],
+    step: _Step,
+    iterations: NDArray[np.int_],
+    residual: Array,
+) -> Solution:
+    found = step.found
+    drops = {side: case.exchanger.drop(side, cells, step.flowing[side], step.films[side]) for side in SIDES}
+    flowing = dict(step.flowing)
+    for side in SIDES:
+        if flowing[side].gas:
+            # A gas is rated at its mean pressure: density once more, with half of the drop taken off.
+            p = case.p_in(side)
+            lost = sum(drops[side].values(), np.zeros(len(points)))
+            left = np.maximum(1.0 - 0.5 * lost / p, 0.5)[:, None]
+            bulk = replace(flowing[side].bulk, rho=flowing[side].bulk.rho * left)
+            flowing[side] = replace(flowing[side], bulk=bulk)
+            film = replace(step.films[side], velocity=step.films[side].velocity / left)
+            drops[side] = case.exchanger.drop(side, cells, flowing[side], film)
+    problem = np.full(len(points), "", dtype=object)
+    ends: dict[Side, tuple[Array, Array]] = {
+        "inside": (found.inside_entry, found.inside_exit),
+        "outside": (found.outside_entry, found.outside_exit),
+    }
+    for side in SIDES:
+        dp = sum(drops[side].values(), np.zeros(len(points)))
+        p_in = case.p_in(side)
+        if fluids[side].phase == "gas":
+            _mark(
+                problem,
+                dp >= 0.5 * p_in,
+                lambda i, side=side, dp=dp, p_in=p_in: (
+                    f"{side}.flow: a gas cannot lose {dp[i] / 1e5:.3g} bar of {p_in / 1e5:.3g} bar absolute and be "
+                    "rated at its mean pressure; allowed is up to half"
+                ),
+            )
+        T_boil = _boiling_limit(fluids[side], p_in, dp)
+        places = {"": np.concatenate([*ends[side]], axis=1)}
+        if not isinstance(fluids[side], Tabulated):
+            # Beyond a typed table the wall takes the properties of the table's last allowed temperature, and a finding
+            # says so: only the wall's correction depends on them.
+            places["at the wall"] = step.surface[side]
+        for where, T in places.items():
+            bad = fluids[side].outside(T)
+            _mark(
+                problem,
+                bad.any(axis=1),
+                lambda i, T=T, bad=bad, side=side, where=where: fluids[side].problem(
+                    float(T[i][bad[i]][0]), f"{side} {where}".strip()
+                ),
+            )
+            hot = T_boil[:, None] < T
+            _mark(
+                problem,
+                hot.any(axis=1),
+                lambda i, T=T, side=side, where=where, T_boil=T_boil: (
+                    f"{side} {where or 'bulk'}: {fluids[side].name} at {T[i].max() - 273.15:.1f} °C boils at the "
+                    f"outlet pressure ({T_boil[i] - 273.15:.1f} °C)"
+                ),
+            )
+    _mark(problem, step.lossy, lambda i: "exchanger.heat_loss is as large as the heat passed in some cells")
+    return Solution(
+        points=points,
+        cells=cells,
+        duty=np.abs(found.heat.sum(axis=1)),
+        T_out={"inside": found.inside_outlet, "outside": found.outside_outlet},
+        entry={side: ends[side][0] for side in SIDES},
+        exit={side: ends[side][1] for side in SIDES},
+        mean={"inside": found.inside_mean, "outside": found.outside_mean},
+        surface=step.surface,
+        films=step.films,
+        flowing=flowing,
+        r=step.r,
+        heat=found.heat,
+        drops=drops,
+        iterations=iterations,
+        residual=residual,
+        problem=problem,
+    )
+
+
+def _boiling_limit(fluid: Fluid, p_in: float, dp: Array) -> Array:
+    """(P,) saturation temperature at the outlet pressure; infinite where the fluid has none that is known."""
+    limit = np.full(np.shape(dp), np.inf)
+    if fluid.phase != "liquid" or fluid.saturation_temperature(p_in) is None:
+        return limit
+    p = np.maximum(p_in - dp, 0.01 * p_in)
+    # ln p is nearly linear in 1/T along a saturation line: three points of it are enough for thousands.
+    lowest = float(p.min())
+    nodes = np.geomspace(lowest, p_in, 5)
+    T = [fluid.saturation_temperature(float(node)) for node in nodes]
+    if any(t is None for t in T):
+        return limit
+    return 1.0 / np.interp(np.log(p), np.log(nodes), 1.0 / np.array(T, dtype=float))
+
+
+def _mark(problem: Texts, rows: Any, sentence: Any) -> None:
+    for i in np.flatnonzero(rows & (problem == "")):
+        problem[i] = sentence(i)
+
+
+def joined(parts: list[Points]) -> Points:
+    """Several sets of points as one."""
+
+    def merge(groups: list[Mapping[Any, Array]]) -> dict[Any, Array]:
+        return {key: np.concatenate([group[key] for group in groups]) for key in groups[0]}
+
+    return Points(
+        flow=merge([p.flow for p in parts]),
+        T_in=merge([p.T_in for p in parts]),
+        R_fouling=merge([p.R_fouling for p in parts]),
+        tubes_plugged=np.concatenate([p.tubes_plugged for p in parts]),
+        factors=merge([p.factors for p in parts]),
+    )
