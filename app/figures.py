@@ -22,7 +22,7 @@ MARKERS = {"full circle": "circle", "open square": "square-open"}
 def chart(data: Any) -> go.Figure:
     """Lines over a common x, with strips below that say what holds where."""
     figure = go.Figure()
-    room = 0.085 * len(data.strips)
+    room = 0.09 * len(data.strips)
     for line, colour in zip(data.lines, PALETTE, strict=False):
         marked = bool(line.marker)
         figure.add_scatter(
@@ -46,24 +46,30 @@ def chart(data: Any) -> go.Figure:
                 marker={
                     "color": GROUND,
                     "line": {"color": WALL, "width": 1},
-                    "pattern": {"shape": HATCHES.get(what, ""), "fgcolor": WALL, "size": 9, "solidity": 0.12},
+                    "pattern": {"shape": HATCHES.get(what, ""), "fgcolor": WALL, "size": 9, "solidity": 0.08},
                 },
-                text=[f"{strip.name}: {what}" if i == 0 and end - start > 0.35 else what],
-                textposition="inside",
-                insidetextanchor="middle",
-                textangle=0,
                 showlegend=False,
                 hovertemplate=f"{strip.name}: {what}<extra></extra>",
             )
+            if end - start > 0.2:
+                # As an annotation the words take the ink of the page, whichever its ground.
+                said = f"{strip.name}: {what}" if i == 0 and end - start > 0.4 else what
+                middle = 0.5 * (start + end)
+                figure.add_annotation(x=middle, y=strip.name, yref="y2", text=said, showarrow=False, font={"size": 12})
     for mark in data.marks:
         figure.add_vline(x=mark, line={"color": WALL, "width": 0.6, "dash": "dot"}, opacity=0.5)
     figure.update_layout(
-        xaxis={"title": data.x_label, "range": [0, 1], "tickformat": ".0%", "domain": [0, 1], "anchor": "y2"},
+        xaxis={
+            "title": data.x_label,
+            "range": [0, 1],
+            "tickvals": [0, 0.25, 0.5, 0.75, 1],
+            "ticktext": ["0", "25 %", "50 %", "75 %", "100 %"],
+            "anchor": "y2",
+        },
         yaxis={"title": data.y_label, "domain": [room + 0.03 if room else 0, 1]},
         yaxis2={"domain": [0, room or 0.01], "showticklabels": False, "showgrid": False, "fixedrange": True},
         hovermode="x unified",
         barmode="overlay",
-        uniformtext={"minsize": 9, "mode": "hide"},
         **_frame(430),
     )
     return figure
@@ -76,7 +82,7 @@ def _dash(dashes: Sequence[float]) -> str:
 def _frame(height: int) -> dict[str, Any]:
     return {
         "height": height,
-        "margin": {"l": 8, "r": 12, "t": 8, "b": 8},
+        "margin": {"l": 8, "r": 26, "t": 8, "b": 8},
         "legend": {"orientation": "h", "yanchor": "bottom", "y": 1.01, "x": 0},
         "dragmode": False,
     }

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import logging
+import re
 from collections.abc import Callable, Sequence
 from typing import Any
 
@@ -15,12 +16,23 @@ from app.inputs import MISSING, Problems
 
 log = logging.getLogger("countercheck")
 
+STYLE = """<style>
+[data-testid="stMainBlockContainer"] {padding-top: 3.5rem}
+[data-testid="stMarkdownContainer"] table {display: block; overflow-x: auto; width: fit-content; max-width: 100%}
+[data-testid="stMarkdownContainer"] td:not(:first-child) {font-variant-numeric: tabular-nums}
+@media (max-width: 640px) {
+  [data-testid="stMarkdownContainer"] :is(td, th) {font-size: 0.8rem; padding: 0.25rem 0.4rem}
+}
+</style>"""
+"""A wide table scrolls within itself, never the page."""
+
 
 def drawn(show: Callable[[], None]) -> Callable[[], None]:
     """A page within its frame."""
 
     def page() -> None:
         try:
+            st.html(STYLE)
             session.begin()
             sidebar()
             for sentence in session.notices():
@@ -84,11 +96,15 @@ def sentence(place: str, says: str) -> str:
 
 
 def table(header: Sequence[str], rows: Sequence[Sequence[str]]) -> None:
-    """A small table of text; figures stand to the right."""
-    lines = [header, *rows]
-    text = [f"| {' | '.join(plain(cell).replace(chr(10), '<br>') for cell in line)} |" for line in lines]
-    marks = ["---", *["---:"] * (len(header) - 1)]
-    st.markdown("\n".join([text[0], f"| {' | '.join(marks)} |", *text[1:]]))
+    """A small table of text; columns of figures stand to the right."""
+    lines = [f"| {' | '.join(plain(cell).replace(chr(10), '<br>') for cell in line)} |" for line in (header, *rows)]
+    marks = ["---:" if i and _figures([row[i] for row in rows]) else ":---" for i in range(len(header))]
+    st.markdown("\n".join([lines[0], f"| {' | '.join(marks)} |", *lines[1:]]))
+
+
+def _figures(cells: Sequence[str]) -> bool:
+    stated = [cell for cell in cells if cell not in ("", "–")]
+    return sum(bool(re.match(r"[±+−-]?\d", cell)) for cell in stated) > 0.8 * len(stated)
 
 
 def blocks(blocks: Sequence[Any], place: str) -> None:

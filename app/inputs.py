@@ -58,6 +58,8 @@ class Form:
         self.problems = problems
         self.display = session.display()
         self.view = session.view()
+        self.tables: list[tuple[Part, Path]] = []
+        """Tables met on the way: they are drawn across the page, by `rows`."""
 
     def key(self, path: Path) -> str:
         return engine.dotted(path) + self.view
@@ -76,7 +78,7 @@ class Form:
             if part.shape == "kinds":
                 self.kinds(part, (*path, part.name))
             elif part.shape == "rows":
-                self.rows(part, (*path, part.name))
+                self.tables.append((part, (*path, part.name)))
         needed = [part for part in fields.parts(model) if part.shape == "group" and part.needed]
         for part, place in zip(needed, _side_by_side(len(needed)), strict=True):
             with place:
@@ -107,7 +109,8 @@ class Form:
     def boxes(self, inner: Sequence[Part], path: Path, columns: int, within: Path | None = None) -> None:
         for first in range(0, len(inner), columns):
             row = inner[first : first + columns]
-            for part, place in zip(row, _side_by_side(columns), strict=False):
+            said = any(self.problems.under((*path, part.name)) for part in row)
+            for part, place in zip(row, _side_by_side(columns, "top" if said else "bottom"), strict=False):
                 with place:
                     self.box(part, (*path, part.name), within)
 
@@ -136,19 +139,18 @@ class Form:
         self.said(path)
         columns = fields.parts(part.models[0])
         for i in range(count):
-            with st.container(border=True):
-                title, remove = st.columns([3, 1], vertical_alignment="center", wrap=False)
-                title.markdown(f"**Row {i + 1}**")
-                remove.button(
-                    "Remove",
-                    key=self.key((*path, i, "remove")),
-                    help=f"Take row {i + 1} away",
-                    type="tertiary",
-                    on_click=_row_removed,
-                    args=(path, i),
-                )
-                self.said((*path, i))
-                self.boxes(columns, (*path, i), 2)
+            self.said((*path, i))
+            *places, last = st.columns([1] * len(columns) + [0.75], vertical_alignment="bottom")
+            for column, place in zip(columns, places, strict=True):
+                with place:
+                    self.box(column, (*path, i, column.name))
+            last.button(
+                f"Remove row {i + 1}",
+                key=self.key((*path, i, "remove")),
+                type="tertiary",
+                on_click=_row_removed,
+                args=(path, i),
+            )
         with st.container(horizontal=True):
             st.button("Add a row", key=self.key((*path, "add")), on_click=session.put, args=((*path, count), {}))
             with st.popover("Paste a table"):
@@ -237,8 +239,8 @@ class Form:
                 _wrong(says)
 
 
-def _side_by_side(count: int) -> Sequence[Any]:
-    return st.columns(count, vertical_alignment="top") if count > 1 else [st.container()] * count
+def _side_by_side(count: int, aligned: str = "top") -> Sequence[Any]:
+    return st.columns(count, vertical_alignment=aligned) if count > 1 else [st.container()] * count
 
 
 def _wrong(says: str) -> None:

@@ -136,6 +136,9 @@ def sides(form: Form) -> None:
                 if part.shape == "kinds":
                     form.kinds(part, (side, part.name))
             form.boxes([part for part in fields.parts(stream) if part.shape == "box"], (side,), 2)
+    for part, path in form.tables:
+        st.markdown(f"**{plain(fields.words(engine.Case, form.raw, path[:2]))}: {part.title.lower()} of properties**")
+        form.rows(part, path)
 
 
 def _limits(form: Form) -> None:

@@ -8,7 +8,7 @@ from typing import Any
 import streamlit as st
 
 import engine
-from app import figures, session
+from app import fields, figures, session
 from app.display import plain
 from app.frame import blocks, plot, sentence, table
 
@@ -74,7 +74,7 @@ def listed(problems: Any, most: int = 12) -> None:
 
 def answer(said: tuple[Any, ...]) -> None:
     first, *rest = said
-    st.markdown(f"#### {plain(first)}")
+    st.markdown(f"##### {plain(first)}")
     blocks(rest, "answer")
 
 
@@ -91,14 +91,14 @@ def key_figures(found: session.Rated) -> None:
     """The fouled state in figures, each with its unit in the label and its interval below."""
     state, names = found.rating.fouled, found.case.exchanger.side_names
     doubt = found.intervals.get("fouled")
-    figures_ = [("Duty", "duty", state.duty, "heat_flow", 4)]
+    figures_ = [("Duty", "duty", state.duty, "heat_flow", 3)]
     figures_ += [(f"{names[s]} outlet", f"{s}.T_out", state.T_out[s], "temperature", 4) for s in engine.SIDES]
     figures_.append(("U in service", "U_dirty", state.U_dirty, "heat_transfer_coefficient", 3))
     figures_ += [(f"{names[s]} drop", f"{s}.dp", state.sides[s].dp, "pressure_difference", 3) for s in engine.SIDES]
     units = session.display()
     with st.container(horizontal=True):
         for label, key, value, quantity, digits in figures_:
-            span = units.span(doubt.of[key], quantity) if doubt and key in doubt.of else None
+            span = units.span(doubt.of[key], quantity, digits) if doubt and key in doubt.of else None
             st.metric(
                 f"{label}, {units.unit(quantity)}",
                 units.number(value, quantity, digits),
@@ -106,7 +106,7 @@ def key_figures(found: session.Rated) -> None:
                 delta_color="off",
                 delta_arrow="off",
                 border=True,
-                width=172,
+                width=162,
             )
         if state.margin is not None:
             clean = found.rating.clean.margin
@@ -117,7 +117,7 @@ def key_figures(found: session.Rated) -> None:
                 delta_color="off",
                 delta_arrow="off",
                 border=True,
-                width=172,
+                width=162,
             )
     st.caption("Fouled state. Below each figure: where it lies with a chance of 95 %.")
 
@@ -157,7 +157,12 @@ def one_finding(finding: Any) -> None:
 
 
 def _at(where: str) -> str:
-    return f", {where}" if where else ""
+    return f", {_words(where)}" if where else ""
+
+
+def _words(where: str) -> str:
+    said = fields.words(engine.Case, session.case(), fields.steps(where))
+    return f"{said[:1].lower()}{said[1:]}"
 
 
 # --- where it goes ----------------------------------------------------------------------------------------------------
