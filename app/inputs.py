@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 import streamlit as st
@@ -117,16 +117,17 @@ class Form:
     def kinds(self, part: Part, path: Path) -> None:
         """A choice between kinds of group, and the fields of the chosen one."""
         model = fields.kind_stated(part.models, self.stated(path))
-        offered = [m for m in part.models]
+        kinds = {fields.kind_of(m): m for m in part.models}
+        widget = self.key((*path, "kind"))
+        session.start(widget, fields.kind_of(model))
         st.selectbox(
             "Type" if "type" in model.model_fields else f"{part.title} given as",
-            offered,
-            offered.index(model),
-            format_func=_kind_title,
-            key=self.key((*path, "kind")),
+            list(kinds),
+            format_func=lambda kind: _kind_title(kinds[kind]),
+            key=widget,
             on_change=_switched,
-            args=(path, model, self.key((*path, "kind"))),
-        ) if len(offered) > 1 else None
+            args=(path, model, kinds, widget),
+        )
         if fields.is_named(model):
             self.box(fields.parts(model)[0], path, named=True)
         else:
@@ -185,21 +186,22 @@ class Form:
             value = next((o for o in declared.options if o.lower() == text.strip().lower()), text or part.default)
             if value not in options:
                 options.append(value)
-            index, shown = options.index(value), value
+            shown = value
+            session.start(widget, shown)
             st.selectbox(
                 declared.name,
                 options,
-                index,
                 format_func=lambda option: NOT_STATED if option is None else option.capitalize(),
                 **common,
                 args=(path, widget, declared, shown, within),
             )
         elif names:
             options = list(names) if not text or text in names else [text, *names]
+            session.start(widget, text or None)
             st.selectbox(
                 declared.name,
                 options,
-                options.index(text) if text else None,
+                index=None,
                 placeholder=f"{'needed: ' if needed else ''}choose, or type a name",
                 accept_new_options=True,
                 **common,
@@ -208,9 +210,9 @@ class Form:
         else:
             shown = self.display.typed(text, declared.quantities) if isinstance(declared, engine.Stated) else text
             draw = st.text_area if getattr(declared, "lines", False) else st.text_input
+            session.start(widget, shown)
             draw(
                 declared.name,
-                shown,
                 placeholder=self._placeholder(part, needed),
                 **common,
                 args=(path, widget, declared, shown, within),
@@ -316,8 +318,8 @@ def _edited(path: Path, widget: str, declared: Any, shown: Any, within: Path | N
             session.show_in(widget, session.display().typed(text, declared.quantities))
 
 
-def _switched(path: Path, model: type[engine.Input], widget: str) -> None:
-    new = session.typed(widget)
+def _switched(path: Path, model: type[engine.Input], kinds: Mapping[str, type[engine.Input]], widget: str) -> None:
+    new = kinds[session.typed(widget)]
     if new is not model:
         session.switch_kind(path, model, new)
 

@@ -30,7 +30,7 @@ def show() -> None:
         samples()
         saving()
         starting()
-    st.markdown(f"**{state_line(problems)}**")
+    st.markdown(f"**{state_line(problems)}** {plain(in_short())}")
     top = st.container()
     about(form)
     sides(form)
@@ -39,6 +39,19 @@ def show() -> None:
     form.fold("Limits of the equipment", [("limits",)], lambda: _limits(form))
     with top:
         unplaced(problems)
+
+
+def in_short() -> str:
+    """The answer in a few words, while the case is typed; empty while it is incomplete."""
+    found = session.rated(session.text_of(session.case()))
+    if found is None:
+        return ""
+    if not found.rating.states:
+        return f"But no answer: {found.rating.problem}."
+    units, clean, fouled = session.display(), found.rating.clean, found.rating.fouled
+    duties = [units.show(state.duty, "heat_flow", 3) for state in (fouled, clean)]
+    margin = f", margin of U {100 * fouled.margin:+.0f} %" if fouled.margin is not None else ""
+    return f"Duty fouled {duties[0]}, clean {duties[1]}{margin}."
 
 
 def opening() -> None:

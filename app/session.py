@@ -9,6 +9,7 @@ from __future__ import annotations
 import copy
 import json
 import logging
+import re
 import sqlite3
 from dataclasses import dataclass
 from typing import Any
@@ -21,6 +22,7 @@ from app.display import AS_TYPED, Display, display_of, plain
 from app.fields import Path
 
 ADDRESS_KEY = "draft"
+_DOUBT = re.compile(r"(±|\+/-|\+-).*$")
 log = logging.getLogger("countercheck")
 
 
@@ -179,6 +181,12 @@ def view() -> str:
     return f"@{st.session_state.document.get('units', AS_TYPED)}#{st.session_state.generation}"
 
 
+def start(widget: str, value: Any) -> None:
+    """What a widget shows when it is new."""
+    if widget not in st.session_state:
+        st.session_state[widget] = value
+
+
 def typed(widget: str) -> Any:
     return st.session_state[widget]
 
@@ -224,10 +232,11 @@ def end_trial() -> None:
 
 
 def trial(raw: dict[str, Any]) -> dict[str, Any]:
-    """A case with the entries of the trial in place of its own."""
+    """A case with the entries of the trial in place of its own. A stated ± stays unless another is typed."""
     for place, text in whatif().items():
-        side, name = place.split(".")
-        raw = fields.put(raw, (side, name), text)
+        path = fields.steps(place)
+        doubt = _DOUBT.search(str(fields.get(raw, path)))
+        raw = fields.put(raw, path, text if doubt is None or _DOUBT.search(text) else f"{text} {doubt[0]}")
     return raw
 
 
