@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
-from engine.exchangers.layout import Arrangement, Layout, Through
+from engine.exchangers.layout import Arrangement, Ints, Layout, Through
 
 Array = NDArray[np.float64]
 
@@ -143,6 +143,113 @@ def _shell(layout: Layout, UA: Array, C_inside: Array, C_outside: Array) -> Temp
     )
 
 
+def _to_and_fro(layout: Layout, cell: Ints, UA: Array, C_inside: Array, C_outside: Array) -> Temperatures:
+    """Solution of one unit with tube passes to and fro along one row of bays, for inlets 1 (inside) and 0 (outside).
+
+    The scheme of `_shell` in bays halved `layout.halvings` times, without its matrix. A bay is described by what
+    leaves it for what enters it, S[out, in] over the outside stream, the passes that run with it and those that run
+    against it. All S are shares of a mixture, so joining bays loses no digit however long they are. Rows of bays are
+    joined by eliminating the streams between them (Redheffer's star product, J. Math. Phys. 41 (1962) 1-41).
+    """
+    with_outside = layout.bay[[path[0] for path in layout.inside_paths]] == 0
+    streams = np.concatenate([[-1], np.flatnonzero(with_outside), np.flatnonzero(~with_outside)])
+    order = cell[streams[1:]]
+    n_with, place = int(with_outside.sum()) + 1, np.argsort(streams[1:]) + 1
+
+    # Arrays by stream, bay and point.
+    C_bay = C_outside.T[cell[0]]
+    UA_cell, ntu = UA.T[order], (UA / C_inside).T[order]
+    parts = 2.0**layout.halvings
+    lead = _lead(UA_cell.sum(axis=0) / C_bay / parts)
+    gain = UA_cell / C_bay / parts * _phi(ntu / parts)
+    swing = -np.expm1(-ntu / parts)
+    taken = gain / (1 + gain.sum(axis=0) * (1 - lead))
+    mean = np.concatenate([1 - (taken.sum(axis=0) * (1 - lead))[None], taken * (1 - lead)])
+    bay = np.concatenate([np.empty_like(mean)[None], swing[:, None] * mean])
+    bay[0, 0], bay[0, 1:] = 1 - taken.sum(axis=0), taken
+    for k in range(1, len(bay)):
+        bay[k, k] += 1 - swing[k - 1]
+    for _ in range(layout.halvings):
+        bay = _joined(bay, bay, n_with)[0]
+
+    # Bay after bay, from what enters the whole row at both ends.
+    row, rows_before, returns = bay[:, :, 0], [], [bay[n_with:, :, 0]]
+    for j in range(1, bay.shape[2]):
+        rows_before.append(row[:n_with])
+        row, between = _joined(row, bay[:, :, j], n_with)
+        returns.append(between)
+    # Each pass is fed by the one before it; the outside stream enters at 0.
+    passes = len(place)
+    turns = np.tile(np.eye(passes), (len(UA), 1, 1))
+    turns[:, 1:] -= row[np.ix_(place[:-1], place)].transpose(2, 0, 1)
+    fed = np.linalg.solve(turns, np.eye(passes)[:, :1])[..., 0].T.astype(float)
+    met = np.concatenate([np.zeros_like(fed[:1]), fed[streams[1:]]])
+    T_with, T_against = [_product(row[:n_with], met)], [met[n_with:]]
+    inlets = met[:n_with]
+    for back in returns[::-1]:
+        T_against.append(_product(back, np.concatenate([inlets, T_against[-1]])))
+        if rows_before:
+            T_with.append(_product(rows_before.pop(), np.concatenate([inlets, T_against[-1]])))
+    T = np.concatenate([np.array(x[::-1]).swapaxes(0, 1) for x in ([*T_with, inlets], T_against)])
+
+    first, last = T[:, :-1], T[:, 1:]
+    entry, exit_ = (np.concatenate([a[:n_with], b[n_with:]]) for a, b in ((first, last), (last, first)))
+    outside_mean = exit_[0] - _lead(UA_cell.sum(axis=0) / C_bay) * (exit_[0] - entry[0])
+    small = ntu < 1e-6
+    difference = np.where(
+        small, (entry[1:] - outside_mean) * _phi(ntu), (entry[1:] - exit_[1:]) / np.where(small, 1.0, ntu)
+    )
+
+    def by_cell(x: Array) -> Array:
+        placed = np.empty_like(UA)
+        placed[:, order] = np.broadcast_to(x, order.shape + x.shape[-1:]).transpose(2, 0, 1)
+        return placed
+
+    return Temperatures(
+        inside_entry=by_cell(entry[1:]),
+        inside_exit=by_cell(exit_[1:]),
+        inside_mean=by_cell(outside_mean + difference),
+        outside_entry=by_cell(entry[0]),
+        outside_exit=by_cell(exit_[0]),
+        outside_mean=by_cell(outside_mean),
+        heat=by_cell(UA_cell * difference),
+        inside_outlet=_product(row[place[-1:]], met)[0],
+        outside_outlet=exit_[0, -1],
+    )
+
+
+def _joined(first: Array, second: Array, n_with: int) -> tuple[Array, Array]:
+    """S of two rows of bays one after the other, and what runs against the outside stream between them.
+
+    Both for all that enters at the two far ends; `n_with` streams run with the outside stream, itself included.
+    """
+    against = len(first) - n_with
+    between = np.concatenate([_product(second[n_with:, :n_with], first[:n_with, :n_with]), second[n_with:, n_with:]], 1)
+    left = -_product(second[n_with:, :n_with], first[:n_with, n_with:])
+    for k in range(against):
+        left[k, k] += 1
+    for k in range(against):
+        between[k] = between[k] / left[k, k]
+        left[k] = left[k] / left[k, k]
+        for i in range(against):
+            if i != k:
+                between[i] = between[i] - left[i, k] * between[k]
+                left[i] = left[i] - left[i, k] * left[k]
+    onward = _product(first[:n_with, n_with:], between)
+    onward[:, :n_with] += first[:n_with, :n_with]
+    out_with = _product(second[:n_with, :n_with], onward)
+    out_with[:, n_with:] += second[:n_with, n_with:]
+    back = _product(first[n_with:, n_with:], between)
+    back[:, :n_with] += first[n_with:, :n_with]
+    return np.concatenate([out_with, back]), between
+
+
+def _product(a: Array, b: Array) -> Array:
+    """Matrix products along the first two axes, or of matrices with vectors, for every element of the others."""
+    found: Array = np.einsum("ij...,jk...->ik..." if b.ndim == a.ndim else "ij...,j...->i...", a, b)
+    return found
+
+
 def _mixed(flows: Array, streams: Array) -> Array:
     """Mean of streams along the first axis, weighted by their flows."""
     share = flows / flows.sum()
@@ -203,8 +310,9 @@ def temperatures(
     for a fluid at constant temperature. T_in_inside, T_in_outside: (P,) inlets [K]. All broadcast.
 
     A chain is exact for any number of cells. In other layouts the inside fluid runs an exponential towards the mean
-    temperature of the bay: second order in the bay's length. The cost there grows with the cube of the bays of a unit,
-    the memory with P times its cells times its bays; units in series cost no more than as many points.
+    temperature of the bay: second order in the bay's length. Where the passes run to and fro along one row of bays the
+    cost grows with the bays and the cube of the passes, elsewhere with the cube of the bays of a unit and the memory
+    with P times its cells times its bays; units in series cost no more than as many points.
     """
     T_i, T_o = np.asarray(T_in_inside, dtype=float), np.asarray(T_in_outside, dtype=float)
     cells = [np.asarray(x, dtype=float) for x in (UA, C_inside, C_outside)]
@@ -215,7 +323,12 @@ def temperatures(
         return np.broadcast_to(x, shape).reshape(-1, len(layout.bay))
 
     rates = by_unit(cells[0]), by_unit(cells[1] * layout.inside_share), by_unit(cells[2] * layout.outside_share)
-    unit = _chain(layout.chain, *rates) if layout.chain else _shell(layout, *rates)
+    if layout.chain:
+        unit = _chain(layout.chain, *rates)
+    elif layout.to_and_fro is not None:
+        unit = _to_and_fro(layout, layout.to_and_fro, *rates)
+    else:
+        unit = _shell(layout, *rates)
 
     inside_exit, outside_exit = (x.reshape(*points, -1) for x in (unit.inside_outlet, unit.outside_outlet))
     inside_met, outside_met = _met_by_units(layout, 1 - inside_exit, outside_exit)

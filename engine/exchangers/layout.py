@@ -13,7 +13,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 from functools import cached_property
-from typing import Literal
+from typing import Any, Literal
 
 import numpy as np
 from numpy.typing import ArrayLike, NDArray
@@ -22,6 +22,10 @@ Floats = NDArray[np.float64]
 Ints = NDArray[np.intp]
 Arrangement = Literal["counter", "co-current"]
 Through = Literal["in turn", "split"]
+
+
+def _same(a: NDArray[Any], b: NDArray[Any]) -> bool:
+    return np.array_equal(a, b)
 
 
 def in_turn(n: int) -> Floats:
@@ -49,6 +53,8 @@ class Layout:
     outside_links: Floats
     chain: Arrangement | None = None
     """Set where every cell is a bay of its own and the two fluids meet the cells in opposite or in the same order."""
+    halvings: int = 0
+    """How often the march halves each bay of one row to and fro (see `to_and_fro`), at the cost of its films once."""
     units: int = 1
     inside_units: Through = "in turn"
     """Whether the inside fluid visits the units in turn or is split equally over them."""
@@ -82,6 +88,19 @@ class Layout:
     @property
     def n_cells(self) -> int:
         return self.units * len(self.bay)
+
+    @cached_property
+    def to_and_fro(self) -> Ints | None:
+        """(passes, bays) the cell of each inside path in each bay, where the paths follow one another and each runs the
+        whole row of bays that the outside fluid visits in turn; None in any other layout."""
+        passes, bays = len(self.inside_paths), len(self.outside_links) - 1
+        if not (_same(self.outside_links, in_turn(bays)) and _same(self.inside_links, in_turn(passes))):
+            return None
+        met = [self.bay[path] for path in self.inside_paths]
+        row = np.arange(bays)
+        if not all(_same(bay, row) or _same(bay, row[::-1]) for bay in met):
+            return None
+        return np.array([path[np.argsort(bay)] for path, bay in zip(self.inside_paths, met, strict=True)])
 
     @cached_property
     def area_share(self) -> Floats:
@@ -206,16 +225,21 @@ def _branches(n_branches: int, n: int) -> Floats:
 
 
 def shell_pass(
-    n_bays: int, tube_passes: int, first_pass: Arrangement = "counter", lengths: ArrayLike | None = None
+    n_bays: int,
+    tube_passes: int,
+    first_pass: Arrangement = "counter",
+    lengths: ArrayLike | None = None,
+    halvings: int = 0,
 ) -> Layout:
     """TEMA E: one shell pass, any number of tube passes; relative `lengths` of the bays from the shell inlet on."""
-    return _shell(
+    one = _shell(
         [[np.arange(n_bays)]] * tube_passes,
         _lengths(n_bays, lengths),
         in_turn(n_bays),
         first_from_near=first_pass == "co-current",
         chain=first_pass if tube_passes == 1 else None,
     )
+    return replace(one, halvings=halvings)
 
 
 def f_shell(

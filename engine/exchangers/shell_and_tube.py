@@ -415,7 +415,11 @@ class ShellAndTube(Input):
     # --- cells ------------------------------------------------------------------------------------------------------
 
     def cells(self, fineness: int = 1) -> Cells:
-        """The baffle compartments, cut or joined to as many bays as the temperatures need; `fineness` multiplies."""
+        """Equal bays along the shell, as many as the temperatures need; `fineness` multiplies their number.
+
+        They are no baffle compartments: the film of Bell-Delaware is that of the whole shell, end spacings included, so
+        what differs from bay to bay is the temperature only.
+        """
         return self._cells(self._layout(fineness))
 
     def whole(self, fineness: int = 1) -> Cells:
@@ -438,37 +442,19 @@ class ShellAndTube(Input):
             n = 8 * fineness
             unit = layout.x_shell(n, passes, first, rows=max(1, n // passes))
         else:
-            paths = self.shell_type.paths
-            bays = self._bays(-(-self._bays_needed // paths) * fineness)
-            n = paths * len(bays)
+            # A multiple of eight, so that the halves of every split shell hold whole bays.
+            n = (24 if passes == 1 else 32) * fineness
             if letter == "E":
-                unit = layout.shell_pass(n, passes, first, bays)
+                # For the films 12 bays are plenty; the temperatures are those of bays a quarter as long.
+                n = n if passes == 1 else 12 * fineness
+                unit = layout.shell_pass(n, passes, first, halvings=2)
             elif letter == "F":
-                unit = layout.f_shell(n, passes, first, float(self.long_baffle_leakage), bays)
+                unit = layout.f_shell(n // 2, passes, first, float(self.long_baffle_leakage))
+            elif letter == "J":
+                unit = layout.j_shell(n, passes, 1 if self.shell_inlets == 1 else 2)
             else:
-                # The path begins where the fluid enters: at mid-length, or at one and at three quarters of it.
-                along = np.tile(np.concatenate([bays[::-1], bays]), paths // 2)
-                if letter == "J":
-                    unit = layout.j_shell(n, passes, 1 if self.shell_inlets == 1 else 2, along)
-                else:
-                    split = layout.g_shell if letter == "G" else layout.h_shell
-                    unit = split(n, passes, first, along)
+                unit = (layout.g_shell if letter == "G" else layout.h_shell)(n // 2, passes, first)
         return layout.in_series(unit, self.shells_in_series)
-
-    @property
-    def _bays_needed(self) -> int:
-        """Along the shell, for an error of the march below 1e-4 in effectiveness; a plain chain has none."""
-        return 24 if self.tube_passes == 1 else 28
-
-    def _bays(self, needed: int) -> Array:
-        """Lengths [m] of about so many bays along one path, each a part of a compartment or several of them."""
-        count, inlet, outlet = self.path_spacings
-        compartments = np.array([inlet, *[float(self.baffle_spacing or 0.0)] * (max(1, round(count)) - 1), outlet])
-        if len(compartments) < needed:
-            cut = -(-needed // len(compartments))
-            return np.repeat(compartments / cut, cut)
-        joined = len(compartments) // needed
-        return np.add.reduceat(compartments, np.arange(0, len(compartments), joined))
 
     # --- films ------------------------------------------------------------------------------------------------------
 
