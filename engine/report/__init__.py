@@ -1,0 +1,8 @@
+"""What is handed over: sections built once, and the PDF and the plain text drawn from them."""
+
+from engine.report.blocks import Section
+from engine.report.pdf import report_pdf
+from engine.report.sections import sections
+from engine.report.text import report_text
+
+__all__ = ["Section", "report_pdf", "report_text", "sections"]

@@ -1,0 +1,164 @@
+"""The exchanger and what was typed about it: a scheme, the inputs with their origin, and what was derived from them."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator, Mapping, Sequence
+from typing import Any
+
+from engine.case import Case, ConstantFluid, Stream, TableFluid
+from engine.correlations import Source
+from engine.exchangers.double_pipe import DoublePipe
+from engine.exchangers.shell_and_tube import ShellAndTube
+from engine.report.blocks import Block, DoublePipeScheme, Flow, ShellScheme, Table
+from engine.report.words import Words, capital, fluid_name, listed
+from engine.stated import SIDES, Choice, Count, Input, Side, Stated
+
+NOT_STATED = "not stated"
+WIDTHS = (1.6, 2, 2.4)
+
+
+def scheme(case: Case, words: Words, T_out: Mapping[Side, str]) -> Block:
+    """The exchanger as it is piped, with its terminal temperatures; `T_out` in words."""
+    exchanger, flows = case.exchanger, {side: _flow(case, words, side, T_out[side]) for side in SIDES}
+    ends = " ".join(
+        f"{flow.name} ({'hot' if flow.hot else 'cold'}): {flow.fluid}, {flow.flow}, {flow.T_in} to {flow.T_out}."
+        for flow in (flows[case.hot], flows[case.cold])
+    )
+    if isinstance(exchanger, ShellAndTube):
+        return ShellScheme(
+            letter=exchanger.shell_letter,
+            first_pass_counter=exchanger.first_pass == "counter",
+            tube_passes=exchanger.tube_passes,
+            u_tubes=exchanger.u_tubes,
+            baffles=0 if exchanger.shell_letter == "X" else exchanger.baffle_count,
+            shells_in_series=exchanger.shells_in_series,
+            shells_in_parallel=exchanger.shells_in_parallel,
+            flows=flows,
+            alt=f"{exchanger.title} {exchanger.tema.upper()}, {exchanger.shell_type.name}; {exchanger.tubes} tubes "
+            f"in {_counted(exchanger.tube_passes, 'pass', 'passes')} of {words.typed(exchanger.tube_length)}; "
+            f"{_counted(exchanger.shells_in_series, 'shell', 'shells')} in series, "
+            f"{_counted(exchanger.shells_in_parallel, 'train', 'trains')}. {ends}",
+        )
+    legs = _counted(exchanger.legs_in_series, "leg", "legs in series")
+    banks = ""
+    if exchanger.banks > 1:
+        ways = [f"{flow.name.lower()} {'split over them' if flow.split else 'in turn'}" for flow in flows.values()]
+        banks = f" in each of {exchanger.banks} banks, {listed(ways)}"
+    return DoublePipeScheme(
+        counter=exchanger.arrangement == "counter",
+        legs=exchanger.legs_in_series,
+        banks=exchanger.banks,
+        flows=flows,
+        alt=f"{exchanger.title}, {exchanger.arrangement}; {legs} of {words.typed(exchanger.leg_length)}{banks}. {ends}",
+    )
+
+
+def _counted(n: int, one: str, many: str) -> str:
+    return f"{n} {one if n == 1 else many}"
+
+
+def _flow(case: Case, words: Words, side: Side, T_out: str) -> Flow:
+    flow, exchanger = case.flow(side), case.exchanger
+    return Flow(
+        name=exchanger.side_names[side],
+        fluid=fluid_name(case.stream(side)),
+        hot=side == case.hot,
+        flow=words.show(flow, "mass_flow") if flow else "flow as condensed",
+        T_in=words.show(case.T_in(side), "temperature"),
+        T_out=T_out,
+        split=isinstance(exchanger, DoublePipe) and exchanger.branches(side) > 1,
+    )
+
+
+def inputs(case: Case, words: Words, cite: Callable[[Source], str]) -> Iterator[Block]:
+    """All that was typed, as it was typed, with what was assumed in its place where nothing was.
+
+    `cite` gives the number of a source.
+    """
+    names = case.exchanger.side_names
+    yield Table(
+        header=("Streams as typed", *(names[side] for side in SIDES)),
+        rows=tuple(_stream_rows(case, words)),
+        widths=(1.3, 2, 2),
+    )
+    for side in SIDES:
+        yield from _typed_properties(case.stream(side), words)
+    atmosphere = Case.declared()["atmosphere"].name
+    general = [row for row in _rows(case, words) if row[0] == atmosphere]
+    yield Table(
+        header=(f"{case.exchanger.title} as typed", "Value", "Origin"),
+        rows=(*_rows(case.exchanger, words), *general, *_derived(case, words, cite)),
+        widths=WIDTHS,
+    )
+    limits = tuple(_rows(case.limits, words))
+    if limits:
+        yield Table(header=("Limits as typed", "Value", "Origin"), rows=limits, widths=WIDTHS)
+    else:
+        yield "No design pressure, design temperature or other limit of the equipment is stated."
+    if case.notes.strip():
+        yield f"Notes: {case.notes.strip()}"
+
+
+def _stream_rows(case: Case, words: Words) -> Iterator[tuple[str, ...]]:
+    streams = [case.stream(side) for side in SIDES]
+    yield ("Fluid", *(fluid_name(stream) for stream in streams))
+    for name, declared in Stream.declared().items():
+        yield (declared.name, *(_stream_cell(stream, name, declared, words) for stream in streams))
+    fluids = [case.fluid(side) for side in SIDES]
+    yield ("Phase; property data", *(f"{fluid.phase}; {fluid.origin}" for fluid in fluids))
+    yield ("Mass flow", *(words.show(case.flow(side), "mass_flow") for side in SIDES))
+    yield ("Inlet pressure, absolute", *(words.show(case.p_in(side), "pressure_absolute") for side in SIDES))
+
+
+def _stream_cell(stream: Stream, name: str, declared: Any, words: Words) -> str:
+    value = getattr(stream, name)
+    if value is None:
+        return NOT_STATED
+    text = words.typed(value, declared)
+    return text if name in stream.model_fields_set else f"{text}, assumed: {declared.assumed}"
+
+
+def _typed_properties(stream: Stream, words: Words) -> Iterator[Block]:
+    fluid = stream.fluid
+    if isinstance(fluid, TableFluid):
+        rows: Sequence[Input] = fluid.table
+    elif isinstance(fluid, ConstantFluid):
+        rows = [fluid.constant]
+    else:
+        return
+    declared = type(rows[0]).declared()
+    yield Table(
+        header=tuple(item.name for item in declared.values()),
+        rows=tuple(tuple(words.typed(getattr(row, name), item) for name, item in declared.items()) for row in rows),
+        title=f"Properties of {fluid.name} as typed",
+    )
+
+
+def _rows(part: Input, words: Words) -> Iterator[tuple[str, str, str]]:
+    """What is stated or assumed in a part of the input: trade name, value, origin. A group of keys is one row."""
+    declared = type(part).declared()
+    for name in type(part).model_fields:
+        value, item = getattr(part, name), declared.get(name)
+        if isinstance(value, Input):
+            inner = list(_rows(value, words))
+            if inner:
+                text = ", ".join(f"{label.lower()} {cell}" for label, cell, _ in inner)
+                origin = "; ".join(dict.fromkeys(row[2] for row in inner)).replace("; assumed:", ";")
+                yield _spelt(name), text, origin
+        elif item is None or value is None:
+            continue
+        elif name in part.model_fields_set:
+            yield item.name, words.typed(value, item), "stated"
+        elif isinstance(item, (Stated, Count, Choice)) and item.assumed:
+            yield item.name, words.typed(value, item), f"assumed: {item.assumed}"
+
+
+def _derived(case: Case, words: Words, cite: Callable[[Source], str]) -> Iterator[tuple[str, str, str]]:
+    declared = type(case.exchanger).declared()
+    for name, text, source in case.exchanger.derived():
+        yield declared[name].name if name in declared else _spelt(name), text, f"derived {cite(source)}"
+    yield "Heat-transfer area", f"{words.show(case.exchanger.area, 'area')}, outside, bare", "derived"
+
+
+def _spelt(name: str) -> str:
+    return capital(name.replace("_", " "))
