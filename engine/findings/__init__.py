@@ -13,6 +13,7 @@ from typing import Any, Literal
 
 from engine import units
 from engine.case import Case
+from engine.exchangers.shell_and_tube import ShellAndTube
 from engine.fluids import Fluid
 from engine.rating import Rating, State
 from engine.stated import SIDES, Side
@@ -114,6 +115,10 @@ class Subject:
 
     def phase(self, side: Side) -> Literal["liquid", "gas", "condensing"]:
         return "condensing" if self.case.stream(side).condenses else self.fluid(side).phase
+
+    def is_shell(self, side: Side) -> bool:
+        """Whether the side flows across a bank of tubes, not along a duct."""
+        return side == "outside" and isinstance(self.case.exchanger, ShellAndTube)
 
     def p_out(self, side: Side) -> float:
         """The lower outlet pressure of both states [Pa]. Missing where the drop leaves none."""

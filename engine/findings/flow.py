@@ -7,8 +7,9 @@ from collections.abc import Iterator
 import numpy as np
 
 from engine.exchangers import standard_sizes
+from engine.exchangers.double_pipe import DoublePipe
 from engine.exchangers.standard_sizes import Usual
-from engine.findings import COMMON_PRACTICE, Finding, Subject, percent, rule, span
+from engine.findings import COMMON_PRACTICE, Finding, Missing, Subject, percent, rule, span
 from engine.findings.validity import OWN
 from engine.stated import Side
 
@@ -56,7 +57,7 @@ def drop_over_allowance(s: Subject, side: Side) -> Iterator[Finding]:
         where=path,
         says=f"The drop of the {s.name(side)} is {shown}, {'over' if over else 'under'} the allowed {limit}.{doubt}",
         because=because,
-        do="Find out whether pump or header can give it; else less flow, or more branches in parallel."
+        do="Find out whether pump or header can give it; else less flow, or more pipes or tubes in parallel."
         if over
         else "Measure the drop and calibrate with it before relying on this allowance.",
     )
@@ -147,7 +148,7 @@ def gas_near_sound(s: Subject, side: Side) -> Iterator[Finding]:
                 "velocity at the outlet": s.velocity(v),
                 "speed of sound": s.velocity(sound),
             },
-            do="Check flow, pressure and bore; use more branches in parallel.",
+            do="Check flow, pressure and bore; use more pipes or tubes in parallel.",
         )
 
 
@@ -161,14 +162,17 @@ def gas_near_sound(s: Subject, side: Side) -> Iterator[Finding]:
 )
 def over_velocity_limit(s: Subject, side: Side) -> Iterator[Finding]:
     path = f"limits.{side}_velocity_max"
-    limit, v = float(s.stated(path)), s.fouled.sides[side].velocity
+    limit = float(s.stated(path))
+    if s.phase(side) == "condensing":
+        raise Missing(f"one velocity of the {s.name(side)}: it condenses on its way")
+    v = s.fouled.sides[side].velocity
     if v > limit:
         yield s.finding(
             "act",
             where=path,
             says=f"The {s.name(side)} flows at {s.velocity(v)}, over its limit of {s.velocity(limit)}.",
             because={"velocity": s.velocity(v), "limit": s.velocity(limit)},
-            do="Cut the flow or use more branches in parallel; the limit guards against erosion or vibration.",
+            do="Cut the flow or use more pipes or tubes in parallel; the limit guards against erosion or vibration.",
         )
 
 
@@ -194,9 +198,9 @@ def unusual_velocity(s: Subject, side: Side) -> Iterator[Finding]:
         says=f"The {s.name(side)} flows at {s.velocity(v)}; usual for {service} is "
         f"{span(s.velocity, usual.low, usual.high)}.",
         because={"velocity": s.velocity(v), "usual": span(s.velocity, usual.low, usual.high)},
-        do="Expect deposits and a poor film; fewer branches in parallel or more flow help."
+        do="Expect deposits and a poor film; fewer pipes or tubes in parallel or more flow help."
         if slow
-        else "Check erosion, vibration and the drop; more branches in parallel or less flow help.",
+        else "Check erosion, vibration and the drop; more pipes or tubes in parallel or less flow help.",
         source=str(usual.source),
     )
 
@@ -210,7 +214,7 @@ def _service(s: Subject, side: Side) -> str:
             if p < VACUUM
             else ("vapour at atmospheric pressure" if p < HIGH_PRESSURE else "vapour at high pressure")
         )
-    if side == "outside" and s.name(side) == "shell":
+    if s.is_shell(side):
         return "shell-side liquid"
     water = "water" in s.fluid(side).name.lower().split() and side == s.case.cold
     return "tube-side cooling water" if water else "tube-side process liquid"
@@ -239,7 +243,7 @@ def laminar_flow(s: Subject, side: Side) -> Iterator[Finding]:
     decides = film > 0.5
     helps = "inserts that stir the core, a warmer and so thinner liquid, more flow"
     if _branches(s, side) > 1:
-        helps += ", fewer branches in parallel"
+        helps += ", fewer pipes or tubes in parallel"
     yield s.finding(
         "watch" if decides else "note",
         says=f"The {s.name(side)} flows laminar in {percent(share)} of the cells, and its film is {percent(film)} of "
@@ -256,9 +260,12 @@ def laminar_flow(s: Subject, side: Side) -> Iterator[Finding]:
 
 
 def _branches(s: Subject, side: Side) -> int:
-    """Pipes in parallel that a side is split over; 1 where the exchanger's type has no such split."""
-    branches = getattr(s.case.exchanger, "branches", None)
-    return branches(side) if branches else 1
+    """Pipes or tubes in parallel that a side is split over."""
+    exchanger = s.case.exchanger
+    if isinstance(exchanger, DoublePipe):
+        return exchanger.branches(side)
+    of_a_shell = 1.0 if s.is_shell(side) else float(exchanger.tubes_per_pass(np.asarray(exchanger.tubes_plugged)))
+    return round(of_a_shell) * exchanger.shells_in_parallel
 
 
 @rule(
@@ -307,7 +314,7 @@ def maldistribution(s: Subject, side: Side) -> Iterator[Finding]:
             else ", where small differences between the branches shift their flows."
         ),
         because={"branches": str(n), "laminar share of the cells": percent(share)},
-        do="Compare the outlet temperatures of the branches.",
+        do="Compare the outlet temperatures of the branches where they can be read.",
     )
 
 

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from typing import Any
 
 import numpy as np
 
 from engine.case import absolute
+from engine.correlations import Array
+from engine.exchangers.shell_and_tube import ShellAndTube
 from engine.findings import COMMON_PRACTICE, Finding, Missing, Subject, percent, rule, span
 from engine.findings.validity import OWN, capacities
 from engine.rating import State
@@ -19,6 +20,7 @@ LARGE_MARGIN = 0.25
 CLOSE_APPROACH = 3.0
 OVERSHOOT = 0.05
 """Of the stated temperature change of a side."""
+LOW_F = 0.8
 NEAR_CEILING = 0.95
 FOULING_SHARE = 0.5
 """Of the whole resistance."""
@@ -30,6 +32,9 @@ BLOCKED_IN = 30.0
 """From the cold to the hot inlet [K]: enough to raise the pressure of a liquid that is shut in by hundreds of bar."""
 SHOCK = 100.0
 """Between the inlets [K]."""
+EXPANSION = (30.0, 50.0)
+"""Between mean metal temperatures of tubes and shell: from where to note and from where to watch [K]."""
+FIXED_HEADS = "LMN"
 
 
 # --- duty -------------------------------------------------------------------------------------------------------------
@@ -217,27 +222,28 @@ def outlet_overshoots(s: Subject, side: Side) -> Iterator[Finding]:
     source=COMMON_PRACTICE,
 )
 def close_approach(s: Subject) -> Iterator[Finding]:
-    for name, state in s.states.items():
-        apart, i, x = _differences(s, state)
-        if 0 < apart[i] < CLOSE_APPROACH:
-            yield s.finding(
-                "watch",
-                says=f"{name.capitalize()}, the fluids come within {s.dT(apart[i])} of each "
-                "other: small errors of flow or temperature move the outlets more than fouling does.",
-                because={
-                    "smallest difference": s.dT(apart[i]),
-                    "where": f"{percent(x[i])} of the area from the inlet of the {s.name('inside')}",
-                },
-                do="Expect little from cleaning or more area here; more comes from flow.",
-            )
-
-
-def _differences(s: Subject, state: State) -> tuple[Any, int, Any]:
-    """Hot less cold temperature along the profile, the index of the smallest, and the area fractions."""
-    profile = state.profile
+    name = min(s.states, key=lambda each: float(np.min(_differences(s, s.states[each]))))
+    profile, apart = s.states[name].profile, _differences(s, s.states[name])
     assert profile is not None
-    apart = profile.T[s.case.hot] - profile.T[s.case.cold]
-    return apart, int(np.argmin(apart)), profile.x
+    i = int(np.argmin(apart))
+    if 0 < apart[i] < CLOSE_APPROACH:
+        within = s.dT(max(apart[i], 0.01))
+        yield s.finding(
+            "watch",
+            says=f"The fluids come within {within} of each other ({name} state): small errors of flow or temperature "
+            "move the outlets more than fouling does.",
+            because={
+                "smallest difference": f"within {within}",
+                "where": f"{percent(profile.x[i])} of the area from the inlet of the {s.name('inside')}",
+            },
+            do="Expect little from cleaning or more area here; more comes from flow.",
+        )
+
+
+def _differences(s: Subject, state: State) -> Array:
+    """Hot less cold temperature along the profile [K]."""
+    assert state.profile is not None
+    return state.profile.T[s.case.hot] - state.profile.T[s.case.cold]
 
 
 @rule(
@@ -248,18 +254,37 @@ def _differences(s: Subject, state: State) -> tuple[Any, int, Any]:
     source="second law",
 )
 def reversed_heat_flow(s: Subject) -> Iterator[Finding]:
-    apart, i, x = _differences(s, s.fouled)
+    apart = _differences(s, s.fouled)
     share = float(np.mean(apart[1:-1] < 0))
     if share > 0:
         yield s.finding(
             "watch",
             says=f"In {percent(share)} of the cells the cold fluid is warmer than the hot one and gives heat back: "
             "part of the area works against the duty.",
-            because={
-                "largest reversal": s.dT(-apart[i]),
-                "where": f"{percent(x[i])} of the area from the inlet of the {s.name('inside')}",
-            },
+            because={"share of the cells": percent(share), "largest reversal": s.dT(-apart.min())},
             do="Consider shells in series or fewer passes: more area of this kind lowers the duty.",
+        )
+
+
+@rule(
+    "low-correction-factor",
+    title=f"F is under {LOW_F:g}",
+    grades=("watch",),
+    needs="a rated case",
+    source=f"F of 0.75 to 0.8 as the least ({COMMON_PRACTICE})",
+)
+def low_correction_factor(s: Subject) -> Iterator[Finding]:
+    F = s.fouled.F
+    if F < LOW_F:
+        yield s.finding(
+            "watch",
+            says=f"F is {F:.3f}: the arrangement wastes {percent(1 - F)} of the counter-current driving force, and a "
+            "small change of temperatures may leave none.",
+            because={
+                "F": f"{F:.3f}, against {LOW_F:g}",
+                **{f"{s.name(side)}, outlet": s.T(s.fouled.T_out[side]) for side in SIDES},
+            },
+            do="Consider shells in series or another arrangement before adding area.",
         )
 
 
@@ -572,6 +597,35 @@ def thermal_shock(s: Subject) -> Iterator[Finding]:
             "flow fails.",
             because={f"{s.name(side)}, inlet": s.T(s.case.T_in(side)) for side in SIDES},
             do="Have start-up and loss of one flow reviewed for thermal shock and differential expansion.",
+        )
+
+
+@rule(
+    "differential-expansion",
+    title=f"Fixed tubesheets, metal of tubes and shell over {EXPANSION[0]:g} K apart",
+    grades=("watch", "note"),
+    needs="a rated case",
+    source=f"{EXPANSION[0]:g} and {EXPANSION[1]:g} K ({COMMON_PRACTICE})",
+)
+def differential_expansion(s: Subject) -> Iterator[Finding]:
+    exchanger = s.case.exchanger
+    if not isinstance(exchanger, ShellAndTube) or exchanger.rear_letter not in FIXED_HEADS:
+        return
+    apart: dict[str, float] = {}
+    for name, state in s.states.items():
+        assert state.profile is not None
+        shell = float(state.profile.T["outside"][1:-1].mean())
+        tubes = float(np.mean([state.profile.wall_T[side][1:-1] for side in SIDES]))
+        apart[f"in the {name} state"] = abs(tubes - shell)
+        # Tubes take the temperature of their fluid long before the shell follows.
+        apart[f"when the flow in the shell fails ({name})"] = abs(s.case.T_in("inside") - shell)
+    worst = max(apart, key=lambda when: apart[when])
+    if apart[worst] > EXPANSION[0]:
+        yield s.finding(
+            "watch" if apart[worst] > EXPANSION[1] else "note",
+            says=f"Between fixed tubesheets the mean metal of tubes and shell is {s.dT(apart[worst])} apart {worst}.",
+            because={f"tubes against shell, {when}": s.dT(x) for when, x in apart.items()},
+            do="Check the expansion joint or the tube-to-tubesheet joints for this difference, start-up included.",
         )
 
 

@@ -24,6 +24,8 @@ UNIFORM_FLUX_CR = 0.8
 WIDE = 0.3
 """Of U, from its value to an end of the 95 % interval."""
 
+STATE_IT = "State it where it is known."
+
 ARGUMENTS = {
     "d_over_L": "diameter over length",
     "d_h_over_L": "hydraulic diameter over length",
@@ -91,11 +93,12 @@ def outside_published_range(s: Subject, side: Side) -> Iterator[Finding]:
     for e in excursions.values():
         argument = ARGUMENTS.get(e.limit.argument, e.limit.argument)
         relation = e.correlation.replace("_", " ")
-        ends = f"{e.lowest:.4g}" if e.lowest == e.highest else f"{e.lowest:.4g} to {e.highest:.4g}"
+        low, high = (s.show(x, "dimensionless") for x in (e.lowest, e.highest))
+        ends = low if low == high else f"{low} to {high}"
         published = str(e.limit).removeprefix(f"{e.limit.argument} ")
         yield s.finding(
             "act" if e.share > 0.5 else "watch",
-            says=f"In the {s.name(side)} the {argument} is {ends}, outside the published {published} of the relation "
+            says=f"The {s.name(side)} runs at {argument} {ends}, outside the published {published} of the relation "
             f"{relation} in {percent(e.share)} of the cells.",
             because={argument: ends, "published": published, "share of the cells": percent(e.share)},
             do="Trust this film as far as the second opinions beside it agree, or calibrate it with a clean test.",
@@ -113,10 +116,10 @@ def outside_published_range(s: Subject, side: Side) -> Iterator[Finding]:
 )
 def transitional_flow(s: Subject, side: Side) -> Iterator[Finding]:
     share = s.regime_share(side, "transitional")
-    if share == 0:
+    if share == 0 or s.is_shell(side):
         return
     at = s.fouled.sides[side]
-    because = {"share of the cells": percent(share), "mean Re": f"{at.Re:.4g}"}
+    because = {"share of the cells": percent(share), "mean Re": s.show(at.Re, "dimensionless")}
     spread = ""
     variant = at.second_opinions.get("transition_2013")
     if variant is not None:
@@ -145,6 +148,8 @@ def mixed_convection(s: Subject, side: Side) -> Iterator[Finding]:
     at, profile, fluid = s.fouled.sides[side], s.fouled.profile, s.fluid(side)
     if profile is None or s.regime_share(side, "laminar") == 0:
         return
+    if s.is_shell(side):
+        raise Missing("a criterion of buoyancy across a bank of tubes")
     if isinstance(s.case.stream(side).fluid, ConstantFluid):
         raise Missing(f"the expansion of {fluid.name}: its density is stated as constant")
     laminar = np.array([regime == "laminar" for regime in profile.regime[side]])
@@ -182,7 +187,7 @@ def mixed_convection(s: Subject, side: Side) -> Iterator[Finding]:
 )
 def near_uniform_flux(s: Subject) -> Iterator[Finding]:
     share = s.regime_share("inside", "laminar")
-    counter = getattr(s.case.exchanger, "arrangement", "counter") == "counter"
+    counter = s.case.exchanger.arrangement == "counter" and getattr(s.case.exchanger, "tube_passes", 1) == 1
     C = capacities(s.fouled)
     Cr = min(C.values()) / max(C.values())
     if counter and share > 0 and Cr > UNIFORM_FLUX_CR:
@@ -198,8 +203,8 @@ def near_uniform_flux(s: Subject) -> Iterator[Finding]:
 
 
 def capacities(state: State) -> dict[Side, float]:
-    """flow·cp of each side [W/K], as the rating's own duty and temperatures give it."""
-    return {side: state.duty / abs(at.T_out - at.T_in) for side, at in state.sides.items()}
+    """flow·cp of each side [W/K], as the rating's own duty and temperatures give it; boundless where it condenses."""
+    return {side: state.duty / max(abs(at.T_out - at.T_in), 1e-12) for side, at in state.sides.items()}
 
 
 @rule(
@@ -339,7 +344,7 @@ def property_note(s: Subject, side: Side) -> Iterator[Finding]:
             "note",
             where=f"{side}.fluid",
             says=f"{note[0].upper()}{note[1:]}.",
-            because={"properties": fluid.origin},
+            because={"properties": fluid.origin, "inlet": s.T(s.case.T_in(side))},
             do="Check that this suits the temperatures of the case.",
             source=fluid.origin,
         )
@@ -354,15 +359,28 @@ def assumed(s: Subject) -> Iterator[Finding]:
             continue
         assert isinstance(declared, (Stated, Count, Choice))
         shown = s.show(value, declared.quantities[0]) if isinstance(declared, Stated) and value is not None else value
-        taken = "" if value is None else f"; taken is {shown}"
+        taken = f"{declared.name.lower()} {shown}" if value is not None else declared.name.lower()
         yield s.finding(
             "note",
             where=path,
-            says=f"{declared.name} is not stated{taken}: {declared.assumed}.",
+            says=f"Not stated, so taken: {taken} ({declared.assumed}).",
             because={} if value is None else {declared.name: str(shown)},
-            do="State it where it is known.",
+            do=STATE_IT,
             source=declared.assumed,
         )
+    exchanger = s.case.exchanger
+    for name, figure, source in exchanger.derived():
+        # A table that stands for a stated size assumes nothing.
+        if name not in exchanger.model_fields_set:
+            title = type(exchanger).declared()[name].name
+            yield s.finding(
+                "note",
+                where=f"exchanger.{name}",
+                says=f"Not stated, so taken: {title.lower()} {figure}.",
+                because={title: figure},
+                do=STATE_IT,
+                source=str(source),
+            )
 
 
 def _leaves(part: Input, path: str) -> Iterator[tuple[str, bool, Declaration | None, Any]]:
@@ -445,7 +463,7 @@ def wide_interval(s: Subject) -> Iterator[Finding]:
     largest = s.intervals["fouled"].contributors[:3]
     yield s.finding(
         "watch",
-        says=f"U of the fouled state lies between {span(s.U, low, high)} at 95 %; the largest part of "
+        says=f"U of the fouled state lies from {span(s.U, low, high)} at 95 %; the largest part of "
         f"it comes from the {largest[0].doubt.name}.",
         because={
             "U": s.U(U),
