@@ -171,7 +171,7 @@ class Fluid(ABC):
         # Below a millikelvin the difference of two enthalpies has lost the digits that cp still has.
         apart = np.abs(step) > 1e-3
         mean = (self.enthalpy(T2) - self.enthalpy(T1)) / np.where(apart, step, 1.0)
-        return np.where(apart, mean, self.values(0.5 * (T1 + T2), "cp")[0])
+        return mean if apart.all() else np.where(apart, mean, self.values(0.5 * (T1 + T2), "cp")[0])
 
     def outside(self, T: ArrayLike) -> NDArray[np.bool_]:
         """Where T lies outside the usable span. NaN is outside."""
@@ -761,7 +761,7 @@ _NEGLIGIBLE = 1e-12
 _NARROWEST = 1e-3
 """Kelvin. CoolProp's transport properties have corners and steps; a piece this narrow holds one."""
 _LARGEST_STEP = 0.03
-_WINDOW_AGREES = 1e-11
+_WINDOW_AGREES = 1e-9
 """Relative size below which a term of a windowed polynomial is left out."""
 _CHUNK = 2048
 

@@ -21,15 +21,19 @@ from engine.exchangers import Cells, Film, Flowing
 from engine.fluids import Fluid, Properties, Tabulated
 from engine.stated import SIDES, CaseError, Problem, Side, opposite
 
-CHUNK = 256
+CHUNK = 512
 """Points solved at once: small enough for the work arrays to stay in the processor's cache."""
-TOLERANCE = 1e-9
+TOLERANCE = 1e-8
 """Of the outer loop: largest change of a temperature between two iterations over the inlet difference."""
 SETTLED = 1e-6
 """Residual up to which a point counts as converged."""
 SETTLE_AT = (1e-2, 1e-6)
 """Residuals at which a point's slowly changing parts are found: roughly, then for good."""
-MOST_ITERATIONS = 60
+PATIENCE = 14
+"""Iterations after which a chunk goes on without the few points that settle slowly."""
+MOST_ITERATIONS = 80
+FEW = 8
+"""So few points are not parted."""
 
 Texts = NDArray[np.object_]
 
@@ -156,10 +160,12 @@ def _row_problems(case: Case, points: Points) -> Texts:
     return problem
 
 
-def solve(case: Case, points: Points, *, fineness: int = 1) -> Iterator[tuple[slice, Solution]]:
+def solve(case: Case, points: Points, *, fineness: int = 1) -> Iterator[tuple[NDArray[np.intp], Solution]]:
     """March through all points, chunk after chunk; memory does not grow with their number.
 
-    Points must be sound (see `points_of`). A point that leaves a fluid's usable span carries a sentence in `problem`.
+    Yields the rows and their solution. Rows that settle slowly come once more at the end, on their own, and then
+    stand for good. Points must be sound (see `points_of`); a point that leaves a fluid's usable span carries a sentence
+    in `problem`.
     """
     if not len(points):
         return
@@ -168,9 +174,18 @@ def solve(case: Case, points: Points, *, fineness: int = 1) -> Iterator[tuple[sl
     ends = np.concatenate([points.T_in[side] for side in SIDES])
     room = 2.0 + (0.5 * np.ptp(ends) if case.exchanger.heat_loss else 0.0)
     fluids = {side: case.fluid(side).within(ends.min() - room, ends.max() + room) for side in SIDES}
+    slow: list[NDArray[np.intp]] = []
     for first in range(0, len(points), CHUNK):
-        rows = slice(first, min(first + CHUNK, len(points)))
-        yield rows, _march(case, points.part(rows), cells, fluids)
+        rows = np.arange(first, min(first + CHUNK, len(points)))
+        most = PATIENCE if len(points) > FEW else MOST_ITERATIONS
+        solved = _march(case, points.part(rows), cells, fluids, most)
+        slow.append(rows[solved.residual > TOLERANCE])
+        yield rows, solved
+    late = np.concatenate(slow)
+    if len(points) > FEW:
+        for first in range(0, late.size, CHUNK):
+            rows = late[first : first + CHUNK]
+            yield rows, _march(case, points.part(rows), cells, fluids, MOST_ITERATIONS)
 
 
 def _properties(fluid: Fluid, T: Array, side: Side, points: Points) -> Properties:
@@ -216,9 +231,6 @@ class _Settled:
     """(P, 2, n) per side, mean of cp over a cell over cp at its mean temperature: closes the enthalpy balance."""
     spread: Array
     """(P, 2, n) per side, resistance of a film that falls off within a cell over that of its mean h."""
-
-    def part(self, rows: NDArray[Any]) -> _Settled:
-        return _Settled(bend=self.bend[rows], spread=self.spread[rows])
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -287,26 +299,20 @@ def _step(
     return _Step(settled=settled, flowing=flowing, films=films, r=r, found=found, surface=surface, lossy=lossy)
 
 
-def _settle(
-    case: Case, points: Points, cells: Cells, fluids: Mapping[Side, Fluid], step: _Step, rows: NDArray[np.bool_]
-) -> _Settled:
-    """For some rows of a step; `points` are those rows."""
+def _settle(case: Case, cells: Cells, fluids: Mapping[Side, Fluid], step: _Step, *, roughly: bool) -> _Settled:
     found = step.found
-    met: dict[Side, tuple[Array, Array, Array]] = {
-        "inside": (found.inside_entry[rows], found.inside_exit[rows], found.inside_mean[rows]),
-        "outside": (found.outside_entry[rows], found.outside_exit[rows], found.outside_mean[rows]),
-    }
-    flowing: dict[Side, Flowing] = {}
-    for side in SIDES:
-        at = step.flowing[side]
-        flowing[side] = flowing_side(fluids[side], side, points, at.T[rows], at.T_wall[rows])
+    spread = film_spread(case, cells, step.flowing, {side: step.films[side].h for side in SIDES}, step.r)
+    if roughly:
+        return replace(step.settled, spread=spread)
+    met = (
+        (found.inside_entry, found.inside_exit, found.inside_mean),
+        (found.outside_entry, found.outside_exit, found.outside_mean),
+    )
     bend = [
         fluids[side].mean_cp(entry, exit) / fluids[side].values(mean, "cp")[0]
-        for side, (entry, exit, mean) in met.items()
+        for side, (entry, exit, mean) in zip(SIDES, met, strict=True)
     ]
-    h = {side: step.films[side].h[rows] for side in SIDES}
-    r = {name: value[rows] for name, value in step.r.items()}
-    return _Settled(bend=np.stack(bend, axis=1), spread=film_spread(case, cells, flowing, h, r))
+    return _Settled(bend=np.stack(bend, axis=1), spread=spread)
 
 
 def film_spread(
@@ -371,52 +377,41 @@ def resistances(
     }
 
 
-def _march(case: Case, points: Points, cells: Cells, fluids: Mapping[Side, Fluid]) -> Solution:
+def _march(case: Case, points: Points, cells: Cells, fluids: Mapping[Side, Fluid], most: int) -> Solution:
     n, P = cells.layout.n_cells, len(points)
     T_i, T_o = points.T_in["inside"][:, None], points.T_in["outside"][:, None]
     span = np.abs(T_i - T_o)[:, 0]
     # A quarter of the way from each inlet to the other is near enough to start from.
-    guess = np.stack([np.broadcast_to(x, (P, n)) for x in (0.75 * T_i + 0.25 * T_o, 0.25 * T_i + 0.75 * T_o)] * 2, 1)
-    guess[:, 2:] = 0.5 * (T_i + T_o)[:, None]
+    guess = np.stack([0.75 * T_i + 0.25 * T_o, 0.25 * T_i + 0.75 * T_o, 0.5 * (T_i + T_o), 0.5 * (T_i + T_o)], axis=1)
     heat = np.broadcast_to(T_i - T_o, (P, n)) * 1e12
-    settled = _Settled(bend=np.ones((P, 2, n)), spread=np.ones((P, 2, n)))
-    level = np.zeros(P, dtype=int)
-    iterations, residual = np.zeros(P, dtype=int), np.full(P, np.inf)
-    active = np.arange(P)
-    old_new = old_change = np.zeros((P, 4, n))
-    fresh = np.ones(P, dtype=bool)
-    for count in range(1, MOST_ITERATIONS + 1):
-        part = points if active.size == P else points.part(active)
-        step = _step(case, part, cells, fluids, guess[active], settled.part(active), heat[active])
-        new = step.guess()
-        change = new - guess[active]
-        if case.exchanger.heat_loss:
-            heat = heat.copy()
-            heat[active] = step.found.heat
-        now = np.abs(change).max(axis=(1, 2)) / span[active]
-        iterations[active], residual[active] = count, now
-        guess[active] = _accelerated(new, change, old_new, old_change, fresh)
-        due = (level[active] < len(SETTLE_AT)) & (now < np.array((*SETTLE_AT, 0.0))[level[active]])
-        if due.any():
-            rows = active[due]
-            found = _settle(case, points.part(rows), cells, fluids, step, due)
-            settled.bend[rows], settled.spread[rows] = found.bend, found.spread
-            level[rows] += 1
-        going = (now > TOLERANCE) | (level[active] < len(SETTLE_AT)) | due
-        old_new, old_change, fresh, active = new[going], change[going], due[going], active[going]
-        if not active.size:
+    settled, level = _Settled(bend=np.ones((P, 2, 1)), spread=np.ones((P, 2, 1))), 0
+    before: tuple[Array, Array] | None = None
+    count = 0
+    while True:
+        count += 1
+        step = _step(case, points, cells, fluids, guess, settled, heat)
+        new, heat = step.guess(), step.found.heat
+        change = new - guess
+        residual = np.abs(change).max(axis=(1, 2)) / span
+        worst = residual.max()
+        if count == most or (level == len(SETTLE_AT) and worst <= TOLERANCE):
             break
-    step = _step(case, points, cells, fluids, guess, settled, heat)
-    return _solution(case, points, cells, fluids, step, iterations, residual)
+        guess = new if before is None else _accelerated(new, change, *before)
+        before = (new, change) if count > 1 else None
+        if level < len(SETTLE_AT) and worst <= SETTLE_AT[level]:
+            level += 1
+            settled = _settle(case, cells, fluids, step, roughly=level < len(SETTLE_AT))
+            before = None
+    return _solution(case, points, cells, fluids, step, np.full(P, count), residual)
 
 
-def _accelerated(new: Array, change: Array, old_new: Array, old_change: Array, fresh: NDArray[np.bool_]) -> Array:
-    """Anderson's mixing with one step of memory (J. ACM 12 (1965) 547), point by point; `fresh` points have none."""
+def _accelerated(new: Array, change: Array, old_new: Array, old_change: Array) -> Array:
+    """Anderson's mixing with one step of memory (J. ACM 12 (1965) 547), point by point."""
     turn = change - old_change
     size = np.einsum("pij,pij->p", turn, turn)
     share = np.einsum("pij,pij->p", change, turn) / np.where(size > 0, size, 1.0)
     # A large share means that the two steps say nothing about the slope; the plain step is safer.
-    share = np.where((np.abs(share) < 1.0) & ~fresh, share, 0.0)
+    share = np.where(np.abs(share) < 1.0, share, 0.0)
     return new - share[:, None, None] * (new - old_new)
 
 
