@@ -206,6 +206,8 @@ class Words:
             raise _refused(f"is {len(given)} characters long; allowed is up to {self.longest}")
         if any(ord(c) < 32 and not (self.lines and c in "\n\t\r") for c in given):
             raise _refused("holds control characters; allowed is plain text")
+        if any("\ud800" <= c <= "\udfff" for c in given):
+            raise _refused("holds half of a surrogate pair; allowed is plain text")
         return given
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
