@@ -1,8 +1,17 @@
 """What is handed over: sections built once, and the PDF and the plain text drawn from them."""
 
-from engine.report.blocks import Section
+from engine.report.blocks import Chart, DoublePipeScheme, Section, ShellScheme, Table
 from engine.report.pdf import report_pdf
 from engine.report.sections import sections
 from engine.report.text import report_text
 
-__all__ = ["Section", "report_pdf", "report_text", "sections"]
+__all__ = [
+    "Chart",
+    "DoublePipeScheme",
+    "Section",
+    "ShellScheme",
+    "Table",
+    "report_pdf",
+    "report_text",
+    "sections",
+]

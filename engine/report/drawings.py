@@ -3,9 +3,8 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from itertools import pairwise
-from typing import Any
 
 from reportlab.graphics.shapes import Circle, Drawing, Line, Path, Polygon, PolyLine, Rect, String
 from reportlab.lib.colors import Color, HexColor, white
@@ -46,6 +45,9 @@ def _arrow(x: float, y: float, dx: int, dy: int, size: float = 5.0) -> Polygon:
 # --- chart ------------------------------------------------------------------------------------------------------------
 
 
+QUARTERS = (0.0, 0.25, 0.5, 0.75, 1.0)
+
+
 def ticks(low: float, high: float, most: int = 6) -> list[float]:
     """Round figures that span low to high, at most about so many."""
     span = max(high - low, 1e-9)
@@ -56,7 +58,7 @@ def ticks(low: float, high: float, most: int = 6) -> list[float]:
     return [i * step for i in range(first, max(last, first + 1) + 1)]
 
 
-def draw_chart(chart: Chart, width: float, height: float = 138.0) -> Drawing:
+def draw_chart(chart: Chart, width: float, height: float = 158.0) -> Drawing:
     """The lines over their axes, a legend above, the strips below."""
     drawing = Drawing(width, height)
     strip_height = 11.0
@@ -79,12 +81,12 @@ def draw_chart(chart: Chart, width: float, height: float = 138.0) -> Drawing:
         drawing.add(Line(left, py(y), width - right, py(y), strokeColor=PALE, strokeWidth=0.5))
         drawing.add(_text(left - 4, py(y) - 2.5, f"{y:g}", anchor="end"))
     drawing.add(Rect(left, bottom, inner_width, inner_height, fillColor=None, strokeColor=HAIR, strokeWidth=0.6))
-    for x in (0.0, 0.25, 0.5, 0.75, 1.0):
+    for x in QUARTERS:
         drawing.add(Line(px(x), bottom, px(x), bottom - 3, strokeColor=HAIR, strokeWidth=0.6))
     for i, strip in enumerate(chart.strips):
         _draw_strip(drawing, strip, px, bottom - 5 - strip_height * (i + 1), strip_height - 2)
     base = bottom - 5 - strip_height * len(chart.strips)
-    for x in (0.0, 0.25, 0.5, 0.75, 1.0):
+    for x in QUARTERS:
         drawing.add(_text(px(x), base - 8, f"{x:g}", anchor="middle"))
     drawing.add(_text(left + inner_width / 2, base - 18, chart.x_label, anchor="middle"))
     drawing.add(_text(0, height - 8, chart.y_label, bold=True))
@@ -115,7 +117,7 @@ def _mark(drawing: Drawing, x: float, y: float, marker: str) -> None:
         drawing.add(Rect(x - 1.9, y - 1.9, 3.8, 3.8, fillColor=white, strokeColor=INK, strokeWidth=0.8))
 
 
-def _draw_strip(drawing: Drawing, strip: Strip, px: Any, y: float, height: float) -> None:
+def _draw_strip(drawing: Drawing, strip: Strip, px: Callable[[float], float], y: float, height: float) -> None:
     drawing.add(_text(px(0.0) - 4, y + 2, fitted(strip.name, px(0.0) - 4), anchor="end"))
     for start, end, what in strip.runs:
         x, w = px(start), px(end) - px(start)
@@ -167,13 +169,13 @@ def _turns(rows: list[tuple[int, float]]) -> list[tuple[float, float, bool, int]
     return [(y, below, leg % 2 == 0, after - leg - 1) for (leg, y), (after, below) in pairwise(rows)]
 
 
-def _pipe(points: Any, width: float, fill: Color) -> list[Path]:
+def _pipe(along: Callable[[Path], None], width: float, fill: Color) -> list[Path]:
     """A line drawn as a pipe: its walls, then its content over them."""
     paths = []
     for stroke, colour in ((width, INK), (width - 1.4, fill)):
         path = Path(fillColor=None, strokeColor=colour, strokeWidth=stroke)
         path.strokeLineJoin, path.strokeLineCap = 1, 0
-        points(path)
+        along(path)
         paths.append(path)
     return paths
 
