@@ -4,7 +4,7 @@ many points.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 
 import numpy as np
@@ -20,6 +20,7 @@ from engine.points import (
     SETTLED,
     Points,
     Solution,
+    Texts,
     film_spread,
     flowing_side,
     in_series,
@@ -131,9 +132,23 @@ def rate_points(case: Case, frame: pd.DataFrame) -> pd.DataFrame:
     spoils the others. Raises CaseError for an unknown column.
     """
     points, problem = points_of(case, frame)
-    names = ["duty", "inside.T_out", "outside.T_out", "mtd", "U_clean", "U_dirty"]
-    names += [f"{side}.{name}" for name in ("h", "Re", "dp") for side in SIDES]
+    found = tabulated(case, points, problem, FIGURES, figures_of)
+    return found.set_index(frame.index)
+
+
+def tabulated(
+    case: Case,
+    points: Points,
+    problem: Texts,
+    names: Sequence[str],
+    columns: Callable[[Case, Solution], Mapping[str, Array]],
+) -> pd.DataFrame:
+    """Solve points and put the named columns of each solution in rows, beside `problem`, a sentence or empty.
+
+    Points that have a problem from the start are not solved. A row with a problem has NaN figures.
+    """
     figures = {name: np.full(len(points), np.nan) for name in names}
+    problem = problem.copy()
     sound = np.flatnonzero(problem == "")
     for rows, solved in solve(case, points.part(sound)):
         at = sound[rows]
@@ -142,13 +157,21 @@ def rate_points(case: Case, frame: pd.DataFrame) -> pd.DataFrame:
             (solved.problem == "") & unconverged, "the temperatures did not settle; no answer", solved.problem
         )
         good = problem[at] == ""
-        values = _columns(case, solved)
+        values = columns(case, solved)
         for name in names:
             figures[name][at[good]] = values[name][good]
-    return pd.DataFrame({**figures, "problem": problem.astype(str)}, index=frame.index)
+    return pd.DataFrame({**figures, "problem": problem.astype(str)})
 
 
-def _columns(case: Case, solved: Solution) -> dict[str, Array]:
+FIGURES = (
+    *("duty", "inside.T_out", "outside.T_out", "mtd", "U_clean", "U_dirty"),
+    *(f"{side}.{name}" for name in ("h", "Re", "dp") for side in SIDES),
+)
+"""The columns of `figures_of`."""
+
+
+def figures_of(case: Case, solved: Solution) -> dict[str, Array]:
+    """What is said of many points, (P,) each, by column name."""
     R = solved.resistances
     mean = mean_films(case, solved)
     return {
@@ -294,17 +317,49 @@ def counter_lmtd(case: Case, T_in: Mapping[Side, Array], T_out: Mapping[Side, Ar
 
 
 def _profile(solved: Solution, i: int) -> Profile:
-    share = solved.share
-    edges = np.concatenate([[0.0], np.cumsum(share)])
-    x = np.concatenate([[0.0], 0.5 * (edges[:-1] + edges[1:]), [1.0]])
-    T: dict[Side, Array] = {}
-    first_last = {"inside": (solved.entry["inside"][i, 0], solved.exit["inside"][i, -1])}
-    counter = solved.cells.layout.chain == "counter"
-    begin, end = (solved.exit, solved.entry) if counter else (solved.entry, solved.exit)
-    first_last["outside"] = (begin["outside"][i, 0], end["outside"][i, -1])
+    whole = along(solved)
+    regime: dict[Side, tuple[str, ...]] = {}
     for side in SIDES:
-        T[side] = np.concatenate([[first_last[side][0]], solved.mean[side][i], [first_last[side][1]]])
-    r = {name: np.concatenate([[v[i, 0]], v[i], [v[i, -1]]]) for name, v in solved.r.items()}
+        codes = solved.films[side].regime[i]
+        regime[side] = tuple(REGIMES[c] for c in (codes[0], *codes, codes[-1]))
+    return Profile(
+        x=whole.x,
+        T={side: whole.T[side][i] for side in SIDES},
+        wall_T={side: whole.wall_T[side][i] for side in SIDES},
+        surface_T={side: whole.surface_T[side][i] for side in SIDES},
+        regime=regime,
+        heat_flux=np.abs(whole.heat_flux[i]),
+    )
+
+
+@dataclass(frozen=True, kw_only=True)
+class Along:
+    """The profiles of all points of a solution: x (n + 2,), the rest (P, n + 2); see `Profile`."""
+
+    x: Array
+    T: Mapping[Side, Array]
+    wall_T: Mapping[Side, Array]
+    surface_T: Mapping[Side, Array]
+    heat_flux: Array
+    """From the inside to the outside."""
+
+
+def along(solved: Solution) -> Along:
+    """Temperatures at both ends and in every cell of all points."""
+
+    def ended(middle: Array, first: Array, last: Array) -> Array:
+        return np.concatenate([first[:, None], middle, last[:, None]], axis=1)
+
+    edges = np.concatenate([[0.0], np.cumsum(solved.share)])
+    x = np.concatenate([[0.0], 0.5 * (edges[:-1] + edges[1:]), [1.0]])
+    begin, end = solved.entry["outside"], solved.exit["outside"]
+    if solved.cells.layout.chain == "counter":
+        begin, end = end, begin
+    T: dict[Side, Array] = {
+        "inside": ended(solved.mean["inside"], solved.entry["inside"][:, 0], solved.exit["inside"][:, -1]),
+        "outside": ended(solved.mean["outside"], begin[:, 0], end[:, -1]),
+    }
+    r = {name: ended(v, v[:, 0], v[:, -1]) for name, v in solved.r.items()}
     flux = (T["inside"] - T["outside"]) * in_series(r)
     surface: dict[Side, Array] = {
         "inside": T["inside"] - flux * r["inside film"],
@@ -314,11 +369,7 @@ def _profile(solved: Solution, i: int) -> Profile:
         "inside": surface["inside"] - flux * r["inside fouling"],
         "outside": surface["outside"] + flux * r["outside fouling"],
     }
-    regime: dict[Side, tuple[str, ...]] = {}
-    for side in SIDES:
-        codes = solved.films[side].regime[i]
-        regime[side] = tuple(REGIMES[c] for c in (codes[0], *codes, codes[-1]))
-    return Profile(x=x, T=T, wall_T=wall, surface_T=surface, regime=regime, heat_flux=np.abs(flux))
+    return Along(x=x, T=T, wall_T=wall, surface_T=surface, heat_flux=flux)
 
 
 def _with_requirement(case: Case, states: Mapping[str, State]) -> tuple[dict[str, State], str]:
