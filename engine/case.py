@@ -5,6 +5,7 @@ from __future__ import annotations
 import hashlib
 import json
 from collections.abc import Iterator
+from dataclasses import replace
 from typing import Annotated, Any, ClassVar
 
 import numpy as np
@@ -13,7 +14,7 @@ from pydantic import BeforeValidator, Discriminator, Field, Tag
 from engine import fluids
 from engine.exchangers.double_pipe import DoublePipe
 from engine.exchangers.shell_and_tube import ShellAndTube
-from engine.stated import SIDES, Choice, Figure, Input, Problem, Side, Stated, Words
+from engine.stated import SIDES, Choice, Count, Figure, Input, Problem, Side, Stated, Words
 
 ATMOSPHERE = 101325.0
 
@@ -162,24 +163,31 @@ def absolute(p: float, atmosphere: float) -> float:
     return float(p) + atmosphere if gauge else float(p)
 
 
+FLOW = Stated(
+    ("mass_flow", "volume_flow"),
+    "Flow",
+    above=0.0,
+    high=1e5,
+    help="By mass, or by volume at the inlet temperature and pressure.",
+    example="42 m3/h",
+)
+T_IN = Stated("temperature", "Inlet temperature", low=50.0, high=1500.0, example="27 degC")
+R_FOULING = Stated(
+    "fouling_resistance",
+    "Fouling resistance",
+    low=0.0,
+    high=0.1,
+    help="On this side's own surface.",
+    example="0.00018 m2K/W",
+)
+
+
 class Stream(Input):
     """One fluid on its way through the exchanger."""
 
     fluid: FluidInput
-    flow: Annotated[
-        float | None,
-        Stated(
-            ("mass_flow", "volume_flow"),
-            "Flow",
-            above=0.0,
-            high=1e5,
-            help="By mass, or by volume at the inlet temperature and pressure.",
-            example="42 m3/h",
-        ),
-    ] = None
-    T_in: Annotated[
-        float | None, Stated("temperature", "Inlet temperature", low=50.0, high=1500.0, example="27 degC")
-    ] = None
+    flow: Annotated[float | None, FLOW] = None
+    T_in: Annotated[float | None, T_IN] = None
     p_in: Annotated[
         float | None,
         Stated(PRESSURE, "Inlet pressure", low=-ATMOSPHERE, high=1e8, example="4.2 barg"),
@@ -188,18 +196,7 @@ class Stream(Input):
         float | None,
         Stated("temperature", "Required outlet temperature", low=50.0, high=1500.0, example="52 degC"),
     ] = None
-    R_fouling: Annotated[
-        float,
-        Stated(
-            "fouling_resistance",
-            "Fouling resistance",
-            low=0.0,
-            high=0.1,
-            help="On this side's own surface.",
-            assumed="no fouling, since none is stated",
-            example="0.00018 m2K/W",
-        ),
-    ] = 0.0
+    R_fouling: Annotated[float, replace(R_FOULING, assumed="no fouling, since none is stated")] = 0.0
     dp_allowed: Annotated[
         float | None,
         Stated("pressure_difference", "Allowed pressure drop", above=0.0, high=1e7, example="70 kPa"),
@@ -243,6 +240,19 @@ class Limits(Input):
     outside_wall_T_min: Annotated[float | None, Stated("temperature", "Lowest wall temperature, outside")] = None
     inside_velocity_max: Annotated[float | None, Stated("velocity", "Highest velocity, inside", above=0.0)] = None
     outside_velocity_max: Annotated[float | None, Stated("velocity", "Highest velocity, outside", above=0.0)] = None
+
+
+class Operating(Input):
+    """A condition beside the one of the case, such as turndown or winter water. What is not stated stays as there."""
+
+    name: Annotated[str, Words("Name", 40)]
+    inside_flow: Annotated[float | None, replace(FLOW, name="Flow, inside")] = None
+    outside_flow: Annotated[float | None, replace(FLOW, name="Flow, outside")] = None
+    inside_T_in: Annotated[float | None, replace(T_IN, name="Inlet temperature, inside")] = None
+    outside_T_in: Annotated[float | None, replace(T_IN, name="Inlet temperature, outside")] = None
+    inside_R_fouling: Annotated[float | None, replace(R_FOULING, name="Fouling resistance, inside")] = None
+    outside_R_fouling: Annotated[float | None, replace(R_FOULING, name="Fouling resistance, outside")] = None
+    tubes_plugged: Annotated[int | None, Count("Tubes plugged", 0, 50000, help="Of one shell.")] = None
 
 
 EXCHANGERS: dict[str, type[Input]] = {"double-pipe": DoublePipe, "shell-and-tube": ShellAndTube}
@@ -292,6 +302,7 @@ class Case(Input):
     outside: Stream
     exchanger: ExchangerInput
     limits: Limits = Limits()
+    operating: Annotated[tuple[Operating, ...], Field(max_length=12)] = ()
 
     def stream(self, side: Side) -> Stream:
         return self.inside if side == "inside" else self.outside
@@ -345,8 +356,31 @@ class Case(Input):
                 yield problem.under(side)
         for problem in self.exchanger.problems():
             yield problem.under("exchanger")
+        yield from self._operating_problems()
         if sound:
             yield from stream_problems(self.inside, self.outside, float(self.atmosphere))
+
+    def _operating_problems(self) -> Iterator[Problem]:
+        """Only what no condition could mean; where the physics leaves one without an answer, its column says so."""
+        names = [condition.name.strip().lower() for condition in self.operating]
+        tubes = getattr(self.exchanger, "tubes", None)
+        for i, condition in enumerate(self.operating):
+            place, plugged = f"operating[{i}]", condition.tubes_plugged
+            if not names[i]:
+                yield Problem(path=f"{place}.name", says="is empty; each condition needs a name of its own")
+            elif names[i] in names[:i]:
+                says = f'"{condition.name}" stands twice; each condition needs a name of its own'
+                yield Problem(path=f"{place}.name", says=says)
+            if plugged is not None and tubes is None:
+                says = f"is not stated for a {self.exchanger.type} exchanger: it has no tubes to plug"
+                yield Problem(path=f"{place}.tubes_plugged", says=says)
+            elif plugged is not None and plugged >= tubes:
+                says = f"{plugged} of {tubes} tubes leaves none open; allowed is up to {tubes - 1}"
+                yield Problem(path=f"{place}.tubes_plugged", says=says)
+            for side in SIDES:
+                if self.stream(side).condenses and getattr(condition, f"{side}_T_in") is not None:
+                    says = "is not stated for steam: its pressure and superheat decide it"
+                    yield Problem(path=f"{place}.{side}_T_in", says=says)
 
 
 def stream_problems(inside: Stream, outside: Stream, atmosphere: float) -> Iterator[Problem]:
