@@ -7,7 +7,7 @@ A printed ±x % is read as two standard deviations unless the source says otherw
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -174,25 +174,16 @@ def propagate(case: Case, rating: Rating, *, samples: int = 0, seed: int = 0) ->
     found = doubts(case, rating)
     if samples:
         return _sampled(case, rating, found, samples, seed)
-    moved: list[tuple[int, float, str]] = []
-    parts: list[Points] = []
-    for state in rating.states:
-        base = _base(case, state)
-        parts.append(base)
-        moved.append((-1, 0.0, state))
-        for i, doubt in enumerate(found):
-            for z in (1.0, -1.0):
-                parts.append(_moved(base, {doubt.path: np.array([z * doubt.sd])}))
-                moved.append((i, z, state))
-    values, good = _figures(case, _aligned(parts))
+    points = joined([each_way(_base(case, state), found) for state in rating.states])
+    values, good = _figures(case, points)
     out: dict[str, Intervals] = {}
-    for state in rating.states:
-        row = {(i, z): k for k, (i, z, name) in enumerate(moved) if name == state}
-        centre = {q: values[q][row[(-1, 0.0)]] for q in QUANTITIES}
+    for k, state in enumerate(rating.states):
+        first = k * (1 + 2 * len(found))
+        centre = {q: values[q][first] for q in QUANTITIES}
         slopes: dict[str, list[float]] = {q: [] for q in QUANTITIES}
         left_out = []
         for i, doubt in enumerate(found):
-            up, down = row[(i, 1.0)], row[(i, -1.0)]
+            up, down = first + 1 + 2 * i, first + 2 + 2 * i
             if not (good[up] or good[down]):
                 left_out.append(doubt.name)
             for q in QUANTITIES:
@@ -264,10 +255,11 @@ def _moved(base: Points, moves: Mapping[str, Array]) -> Points:
     return replace(wide, flow=flow, T_in=T_in, R_fouling=R, factors=factors)
 
 
-def _aligned(parts: list[Points]) -> Points:
+def each_way(base: Points, found: Sequence[Doubt]) -> Points:
+    """One point, then for each doubt that point one sd up and one sd down."""
+    parts = [base, *(_moved(base, {d.path: np.array([d.sd, -d.sd])}) for d in found)]
     names = sorted({name for part in parts for name in part.factors})
-    full = [replace(p, factors={n: p.factors.get(n, np.ones(len(p))) for n in names}) for p in parts]
-    return joined(full)
+    return joined([replace(p, factors={n: p.factors.get(n, np.ones(len(p))) for n in names}) for p in parts])
 
 
 def _figures(case: Case, points: Points) -> tuple[dict[str, Array], NDArray[np.bool_]]:
