@@ -14,6 +14,7 @@ from pydantic import BeforeValidator, Discriminator, Field, Tag
 from engine import fluids
 from engine.exchangers.double_pipe import DoublePipe
 from engine.exchangers.shell_and_tube import ShellAndTube
+from engine.sheet import Sheet
 from engine.stated import SIDES, Choice, Count, Figure, Input, Problem, Side, Stated, Words
 
 ATMOSPHERE = 101325.0
@@ -302,6 +303,7 @@ class Case(Input):
     outside: Stream
     exchanger: ExchangerInput
     limits: Limits = Limits()
+    sheet: Sheet | None = None
     operating: Annotated[tuple[Operating, ...], Field(max_length=12)] = ()
 
     def stream(self, side: Side) -> Stream:
