@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import hashlib
 import json
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
 from dataclasses import replace
 from typing import Annotated, Any, ClassVar
 
@@ -63,6 +63,8 @@ class SolutionFluid(Input):
 
 
 class SteamState(Input):
+    """Pressure of condensing steam, and how far it enters above and leaves below saturation."""
+
     p: Annotated[
         float,
         Stated(("pressure_gauge", "pressure_absolute"), "Steam pressure", low=-101325.0, high=22e6, example="3 barg"),
@@ -105,7 +107,9 @@ class TableFluid(Input):
     def problems(self) -> Iterator[Problem]:
         temperatures = [float(row.T) for row in self.table]
         if len(set(temperatures)) < len(temperatures):
-            yield Problem(path="table", says="gives the same temperature twice; each row needs a temperature of its own")
+            yield Problem(
+                path="table", says="gives the same temperature twice; each row needs a temperature of its own"
+            )
 
 
 class ConstantFluid(Input):
@@ -117,9 +121,7 @@ class ConstantFluid(Input):
 
     def spec(self, atmosphere: float) -> fluids.Specification:
         c = self.constant
-        return fluids.Constant(
-            name=self.name, rho=float(c.rho), cp=float(c.cp), k=float(c.k), mu=float(c.mu)
-        )
+        return fluids.Constant(name=self.name, rho=float(c.rho), cp=float(c.cp), k=float(c.k), mu=float(c.mu))
 
 
 FLUID_TAGS = ("pure", "solution", "steam", "table", "constant")
@@ -137,6 +139,15 @@ def _named(given: Any) -> Any:
     return {"name": given} if isinstance(given, str) else given
 
 
+_FluidGiven = (
+    Annotated[str, Words("Fluid", 80, help="A pure fluid or thermal oil of the list of fluids.")]
+    | PureFluid
+    | SolutionFluid
+    | SteamFluid
+    | TableFluid
+    | ConstantFluid
+)
+
 FluidInput = Annotated[
     Annotated[PureFluid, Tag("pure")]
     | Annotated[SolutionFluid, Tag("solution")]
@@ -152,7 +163,7 @@ FluidInput = Annotated[
             '{"steam"}, {"name", "table"} or {"name", "constant"}'
         },
     ),
-    BeforeValidator(_named),
+    BeforeValidator(_named, json_schema_input_type=_FluidGiven),
 ]
 
 PRESSURE = ("pressure_gauge", "pressure_absolute")
@@ -270,7 +281,11 @@ ExchangerInput = Annotated[
         _exchanger_tag,
         custom_error_type="not_an_exchanger",
         custom_error_message="is not an exchanger",
-        custom_error_context={"says": 'is not an exchanger; "type" says which: "double-pipe" or "shell-and-tube"'},
+        custom_error_context={
+            "key": "type",
+            "allowed": '"double-pipe" or "shell-and-tube"',
+            "says": 'is not a group of keys in braces; its "type" says which exchanger it is',
+        },
     ),
 ]
 
@@ -279,7 +294,7 @@ class Case(Input):
     """One exchanger in one service, as stated by the user."""
 
     format: Annotated[str, Choice("Format", ("countercheck-case",))] = "countercheck-case"
-    version: int = 1
+    version: Annotated[int, Field(description="Version of the case file's keys.")] = 1
     tag: Annotated[str, Words("Tag", 60)] = ""
     service: Annotated[str, Words("Service", 200)] = ""
     plant: Annotated[str, Words("Plant", 200)] = ""
@@ -360,7 +375,7 @@ class Case(Input):
             yield problem.under("exchanger")
         yield from self._operating_problems()
         if sound:
-            yield from stream_problems(self.inside, self.outside, float(self.atmosphere))
+            yield from stream_problems({side: self.stream(side) for side in SIDES}, float(self.atmosphere))
 
     def _operating_problems(self) -> Iterator[Problem]:
         """Only what no condition could mean; where the physics leaves one without an answer, its column says so."""
@@ -385,30 +400,22 @@ class Case(Input):
                     yield Problem(path=f"{place}.{side}_T_in", says=says)
 
 
-def stream_problems(inside: Stream, outside: Stream, atmosphere: float) -> Iterator[Problem]:
-    """What does not go together between two streams that are each sound: phases at the inlets, temperatures."""
+def stream_problems(streams: Mapping[Side, Stream], atmosphere: float) -> Iterator[Problem]:
+    """What does not go together in and between streams: phases at the inlets, temperatures.
+
+    A stream may lack what could not be read; what depends on it is then not judged.
+    """
     T_in: dict[Side, float] = {}
-    streams: dict[Side, Stream] = {"inside": inside, "outside": outside}
     for side, stream in streams.items():
         try:
-            if isinstance(stream.fluid, SteamFluid):
-                saturation = fluids.saturation(absolute(stream.fluid.steam.p, atmosphere))
-                T_in[side] = saturation.T_sat + float(stream.fluid.steam.superheat)
-                continue
-            assert stream.T_in is not None and stream.p_in is not None
-            T_in[side] = float(stream.T_in)
-            p = absolute(stream.p_in, atmosphere)
-            if p <= 0:
-                yield Problem(path=f"{side}.p_in", says=f'"{_text(stream.p_in)}" is below a perfect vacuum')
-                continue
-            fluid = fluids.fluid_at(stream.fluid.spec(atmosphere), p, T_in[side])
-            trouble = fluid.problem(T_in[side], "at the inlet")
-            if trouble:
-                yield Problem(path=f"{side}.T_in", says=trouble)
+            if (T := _inlet_temperature(stream, atmosphere)) is not None:
+                T_in[side] = T
+                yield from (problem.under(side) for problem in _inlet_problems(stream, T, atmosphere))
         except fluids.FluidError as error:
             yield Problem(path=f"{side}.fluid", says=str(error))
     if len(T_in) < 2:
         return
+    ends = " and ".join(f"{T_in[side] - 273.15:.6g} °C ({side})" for side in SIDES)
     if abs(T_in["inside"] - T_in["outside"]) < 1e-6:
         yield Problem(
             path="outside.T_in",
@@ -417,18 +424,39 @@ def stream_problems(inside: Stream, outside: Stream, atmosphere: float) -> Itera
         )
         return
     for side, stream in streams.items():
-        other: Side = "outside" if side == "inside" else "inside"
-        if stream.T_out is None:
-            continue
-        low, high = sorted((T_in["inside"], T_in["outside"]))
-        if not low < stream.T_out < high:
+        if stream.T_out is not None and not min(T_in.values()) < stream.T_out < max(T_in.values()):
             yield Problem(
                 path=f"{side}.T_out",
-                says=f'"{_text(stream.T_out)}" is against the second law: the outlet must lie between the two inlets, '
-                f"{low - 273.15:.4g} and {high - 273.15:.4g} °C ({side} and {other})",
+                says=f'"{_text(stream.T_out)}" is against the second law; allowed is between the two inlets, {ends}',
             )
-        elif (stream.T_out - T_in[side]) * (T_in[other] - T_in[side]) <= 0:
-            yield Problem(path=f"{side}.T_out", says=f'"{_text(stream.T_out)}" lies on the wrong side of its inlet')
+
+
+def _inlet_temperature(stream: Stream, atmosphere: float) -> float | None:
+    if isinstance(stream.fluid, SteamFluid):
+        steam = stream.fluid.steam
+        return fluids.saturation(absolute(steam.p, atmosphere)).T_sat + float(steam.superheat)
+    return None if stream.T_in is None else float(stream.T_in)
+
+
+def _inlet_problems(stream: Stream, T: float, atmosphere: float) -> Iterator[Problem]:
+    if stream.fluid is None or isinstance(stream.fluid, SteamFluid) or stream.p_in is None or stream.T_in is None:
+        return
+    p = absolute(stream.p_in, atmosphere)
+    if p <= 0:
+        yield Problem(path="p_in", says=f'"{_text(stream.p_in)}" is no pressure; allowed is above a perfect vacuum')
+        return
+    fluid = fluids.fluid_at(stream.fluid.spec(atmosphere), p, T)
+    if trouble := fluid.problem(T, "at the inlet"):
+        yield Problem(path="T_in", says=trouble)
+        return
+    named = isinstance(stream.fluid, PureFluid) and stream.fluid.name.strip().lower()
+    boiling = fluid.saturation_temperature(p)
+    if fluid.name == "water" and fluid.phase == "gas" and boiling is not None and named and named != "steam":
+        yield Problem(
+            path="T_in",
+            says=f'"{_text(stream.T_in)}" is above the boiling point of water, {boiling - 273.15:.4g} °C at '
+            f'{p / 1e5:.4g} bar abs; name the fluid "steam" where its vapour is meant',
+        )
 
 
 def _text(figure: float) -> str:

@@ -3,20 +3,26 @@
 from __future__ import annotations
 
 import json
+import math
 from collections.abc import Callable
+from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
+from typing import Any, TypeVar, cast
 
-from pydantic import ValidationError
+from pydantic import TypeAdapter, ValidationError
+from pydantic.json_schema import GenerateJsonSchema, JsonSchemaValue
+from pydantic_core import core_schema
 
 from engine import units
-from engine.case import EXCHANGERS, FLUID_TAGS, Case, Limits, Stream, stream_problems
-from engine.stated import CaseError, Figure, Input, Problem, Stated, problems_of
+from engine.case import ATMOSPHERE, EXCHANGERS, FLUID_TAGS, Case, Limits, PureFluid, Stream, stream_problems
+from engine.stated import SIDES, CaseError, Figure, Input, Problem, Side, Stated, dotted, problems_of, short
 
 FORMAT = "countercheck-case"
 VERSION = 1
 LARGEST = 1 << 20
 DEEPEST = 20
+
+_Part = TypeVar("_Part", bound=Input)
 
 UPGRADES: dict[int, Callable[[dict[str, Any]], dict[str, Any]]] = {}
 """Version to the step that makes the next version of it. A new version adds one line."""
@@ -24,87 +30,131 @@ UPGRADES: dict[int, Callable[[dict[str, Any]], dict[str, Any]]] = {}
 
 def load_case(path: str | Path) -> Case:
     """The case in a file. Raises CaseError with every problem found, each a sentence with its place."""
-    return parse_case(read_raw(path))
+    raw, problems = _read(_bytes_of(path))
+    try:
+        case = parse_case(raw)
+    except CaseError as error:
+        wrong = {problem.path for problem in problems}
+        raise CaseError(_once([*problems, *(p for p in error.problems if not _any_at(p.path, wrong))])) from None
+    if problems:
+        raise CaseError(problems)
+    return case
 
 
 def read_raw(path: str | Path) -> dict[str, Any]:
     """The file's keys as typed, not yet checked against what a case allows. Raises CaseError."""
+    return raw_of(_bytes_of(path))
+
+
+def _bytes_of(path: str | Path) -> bytes:
     path = Path(path)
+
+    def refused(says: str) -> CaseError:
+        return CaseError([Problem(path=str(path), says=says)])
+
+    if "\0" in str(path):
+        raise refused("is not the name of a file")
     try:
-        if path.is_dir():
-            raise CaseError([Problem(path=str(path), says="is a folder; allowed is a case file (JSON)")])
-        size = path.stat().st_size
-        if size > LARGEST:
-            says = f"holds {size / LARGEST:.1f} MiB; allowed is up to {LARGEST >> 20} MiB"
-            raise CaseError([Problem(path=str(path), says=says)])
-        data = path.read_bytes()
+        with path.open("rb") as file:
+            data = file.read(LARGEST + 1)
+    except IsADirectoryError:
+        raise refused("is a folder; allowed is a case file (JSON)") from None
     except OSError as error:
-        says = f"cannot be read: {(error.strerror or 'unknown reason').lower()}"
-        raise CaseError([Problem(path=str(path), says=says)]) from None
-    return raw_of(data)
+        raise refused(f"cannot be read: {(error.strerror or 'unknown reason').lower()}") from None
+    if len(data) > LARGEST:
+        raise refused(f"is too large; allowed is up to {LARGEST >> 20} MiB")
+    return data
 
 
 def raw_of(data: bytes | str) -> dict[str, Any]:
     """JSON text as a group of keys. Raises CaseError: size, encoding, depth, duplicate keys, NaN, infinities."""
-    if len(data) > LARGEST:
-        raise CaseError([Problem(path="", says=f"the file is over the allowed {LARGEST >> 20} MiB")])
-    try:
-        text = data.decode("utf-8-sig") if isinstance(data, bytes) else data
-    except UnicodeDecodeError:
-        raise CaseError([Problem(path="", says="the file is not text; allowed is JSON in UTF-8")]) from None
-    if not text.strip():
-        raise CaseError([Problem(path="", says="the file is empty; allowed is a case in JSON")])
-    if _depth(text) > DEEPEST:
-        raise CaseError([Problem(path="", says=f"the file nests deeper than the allowed {DEEPEST} levels")])
-    problems: list[Problem] = []
-
-    def keys_once(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
-        group: dict[str, Any] = {}
-        for key, value in pairs:
-            if key in group:
-                problems.append(Problem(path=key, says="stands twice in the same group; each key may stand once"))
-            group[key] = value
-        return group
-
-    def no_constant(word: str) -> None:
-        problems.append(Problem(path="", says=f"{word} is not a figure; write a finite number with its unit"))
-
-    def whole(digits: str) -> Any:
-        if len(digits) > 18:
-            problems.append(Problem(path="", says=f"a number of {len(digits)} digits; allowed are up to 18"))
-            return 0
-        return int(digits)
-
-    def pointed(digits: str) -> float:
-        value = float(digits)
-        if value in (float("inf"), float("-inf")) or len(digits) > 40:
-            says = f"{digits[:20]} is too large or too long; write a finite number with its unit"
-            problems.append(Problem(path="", says=says))
-            return 0.0
-        return value
-
-    try:
-        raw = json.loads(
-            text, object_pairs_hook=keys_once, parse_constant=no_constant, parse_int=whole, parse_float=pointed
-        )
-    except json.JSONDecodeError as error:
-        says = f"the file is not JSON: {error.msg.lower()} in line {error.lineno}, column {error.colno}"
-        raise CaseError([Problem(path="", says=says)]) from None
+    raw, problems = _read(data)
     if problems:
         raise CaseError(problems)
-    if not isinstance(raw, dict):
-        raise CaseError([Problem(path="", says="the file is not a group of keys in braces")])
     return raw
+
+
+def _read(data: bytes | str) -> tuple[dict[str, Any], list[Problem]]:
+    """The keys of a JSON text, and what single places of it are refused for; those hold None. Raises CaseError."""
+
+    def refused(says: str) -> CaseError:
+        return CaseError([Problem(path="", says=f"the file {says}")])
+
+    if len(data) > LARGEST:
+        raise refused(f"is too large; allowed is up to {LARGEST >> 20} MiB")
+    try:
+        text = data.decode() if isinstance(data, bytes) else data
+    except UnicodeDecodeError:
+        raise refused("is not text; allowed is JSON in UTF-8") from None
+    text = text.removeprefix("\ufeff")
+    if not text.strip():
+        raise refused("is empty; allowed is a case in JSON")
+    if _depth(text) > DEEPEST:
+        raise refused(f"nests deeper than the allowed {DEEPEST} levels")
+    try:
+        raw = json.loads(
+            text, object_pairs_hook=_keys_once, parse_constant=_not_finite, parse_int=_whole, parse_float=_pointed
+        )
+    except json.JSONDecodeError as error:
+        what = error.msg.lower().removesuffix(" at").removesuffix(" starting")
+        raise refused(f"is not JSON: {what} in line {error.lineno}, column {error.colno}") from None
+    problems: list[Problem] = []
+    raw = _without_wrong(raw, (), problems)
+    if not isinstance(raw, dict):
+        raise refused("is not a group of keys in braces")
+    return raw, problems
+
+
+@dataclass(frozen=True)
+class _Wrong:
+    """Stands where JSON holds what no case file may hold."""
+
+    says: str
+
+
+def _keys_once(pairs: list[tuple[str, Any]]) -> dict[str, Any]:
+    group: dict[str, Any] = {}
+    for key, value in pairs:
+        group[key] = _Wrong("stands twice in the same group; allowed is once") if key in group else value
+    return group
+
+
+def _not_finite(word: str) -> _Wrong:
+    return _Wrong(f"{word} is not a figure; allowed is a finite number with its unit, as text")
+
+
+def _whole(digits: str) -> Any:
+    if len(digits) > 18:
+        return _Wrong(f"is a number of {len(digits)} digits; allowed is up to 18")
+    return int(digits)
+
+
+def _pointed(digits: str) -> Any:
+    value = float(digits)
+    if len(digits) > 40 or math.isinf(value):
+        return _Wrong(f"{digits[:20]} is too large or too long; allowed is a finite number with its unit, as text")
+    return value
+
+
+def _without_wrong(part: Any, place: tuple[str | int, ...], problems: list[Problem]) -> Any:
+    """The part with None where something is wrong, which is added to the problems."""
+    if isinstance(part, _Wrong):
+        problems.append(Problem(path=dotted(place), says=part.says))
+        return None
+    if isinstance(part, dict):
+        return {key: _without_wrong(value, (*place, key), problems) for key, value in part.items()}
+    if isinstance(part, list):
+        return [_without_wrong(value, (*place, i), problems) for i, value in enumerate(part)]
+    return part
 
 
 def parse_case(raw: dict[str, Any]) -> Case:
     """The case that the keys state. Raises CaseError with every problem found at once."""
     raw = upgraded(raw)
-    problems: list[Problem] = []
     try:
         case = Case.model_validate(raw, context={"file": True})
     except ValidationError as error:
-        problems = problems_of(error, Case, frozenset((*FLUID_TAGS, *EXCHANGERS)))
+        problems = problems_of(error, Case, {"fluid": FLUID_TAGS, "exchanger": EXCHANGERS.keys()})
         problems += _problems_of_sound_parts(raw, {problem.path for problem in problems})
         raise CaseError(_once(problems)) from None
     problems = list(case.problems())
@@ -115,18 +165,23 @@ def parse_case(raw: dict[str, Any]) -> Case:
 
 def upgraded(raw: dict[str, Any]) -> dict[str, Any]:
     """The keys as the present version names them. Raises CaseError where they are not a case of a known version."""
-    form = raw.get("format")
+    if not isinstance(raw, dict):
+        raise CaseError([Problem(path="", says="a case is a group of keys in braces")])
+    problems = []
+    form, version = raw.get("format"), raw.get("version")
     if form != FORMAT:
-        says = f'"{form}" is not a case' if form is not None else "is missing"
-        raise CaseError([Problem(path="format", says=f'{says}; allowed is "{FORMAT}"')])
-    version = raw.get("version")
+        given = "is missing" if form is None else f"{short(form)} is not a case"
+        problems.append(Problem(path="format", says=f'{given}; allowed is "{FORMAT}"'))
     if isinstance(version, bool) or not isinstance(version, int) or version < 1:
-        given = "is missing" if version is None else f"{version!r} is not a version"
-        raise CaseError([Problem(path="version", says=f"{given}; allowed is a whole number from 1 to {VERSION}")])
-    if version > VERSION:
-        says = f"{version} is newer than this program knows; allowed is up to {VERSION}"
-        raise CaseError([Problem(path="version", says=says)])
-    for step in range(version, VERSION):
+        given = "is missing" if version is None else f"{short(version)} is not a version"
+        allowed = "1" if VERSION == 1 else f"a whole number from 1 to {VERSION}"
+        problems.append(Problem(path="version", says=f"{given}; allowed is {allowed}"))
+    elif version > VERSION:
+        says = f"{short(version)} is newer than this program knows; allowed is up to {VERSION}"
+        problems.append(Problem(path="version", says=says))
+    if problems:
+        raise CaseError(problems)
+    for step in range(int(version or VERSION), VERSION):
         raw = UPGRADES[step](dict(raw))
     return raw
 
@@ -134,42 +189,56 @@ def upgraded(raw: dict[str, Any]) -> dict[str, Any]:
 def _problems_of_sound_parts(raw: dict[str, Any], known: set[str]) -> list[Problem]:
     """When the file as a whole does not read, what its readable parts would still have been refused for."""
     found: list[Problem] = []
-    streams: dict[str, Stream] = {}
-    for side in ("inside", "outside"):
+    streams: dict[Side, Stream] = {}
+    for side in SIDES:
         given = raw.get(side)
         if not isinstance(given, dict):
             continue
-        sound = {key: value for key, value in given.items() if not _any_at(f"{side}.{key}", known)}
-        if "fluid" not in sound and not (isinstance(given.get("fluid"), dict) and "steam" in given["fluid"]):
-            # What else is missing beside the fluid does not depend on which fluid it will be.
-            sound["fluid"] = "Water"
-        part = _lenient(Stream, sound)
-        if isinstance(part, Stream):
-            own = [problem.under(side) for problem in part.problems()]
-            found += own
-            if not own and not _any_at(side, known):
-                streams[side] = part
-    kind = raw.get("exchanger", {}).get("type") if isinstance(raw.get("exchanger"), dict) else None
-    exchanger = _lenient(EXCHANGERS[kind], raw["exchanger"]) if kind in EXCHANGERS else None
-    if exchanger is not None:
-        found += [problem.under("exchanger") for problem in exchanger.problems()]
-    if len(streams) == 2:
-        found += stream_problems(streams["inside"], streams["outside"], 101325.0)
-    return [problem for problem in found if problem.path not in known]
+        stream = streams[side] = _readable(Stream, given, side, known)
+        for name in ("flow", "T_in", "p_in", "T_out"):
+            stream.__dict__.setdefault(name, None)
+        fluid = stream.__dict__.pop("fluid", None)
+        steam = isinstance(given.get("fluid"), dict) and "steam" in given["fluid"]
+        if fluid is not None or not steam:
+            # What else is missing does not depend on which fluid it will be, other than steam.
+            stream.__dict__["fluid"] = fluid or PureFluid(name="Water")
+            found += _found(stream, side)
+        stream.__dict__["fluid"] = fluid
+    given = raw.get("exchanger")
+    kind = given.get("type") if isinstance(given, dict) else None
+    if isinstance(given, dict) and isinstance(kind, str) and kind in EXCHANGERS:
+        found += _found(_readable(EXCHANGERS[kind], given, "exchanger", known), "exchanger")
+    stated = Case.declared()["atmosphere"]
+    given = raw.get("atmosphere", ATMOSPHERE) if "atmosphere" not in known else ATMOSPHERE
+    found += stream_problems(streams, float(stated.read(given)))
+    return [problem for problem in found if not _any_at(problem.path, known)]
+
+
+def _readable(model: type[_Part], raw: dict[str, Any], place: str, known: set[str]) -> _Part:
+    """The part with the fields that read; those that do not are absent from it."""
+    read: dict[str, Any] = {}
+    for name, field in model.model_fields.items():
+        if name in raw and not _any_at(f"{place}.{name}", known):
+            read[name] = TypeAdapter(field.rebuild_annotation()).validate_python(raw[name], context={"file": True})
+    part = cast(_Part, model.model_construct(**read))
+    for name in raw.keys() - read.keys():
+        part.__dict__.pop(name, None)
+    return part
+
+
+def _found(part: Input, place: str) -> list[Problem]:
+    """The problems of a part up to the first that depends on what could not be read."""
+    found: list[Problem] = []
+    try:
+        for problem in part.problems():
+            found.append(problem.under(place))
+    except AttributeError:
+        pass
+    return found
 
 
 def _any_at(place: str, paths: set[str]) -> bool:
     return any(path == place or path.startswith((f"{place}.", f"{place}[")) for path in paths)
-
-
-def _lenient(model: type[Input], raw: Any) -> Input | None:
-    """The part without the keys that are not known, where the rest of it reads."""
-    if not isinstance(raw, dict):
-        return None
-    try:
-        return model.model_validate({k: v for k, v in raw.items() if k in model.model_fields}, context={"file": True})
-    except ValidationError:
-        return None
 
 
 def _once(problems: list[Problem]) -> list[Problem]:
@@ -223,9 +292,19 @@ def _raw(part: Any, declared: Any = None) -> Any:
     return part
 
 
+class _WithoutDefaults(GenerateJsonSchema):
+    """A default is an SI value, which would not be valid text; what is assumed stands in the description."""
+
+    def default_schema(self, schema: core_schema.WithDefaultSchema) -> JsonSchemaValue:
+        return self.generate_inner(schema["schema"])
+
+
 def schema() -> dict[str, Any]:
     """JSON Schema of the case file, from the same declarations that check it."""
-    return Case.model_json_schema()
+    found = Case.model_json_schema(schema_generator=_WithoutDefaults)
+    found["properties"]["version"]["const"] = VERSION
+    found["required"] = ["format", "version", *found["required"]]
+    return {"$schema": GenerateJsonSchema.schema_dialect, **found}
 
 
 __all__ = [

@@ -5,8 +5,10 @@ JSON Schema and the report's input table all read that declaration.
 from __future__ import annotations
 
 import difflib
+import json
 import types
-from collections.abc import Iterable, Iterator, Mapping
+import unicodedata
+from collections.abc import Callable, Collection, Iterable, Iterator, Mapping
 from dataclasses import dataclass
 from itertools import pairwise
 from typing import Any, Literal, Union, get_args, get_origin
@@ -97,19 +99,19 @@ class Stated:
             figure = Figure(typed.value, typed.text, typed.sd, typed.quantity, typed.digit)
         elif isinstance(given, (int, float)) and not isinstance(given, bool):
             if file and self.quantities != ("dimensionless",):
-                raise _refused(f"{_short(given)} gives no unit; write it as text, for example {self._example()}")
+                raise _refused(f"{short(given)} gives no unit; write it as text, for example {self._example()}")
             figure = given if isinstance(given, Figure) else Figure(float(given), quantity=self.quantities[0])
         else:
-            raise _refused(f"{_short(given)} is not a figure; write it as text, for example {self._example()}")
+            raise _refused(f"{short(given)} is not a figure; write it as text, for example {self._example()}")
         if not (self.low <= figure <= self.high) or (self.above is not None and not figure > self.above):
-            raise _refused(f"{_short(given)} is out of bounds; allowed is {self.allowed()}")
+            raise _refused(f"{short(given)} is out of bounds; allowed is {self.allowed()}")
         return figure
 
     def _example(self) -> str:
         return f'"{self.example}"' if self.example else f'"{units.show(300.0, self.quantities[0], "si")}"'
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
-        optional = get_origin(source) in (Union, types.UnionType) and type(None) in get_args(source)
+        optional = _optional(source)
 
         def validate(given: Any, info: core_schema.ValidationInfo[Any]) -> Figure | None:
             if given is None and optional:
@@ -119,10 +121,12 @@ class Stated:
         return core_schema.with_info_plain_validator_function(validate)
 
     def __get_pydantic_json_schema__(self, schema: CoreSchema, handler: GetJsonSchemaHandler) -> dict[str, Any]:
+        plain = self.quantities == ("dimensionless",)
+        what = "A number" if plain else "A figure with its unit"
         return {
-            "type": "string",
+            "type": ["string", "number"] if plain else "string",
             "title": self.name,
-            "description": f"{self.help} A figure with its unit; {self.allowed()}.".strip(),
+            "description": _described(self.name, self.help, f"{what}, {self.allowed()}.", assumed=self.assumed),
             "examples": [self.example] if self.example else [],
         }
 
@@ -139,24 +143,23 @@ class Count:
 
     def read(self, given: Any) -> int:
         if isinstance(given, float) and given.is_integer() and not isinstance(given, Figure):
-            raise _refused(f"{given!r} is not a whole number without a point; write {int(given)}")
+            raise _refused(f"{short(given)} is not a whole number without a point; write {short(int(given))}")
         if isinstance(given, bool) or not isinstance(given, int):
-            raise _refused(f"{_short(given)} is not a whole number; allowed is {self.low} to {self.high}")
+            raise _refused(f"{short(given)} is not a whole number; allowed is {self.low} to {self.high}")
         if not self.low <= given <= self.high:
-            raise _refused(f"{_short(given)} is out of bounds; allowed is {self.low} to {self.high}")
+            raise _refused(f"{short(given)} is out of bounds; allowed is {self.low} to {self.high}")
         return given
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
-        optional = get_origin(source) in (Union, types.UnionType) and type(None) in get_args(source)
-        return core_schema.no_info_plain_validator_function(
-            lambda given: None if given is None and optional else self.read(given)
-        )
+        return _reader(self.read, source)
 
     def __get_pydantic_json_schema__(self, schema: CoreSchema, handler: GetJsonSchemaHandler) -> dict[str, Any]:
         return {
             "type": "integer",
             "title": self.name,
-            "description": self.help,
+            "description": _described(
+                self.name, self.help, f"A whole number, {self.low} to {self.high}.", assumed=self.assumed
+            ),
             "minimum": self.low,
             "maximum": self.high,
         }
@@ -176,18 +179,20 @@ class Choice:
             for option in self.options:
                 if given.strip().lower() == option.lower():
                     return option
-        near = difflib.get_close_matches(str(given), self.options, 1, 0.5) if isinstance(given, str) else []
-        hint = f'; did you mean "{near[0]}"?' if near else ""
-        raise _refused(f"{_short(given)} is not offered; allowed is {', '.join(self.options)}{hint}")
+        near = _near(given, list(self.options), 0.5) if isinstance(given, str) else ""
+        hint = f'; did you mean "{near}"?' if near else ""
+        raise _refused(f"{short(given)} is not offered; allowed is {', '.join(self.options)}{hint}")
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
-        optional = get_origin(source) in (Union, types.UnionType) and type(None) in get_args(source)
-        return core_schema.no_info_plain_validator_function(
-            lambda given: None if given is None and optional else self.read(given)
-        )
+        return _reader(self.read, source)
 
     def __get_pydantic_json_schema__(self, schema: CoreSchema, handler: GetJsonSchemaHandler) -> dict[str, Any]:
-        return {"type": "string", "title": self.name, "description": self.help, "enum": list(self.options)}
+        return {
+            "type": "string",
+            "title": self.name,
+            "description": _described(self.name, self.help, "One of the words of the list.", assumed=self.assumed),
+            "enum": list(self.options),
+        }
 
 
 @dataclass(frozen=True)
@@ -201,20 +206,41 @@ class Words:
 
     def read(self, given: Any) -> str:
         if not isinstance(given, str):
-            raise _refused(f"{_short(given)} is not text")
+            quoted = f'; write "{given}"' if isinstance(given, (int, float)) and not isinstance(given, bool) else ""
+            raise _refused(f"{short(given)} is not text{quoted}")
         if len(given) > self.longest:
             raise _refused(f"is {len(given)} characters long; allowed is up to {self.longest}")
-        if any(ord(c) < 32 and not (self.lines and c in "\n\t\r") for c in given):
+        if any(unicodedata.category(c) == "Cc" and not (self.lines and c in "\n\t\r") for c in given):
             raise _refused("holds control characters; allowed is plain text")
         if any("\ud800" <= c <= "\udfff" for c in given):
             raise _refused("holds half of a surrogate pair; allowed is plain text")
         return given
 
     def __get_pydantic_core_schema__(self, source: Any, handler: GetCoreSchemaHandler) -> CoreSchema:
-        return core_schema.no_info_plain_validator_function(self.read)
+        return _reader(self.read, source)
 
     def __get_pydantic_json_schema__(self, schema: CoreSchema, handler: GetJsonSchemaHandler) -> dict[str, Any]:
-        return {"type": "string", "title": self.name, "description": self.help, "maxLength": self.longest}
+        return {
+            "type": "string",
+            "title": self.name,
+            "description": _described(self.name, self.help, f"Text of up to {self.longest} characters."),
+            "maxLength": self.longest,
+        }
+
+
+def _optional(source: Any) -> bool:
+    return get_origin(source) in (Union, types.UnionType) and type(None) in get_args(source)
+
+
+def _reader(read: Callable[[Any], Any], source: Any) -> CoreSchema:
+    optional = _optional(source)
+    return core_schema.no_info_plain_validator_function(
+        lambda given: None if given is None and optional else read(given)
+    )
+
+
+def _described(name: str, *sentences: str, assumed: str = "") -> str:
+    return " ".join(part for part in (f"{name}.", *sentences, f"When absent: {assumed}." if assumed else "") if part)
 
 
 Declaration = Stated | Count | Choice | Words
@@ -262,37 +288,37 @@ class CaseError(ValueError):
         super().__init__("\n".join(str(problem) for problem in self.problems))
 
 
-def problems_of(error: ValidationError, model: type[BaseModel], tags: frozenset[str]) -> list[Problem]:
-    """pydantic's errors as sentences with the user's own paths. `tags` are union labels to leave out of the path."""
+Unions = Mapping[str, Collection[str]]
+"""Key that holds one of several kinds, to the tags of those kinds."""
+
+
+def problems_of(error: ValidationError, model: type[BaseModel], unions: Unions) -> list[Problem]:
+    """pydantic's errors as sentences with the user's own paths."""
     found = []
     for item in error.errors(include_url=False, include_input=True):
-        # A tag stands once, right after the key that holds the union; a field may bear the same name.
-        place = tuple(step for before, step in pairwise(("", *item["loc"])) if step not in tags or before in tags)
+        place = [step for before, step in pairwise(("", *item["loc"])) if step not in unions.get(str(before), ())]
         path = dotted(place)
         kind = item["type"]
         if kind == "extra_forbidden":
-            names = list(_fields_at(model, item["loc"][:-1]))
-            near = difflib.get_close_matches(str(item["loc"][-1]), names, 1, 0.4)
-            hint = f'; did you mean "{near[0]}"?' if near else f"; known here: {', '.join(sorted(names))}"
-            says = f"is not a known key{hint}"
+            says = _unknown_key(model, item["loc"], unions)
         elif kind == "missing":
             says = "is missing"
         elif kind == "stated":
             says = item["msg"]
         elif kind in ("model_type", "model_attributes_type", "dict_type"):
-            says = f"{_short(item['input'])} is not a group of keys in braces"
+            says = f"{short(item['input'])} is not a group of keys in braces"
         elif kind in ("tuple_type", "list_type"):
-            says = f"{_short(item['input'])} is not a list in brackets"
+            says = f"{short(item['input'])} is not a list in brackets"
         elif kind == "too_short":
-            says = f"holds too few entries; allowed is {item['ctx']['min_length']} or more"
+            if len(item["input"]) >= item["ctx"]["min_length"]:
+                continue  # only the entries that read are counted; what is wrong with the others is said there
+            says = f"holds too few entries, {len(item['input'])}; allowed is {item['ctx']['min_length']} or more"
         elif kind == "too_long":
-            says = f"holds too many entries; allowed is up to {item['ctx']['max_length']}"
+            says = f"holds too many entries, {len(item['input'])}; allowed is up to {item['ctx']['max_length']}"
         elif "says" in item.get("ctx", {}):
-            says = f"{_short(item['input'])} {item['ctx']['says']}"
-        elif kind in ("union_tag_not_found", "union_tag_invalid"):
-            says = f"{_short(item['input'])} is not of a known kind"
+            path, says = _not_offered(path, item["input"], item["ctx"])
         else:
-            says = f"{_short(item['input'])} cannot be used: {item['msg'][0].lower()}{item['msg'][1:]}"
+            says = f"{short(item['input'])} cannot be used"
         found.append(Problem(path=path, says=says))
     return found
 
@@ -305,16 +331,41 @@ def dotted(steps: Iterable[str | int]) -> str:
     return path
 
 
-def _fields_at(model: type[BaseModel], steps: Iterable[str | int]) -> Iterator[str]:
-    """Names of the keys that are known at a place, union members included."""
+def _unknown_key(model: type[BaseModel], place: tuple[str | int, ...], unions: Unions) -> str:
+    """The sentence on a key that is not known where it stands, with the nearest one that is."""
+    *way, key = place
+    here = sorted(_fields(_models_at(model, way, unions)))
+    tagged = len(way) > 1 and way[-1] in unions.get(str(way[-2]), ())
+    kinds = _models_at(model, way[:-1], unions) if tagged else []
+    if owners := [f'"{tag}"' for kind in kinds if key in kind.model_fields for tag in _tags(kind)]:
+        return f'goes with {" or ".join(owners)}, not with "{way[-1]}"; known here: {", ".join(here)}'
+    near = _near(str(key), here, 0.6) or _near(str(key), sorted(_fields(kinds)), 0.6) or _near(str(key), here, 0.4)
+    return "is not a known key; " + (f'did you mean "{near}"?' if near else f"known here: {', '.join(here)}")
+
+
+def _not_offered(path: str, given: Any, context: Mapping[str, Any]) -> tuple[str, str]:
+    """Place and sentence where no kind of a union was meant; `key` of the context is the one that says which."""
+    key = context.get("key")
+    if key is None or not isinstance(given, dict):
+        return path, f"{short(given)} {context['says']}"
+    if key not in given:
+        return dotted((path, key)), f"is missing; allowed is {context['allowed']}"
+    return dotted((path, key)), f"{short(given[key])} is not offered; allowed is {context['allowed']}"
+
+
+def _models_at(model: type[BaseModel], steps: Iterable[str | int], unions: Unions) -> list[type[BaseModel]]:
+    """The groups of keys that may stand at a place: all kinds of a union, or the one whose tag is the last step."""
     at: list[type[BaseModel]] = [model]
-    for step in steps:
-        if isinstance(step, int):
-            continue
-        inner = [m for part in at if step in part.model_fields for m in _models(part.model_fields[step].annotation)]
-        at = inner or [part for part in at if step in _tags(part)] or at
-    for part in at:
-        yield from (field.alias or name for name, field in part.model_fields.items())
+    for before, step in pairwise(("", *steps)):
+        if step in unions.get(str(before), ()):
+            at = [part for part in at if step in _tags(part)]
+        elif isinstance(step, str):
+            at = [m for part in at if step in part.model_fields for m in _models(part.model_fields[step].annotation)]
+    return at
+
+
+def _fields(models: Iterable[type[BaseModel]]) -> set[str]:
+    return {field.alias or name for model in models for name, field in model.model_fields.items()}
 
 
 def _tags(model: type[BaseModel]) -> set[str]:
@@ -329,10 +380,27 @@ def _models(annotation: Any) -> list[type[BaseModel]]:
     return [model for part in get_args(annotation) for model in _models(part)]
 
 
+def _near(word: str, known: list[str], cutoff: float) -> str:
+    """The longest known word that begins the given one, or one that it begins, else the one most like it, else ""."""
+    folded = word.lower()
+    begun = [
+        k
+        for k in known
+        if min(len(k), len(word)) > 2 and (folded.startswith(k.lower()) or k.lower().startswith(folded))
+    ]
+    return next(iter(sorted(begun, key=len, reverse=True) or difflib.get_close_matches(word, known, 1, cutoff)), "")
+
+
 def _refused(sentence: str) -> PydanticCustomError:
-    return PydanticCustomError("stated", "{sentence}", {"sentence": sentence})
+    # Half of a surrogate pair is no text that could be shown or kept.
+    sound = sentence.encode("utf-8", "replace").decode()
+    return PydanticCustomError("stated", "{sentence}", {"sentence": sound})
 
 
-def _short(given: Any) -> str:
-    text = f'"{given}"' if isinstance(given, str) else repr(given)
+def short(given: Any) -> str:
+    """What was given, as it stands in a file, cut where it is long."""
+    try:
+        text = json.dumps(given, ensure_ascii=False)
+    except (TypeError, ValueError, RecursionError):
+        text = f"something of the type {type(given).__name__}"
     return text if len(text) <= 60 else f"{text[:50]}… ({len(text)} characters)"
