@@ -18,7 +18,7 @@ from pydantic_core import PydanticCustomError
 from engine import effectiveness as exact
 from engine.correlations import Array, Correlation, Excursion, Source, inside_tubes, losses
 from engine.correlations import across_bundle as shell
-from engine.exchangers import Cells, Film, Flowing, layout, standard_sizes
+from engine.exchangers import Cells, Film, Flowing, entrance_nodes, layout, sliver, standard_sizes
 from engine.exchangers.double_pipe import Factors, length
 from engine.stated import Choice, Count, Input, Problem, Side, Stated, Words
 
@@ -296,6 +296,8 @@ class ShellAndTube(Input):
         assert self.baffle_spacing is not None
         room, spacing = float(self.tube_length) * self.shell_type.share, float(self.baffle_spacing)
         stated = [None if end is None else float(end) for end in (self.inlet_spacing, self.outlet_spacing)]
+        if spacing > room:
+            raise ValueError(f"{_mm(spacing)} is longer than the {_mm(room)} of tube that the baffles stand on")
         if self.baffles is not None:
             count = self.baffles * self.shell_type.share
         else:
@@ -305,15 +307,15 @@ class ShellAndTube(Input):
         both = None not in stated
         if both and self.baffles is not None and abs(rest) > 0.02 * room:
             raise ValueError(
-                f"{self.baffles} baffles with their spacings take {(room - rest) * 1e3:.4g} mm of the "
-                f"{room * 1e3:.4g} mm of tube they stand on; leave out their number or one of the spacings"
+                f"{self.baffles} baffles with their spacings take {_mm(room - rest)} of the "
+                f"{_mm(room)} of tube they stand on; leave out their number or one of the spacings"
             )
         share = rest / (2 if both else stated.count(None))
         ends = [end + share if both and end is not None else share if end is None else end for end in stated]
         if min(ends) <= 0:
             raise ValueError(
-                f"{count:.4g} baffles {spacing * 1e3:.4g} mm apart and their end spacings are longer than the "
-                f"{room * 1e3:.4g} mm of tube they stand on"
+                f"{count:.4g} baffles {_mm(spacing)} apart and their end spacings are longer than the "
+                f"{_mm(room)} of tube they stand on"
             )
         return float(count), ends[0], ends[1]
 
@@ -428,11 +430,16 @@ class ShellAndTube(Input):
     def _cells(self, order: layout.Layout) -> Cells:
         L = float(self.tube_length)
         start, end = (order.span * L).T
+        leg: dict[Side, float] = {"inside": L, "outside": L}
+        x, weights = entrance_nodes(start, end, np.zeros(len(start), dtype=bool), L)
+        begin, stop = sliver(x.ravel())
         return Cells(
             layout=order,
             start={"inside": start, "outside": start},
             end={"inside": end, "outside": end},
-            leg={"inside": L, "outside": L},
+            leg=leg,
+            nodes=Cells(layout=order, start={"inside": begin}, end={"inside": stop}, leg=leg),
+            weights=weights,
         )
 
     def _layout(self, fineness: int) -> layout.Layout:
@@ -442,18 +449,16 @@ class ShellAndTube(Input):
             n = 8 * fineness
             unit = layout.x_shell(n, passes, first, rows=max(1, n // passes))
         else:
-            # A multiple of eight, so that the halves of every split shell hold whole bays.
-            n = (24 if passes == 1 else 32) * fineness
+            n = 32 * fineness
             if letter == "E":
                 # For the films 12 bays are plenty; the temperatures are those of bays a quarter as long.
-                n = n if passes == 1 else 12 * fineness
-                unit = layout.shell_pass(n, passes, first, halvings=2)
+                unit = layout.shell_pass(24 * fineness if passes == 1 else 12 * fineness, passes, first, halvings=2)
             elif letter == "F":
                 unit = layout.f_shell(n // 2, passes, first, float(self.long_baffle_leakage))
             elif letter == "J":
                 unit = layout.j_shell(n, passes, 1 if self.shell_inlets == 1 else 2)
             else:
-                unit = (layout.g_shell if letter == "G" else layout.h_shell)(n // 2, passes, first)
+                unit = (layout.g_shell if letter == "G" else layout.h_shell)(n, passes, first)
         return layout.in_series(unit, self.shells_in_series)
 
     # --- films ------------------------------------------------------------------------------------------------------
@@ -900,7 +905,11 @@ class ShellAndTube(Input):
                 _ = self.path_spacings
             except ValueError as error:
                 sound = False
-                path = "baffles" if self.baffles is not None else "baffle_spacing"
+                path = (
+                    "baffles"
+                    if self.baffles is not None and self.baffle_spacing < self.tube_length
+                    else "baffle_spacing"
+                )
                 yield Problem(path=path, says=str(error))
         try:
             _ = self.baffle_clearance
