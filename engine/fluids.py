@@ -230,14 +230,16 @@ class Interpolated(Fluid):
         if not high > low:
             return self
         T = 0.5 * (low + high) + 0.5 * (high - low) * _nodes(_NODES)
-        rows = _coefficients(np.stack([*self.values(T, *PROPERTIES), self.values(T, "Pr")[0], self.enthalpy(T)]))
-        size = np.abs(rows).max(axis=1, keepdims=True)
-        small = (np.abs(rows) < _WINDOW_AGREES * size).all(axis=0)
-        terms = int(np.flatnonzero(~small)[-1]) + 1
-        if terms > _NODES - 4:
+        seen = np.stack([*self.values(T, *PROPERTIES, "Pr"), self.enthalpy(T)])
+        rows = _coefficients(seen)
+        small = np.abs(rows) < (np.array(_WINDOW_AGREES) * np.abs(seen).min(axis=1))[:, None]
+        # The enthalpy's zero is arbitrary: its digits count against its change.
+        small[-1] = np.abs(rows[-1]) < _WINDOW_AGREES[-1] * np.ptp(seen[-1])
+        terms = tuple(int(np.flatnonzero(~row)[-1]) + 1 for row in small)
+        if max(terms) > _NODES - 4:
             return self
         given = {f.name: getattr(self, f.name) for f in fields(Fluid)}
-        return Windowed(**given, low=low, high=high, rows=rows[:, :terms])
+        return Windowed(**given, low=low, high=high, rows=rows, terms=terms)
 
     def _over(self, T: ArrayLike, rows: int, evaluate: Callable[[_Piece, Array], Array]) -> Array:
         """`evaluate(piece, T)` of shape (rows, T.size), piece by piece, as an array of shape (rows, *T.shape)."""
@@ -271,7 +273,9 @@ class Windowed(Fluid):
     low: float
     high: float
     rows: Array
-    """Chebyshev coefficients of rho, cp, mu, k, Pr and enthalpy; shape (6, terms)."""
+    """Chebyshev coefficients of rho, cp, mu, k, Pr and enthalpy; shape (6, nodes)."""
+    terms: tuple[int, ...]
+    """How many of them each row needs."""
 
     def values(self, T: ArrayLike, *names: str) -> tuple[Array, ...]:
         return tuple(self._polynomials(T, [_ROWS[name] for name in names]))
@@ -283,12 +287,13 @@ class Windowed(Fluid):
 
     def _polynomials(self, T: ArrayLike, which: list[int]) -> Array:
         T = np.asarray(T, dtype=float)
-        rows = self.rows[which]
+        terms = max(self.terms[row] for row in which)
+        rows = self.rows[which, :terms]
         x = (np.clip(T.ravel(), self.low, self.high) - 0.5 * (self.low + self.high)) * (2 / (self.high - self.low))
         out = np.empty((len(which), x.size))
         for start in range(0, x.size, _CHUNK):
             part = slice(start, start + _CHUNK)
-            out[:, part] = rows @ _chebyshev(x[part], self.rows.shape[1])
+            out[:, part] = rows @ _chebyshev(x[part], terms)
         return out.reshape(len(which), *T.shape)
 
 
@@ -761,8 +766,8 @@ _NEGLIGIBLE = 1e-12
 _NARROWEST = 1e-3
 """Kelvin. CoolProp's transport properties have corners and steps; a piece this narrow holds one."""
 _LARGEST_STEP = 0.03
-_WINDOW_AGREES = 1e-9
-"""Relative size below which a term of a windowed polynomial is left out."""
+_WINDOW_AGREES = (1e-8, 1e-8, 1e-7, 1e-7, 1e-7, 1e-11)
+"""Relative size below which a term of a windowed polynomial is left out, by row."""
 _CHUNK = 2048
 
 
