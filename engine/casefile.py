@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import math
 from collections.abc import Callable
+from contextlib import suppress
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any, TypeVar, cast
@@ -227,13 +228,12 @@ def _readable(model: type[_Part], raw: dict[str, Any], place: str, known: set[st
 
 
 def _found(part: Input, place: str) -> list[Problem]:
-    """The problems of a part up to the first that depends on what could not be read."""
+    """The problems of a part, without those that depend on what could not be read."""
     found: list[Problem] = []
-    try:
-        for problem in part.problems():
-            found.append(problem.under(place))
-    except AttributeError:
-        pass
+    for check in part.checks():
+        with suppress(AttributeError):
+            for problem in check:
+                found.append(problem.under(place))
     return found
 
 

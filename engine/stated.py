@@ -255,6 +255,10 @@ class Input(BaseModel):
         """What does not go together in this part of the input; paths are relative to it."""
         return iter(())
 
+    def checks(self) -> Iterable[Iterator[Problem]]:
+        """The same check by check, so that one can fail for want of a field and the others still be made."""
+        return (self.problems(),)
+
     @classmethod
     def declared(cls) -> Mapping[str, Declaration]:
         """Field name to declaration, for the fields that hold a single figure, count, choice or text."""

@@ -34,7 +34,8 @@ class Pipe(Input):
         """Outside and inside diameter [m]."""
         if self.nps is not None and self.schedule is not None:
             return standard_sizes.pipe(self.nps, self.schedule)
-        assert self.od is not None and self.id is not None
+        assert self.od is not None
+        assert self.id is not None
         return float(self.od), float(self.id)
 
     def problems(self) -> Iterator[Problem]:
@@ -50,10 +51,13 @@ class Pipe(Input):
             except ValueError as error:
                 yield Problem(path="", says=str(error))
         elif self.od is not None and self.id is not None and self.id >= self.od:
-            yield Problem(path="id", says="is not smaller than the outside diameter; a pipe has a wall")
+            says = f"{self.id * 1e3:.4g} mm is not smaller than the outside diameter, {self.od * 1e3:.4g} mm"
+            yield Problem(path="id", says=says)
 
 
 class Banks(Input):
+    """Into how many equal streams each fluid is split."""
+
     inside: Annotated[int, Count("Inside branches", 1, 24, assumed="the inside fluid is not split")] = 1
     outside: Annotated[int, Count("Outside branches", 1, 24, assumed="the outside fluid is not split")] = 1
 
@@ -442,25 +446,19 @@ class DoublePipe(Input):
         # Ends of opposite sign have crossed: no area of this arrangement gives them.
         return lmtd, np.where(ends[0] * ends[1] > 0, 1.0, 0.0)
 
+    def checks(self) -> tuple[Iterator[Problem], ...]:
+        return self._pipe_problems(), self._bank_problems(), self._wall_problems()
+
     def problems(self) -> Iterator[Problem]:
+        for check in self.checks():
+            yield from check
+
+    def _pipe_problems(self) -> Iterator[Problem]:
         sound = True
         for name in ("inner_pipe", "outer_pipe"):
             for problem in getattr(self, name).problems():
                 sound = False
                 yield problem.under(name)
-        for problem in self.banks_in_parallel.problems():
-            yield problem.under("banks_in_parallel")
-        if self.inner_pipes != 1:
-            says = f"{self.inner_pipes} is not rated yet: only one inner pipe in an outer pipe is supported"
-            yield Problem(path="inner_pipes", says=says)
-        if (self.material is None) == (self.wall_conductivity is None):
-            says = 'one of "material" and "wall_conductivity" must be stated, not both and not neither'
-            yield Problem(path="material", says=says)
-        elif self.material is not None:
-            try:
-                standard_sizes.conductivity(self.material, np.asarray(300.0))
-            except ValueError as error:
-                yield Problem(path="material", says=str(error))
         if not sound:
             return
         mm = 1e3
@@ -470,7 +468,8 @@ class DoublePipe(Input):
                 says=f"{self.tube_od * mm:.4g} mm outside does not fit into the outer pipe's bore of "
                 f"{self.shell_id * mm:.4g} mm",
             )
-        elif self.fins is not None:
+            return
+        if self.fins is not None:
             if self.tube_od + 2 * self.fins.height > self.shell_id:
                 says = (
                     f"fins of {self.fins.height * mm:.4g} mm on {self.tube_od * mm:.4g} mm do not fit into the bore of "
@@ -478,15 +477,36 @@ class DoublePipe(Input):
                 )
                 yield Problem(path="fins.height", says=says)
             if self.fins.count * self.fins.thickness >= 0.8 * np.pi * self.tube_od:
-                yield Problem(path="fins.count", says="fins of this thickness leave no bare wall between them")
+                says = (
+                    f"{self.fins.count} fins of {self.fins.thickness * mm:.4g} mm leave no bare wall between them; "
+                    f"allowed is up to {0.8 * np.pi * self.tube_od / self.fins.thickness:.0f}"
+                )
+                yield Problem(path="fins.count", says=says)
         for side in ("inside", "outside"):
             rough = float(getattr(self, f"{side}_roughness"))
             d = self.tube_id if side == "inside" else self.shell_id - self.tube_od
             if rough > 0.05 * d:
                 yield Problem(
                     path=f"{side}_roughness",
-                    says=f"is over 5 % of the passage of {d * mm:.4g} mm; allowed is up to that",
+                    says=f"{rough * mm:.4g} mm is over 5 % of the passage of {d * mm:.4g} mm; allowed is up to that",
                 )
+
+    def _bank_problems(self) -> Iterator[Problem]:
+        for problem in self.banks_in_parallel.problems():
+            yield problem.under("banks_in_parallel")
+        if self.inner_pipes != 1:
+            says = f"{self.inner_pipes} is not rated yet: only one inner pipe in an outer pipe is supported"
+            yield Problem(path="inner_pipes", says=says)
+
+    def _wall_problems(self) -> Iterator[Problem]:
+        if (self.material is None) == (self.wall_conductivity is None):
+            says = 'one of "material" and "wall_conductivity" must be stated, not both and not neither'
+            yield Problem(path="material", says=says)
+        elif self.material is not None:
+            try:
+                standard_sizes.conductivity(self.material, np.asarray(300.0))
+            except ValueError as error:
+                yield Problem(path="material", says=str(error))
 
 
 __all__ = ["Banks", "DoublePipe", "Factors", "Field", "Fins", "Pipe"]
