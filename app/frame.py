@@ -20,11 +20,17 @@ STYLE = """<style>
 [data-testid="stMainBlockContainer"] {padding-top: 3.5rem}
 [data-testid="stMarkdownContainer"] table {display: block; overflow-x: auto; width: fit-content; max-width: 100%}
 [data-testid="stMarkdownContainer"] td:not(:first-child) {font-variant-numeric: tabular-nums}
+.st-key-answer p {font-size: 1.25rem; font-weight: 600; line-height: 1.4}
+@media (hover: hover) {
+  [data-testid="stWidgetLabel"] [data-testid="stTooltipIcon"] {visibility: hidden}
+  [data-testid="stElementContainer"]:is(:hover, :focus-within) [data-testid="stTooltipIcon"] {visibility: visible}
+}
 @media (max-width: 640px) {
   [data-testid="stMarkdownContainer"] :is(td, th) {font-size: 0.8rem; padding: 0.25rem 0.4rem}
 }
 </style>"""
-"""A wide table scrolls within itself, never the page."""
+"""A wide table scrolls within itself, never the page. The help of a box shows while the box is pointed at or typed in,
+so that the tabulator key goes from box to box."""
 
 
 def drawn(show: Callable[[], None]) -> Callable[[], None]:

@@ -22,6 +22,8 @@ KINDS = {
     "steam": "Condensing steam",
 }
 """What a user calls the kinds of fluid; exchangers carry their own title."""
+LATER = ("steam",)
+"""Kinds that a file may state and no rating takes yet: offered only where they are stated already."""
 NOT_STATED = "not stated"
 NOZZLES, DETAILS = "Nozzles", "Further details"
 
@@ -39,11 +41,11 @@ class Problems:
     def take(self, *paths: Path) -> list[str]:
         return [says for path in paths for says in self._left.pop(engine.dotted(path), [])]
 
-    def under(self, path: Path) -> int:
-        """How many there are at a place and below it."""
+    def under(self, path: Path) -> list[str]:
+        """What is said at a place and below it, and not taken yet."""
         place = engine.dotted(path)
         below = (f"{place}.", f"{place}[")
-        return sum(len(says) for at, says in self._left.items() if at == place or at.startswith(below))
+        return [text for at, says in self._left.items() if at == place or at.startswith(below) for text in says]
 
     def rest(self) -> dict[str, list[str]]:
         """Those that no field has taken."""
@@ -100,7 +102,7 @@ class Form:
 
     def fold(self, title: str, places: Sequence[Path], draw: Callable[[], None]) -> None:
         """Optional fields in an expander that is open where something is stated or wrong in it."""
-        wrong = sum(self.problems.under(place) for place in places)
+        wrong = sum(len(self.problems.under(place)) for place in places)
         stated = sum(_count(self.stated(place)) for place in places)
         note = f" · {wrong} to fix" if wrong else f" · {stated} stated" if stated else ""
         with st.expander(f"{title}{note}", expanded=bool(wrong)):
@@ -109,15 +111,15 @@ class Form:
     def boxes(self, inner: Sequence[Part], path: Path, columns: int, within: Path | None = None) -> None:
         for first in range(0, len(inner), columns):
             row = inner[first : first + columns]
-            said = any(self.problems.under((*path, part.name)) for part in row)
-            for part, place in zip(row, _side_by_side(columns, "top" if said else "bottom"), strict=False):
+            wrong = any(says != MISSING for part in row for says in self.problems.under((*path, part.name)))
+            for part, place in zip(row, _side_by_side(columns, "top" if wrong else "bottom"), strict=False):
                 with place:
                     self.box(part, (*path, part.name), within)
 
     def kinds(self, part: Part, path: Path) -> None:
         """A choice between kinds of group, and the fields of the chosen one."""
         model = fields.kind_stated(part.models, self.stated(path))
-        kinds = {fields.kind_of(m): m for m in part.models}
+        kinds = {fields.kind_of(m): m for m in part.models if m is model or fields.kind_of(m) not in LATER}
         widget = self.key((*path, "kind"))
         session.start(widget, fields.kind_of(model))
         st.selectbox(
@@ -191,39 +193,47 @@ class Form:
             st.selectbox(
                 declared.name,
                 options,
+                index=None,
+                placeholder="needed: choose",
                 format_func=lambda option: NOT_STATED if option is None else option.capitalize(),
                 **common,
                 args=(path, widget, declared, shown, within),
-            )
-        elif names:
-            options = list(names) if not text or text in names else [text, *names]
-            session.start(widget, text or None)
-            st.selectbox(
-                declared.name,
-                options,
-                index=None,
-                placeholder=f"{'needed: ' if needed else ''}choose, or type a name",
-                accept_new_options=True,
-                **common,
-                args=(path, widget, declared, text, within),
             )
         else:
             shown = self.display.typed(text, declared.quantities) if isinstance(declared, engine.Stated) else text
             draw = st.text_area if getattr(declared, "lines", False) else st.text_input
             session.start(widget, shown)
-            draw(
-                declared.name,
-                placeholder=self._placeholder(part, needed),
-                **common,
-                args=(path, widget, declared, shown, within),
-            )
+            row = st.container(horizontal=True, vertical_alignment="bottom") if names else st.container()
+            with row:
+                draw(
+                    declared.name,
+                    placeholder=self._placeholder(part, needed, names),
+                    **common,
+                    args=(path, widget, declared, shown, within),
+                )
+                if names:
+                    self._list_of(names, declared.name, path, widget)
         for says in problems:
             if says != MISSING and not (says and not text):
                 _wrong(says)
 
-    def _placeholder(self, part: Part, needed: bool) -> str:
+    def _list_of(self, names: Sequence[str], label: str, path: Path, widget: str) -> None:
+        """Names to choose from, beside a box in which any other may be typed."""
+        with st.popover("List", help=f"{label}: known names"):
+            chosen = self.key((*path, "chosen"))
+            st.selectbox(
+                f"{label}: known names",
+                names,
+                None,
+                key=chosen,
+                placeholder="type a few letters",
+                on_change=_chosen,
+                args=(path, chosen, widget),
+            )
+
+    def _placeholder(self, part: Part, needed: bool, names: Sequence[str]) -> str:
         declared = part.declared
-        example = getattr(declared, "example", "")
+        example = getattr(declared, "example", "") or (names[0] if names else "")
         if needed:
             return f"needed, e.g. {example}" if example else "needed"
         if isinstance(declared, engine.Stated) and part.default is not None:
@@ -246,7 +256,7 @@ def _side_by_side(count: int, aligned: str = "top") -> Sequence[Any]:
 
 
 def _wrong(says: str) -> None:
-    st.markdown(f":red[✗ {plain(says[0].upper() + says[1:])}]")
+    st.caption(f":red[✗ {plain(says[0].upper() + says[1:])}]")
 
 
 def _help(declared: Any) -> str | None:
@@ -292,7 +302,7 @@ def _count(stated: Any) -> int:
 
 def _suggestions(part: Part, named: bool) -> Sequence[str]:
     if named:
-        return session.fluid_names()["pure"]
+        return session.fluid_names()["fluid"]
     if part.name == "solution":
         return session.fluid_names()["solution"]
     return tuple(engine.METALS) if part.name == "material" else ()
@@ -316,6 +326,13 @@ def _edited(path: Path, widget: str, declared: Any, shown: Any, within: Path | N
         session.put(path, text, within)
         if isinstance(declared, engine.Stated):
             session.show_in(widget, session.display().typed(text, declared.quantities))
+
+
+def _chosen(path: Path, chosen: str, widget: str) -> None:
+    name = session.typed(chosen)
+    if name is not None:
+        session.put(path, name)
+        session.show_in(widget, name)
 
 
 def _switched(path: Path, model: type[engine.Input], kinds: Mapping[str, type[engine.Input]], widget: str) -> None:

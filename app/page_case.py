@@ -24,7 +24,7 @@ FIRST = ("tag", "service")
 def show() -> None:
     problems = Problems(session.checked(session.text_of(session.case())).problems)
     form = Form(problems)
-    st.title(plain(form.stated(("tag",)) or "New case"))
+    st.title(plain(form.stated(("tag",)) or "New case"), anchor=False)
     with st.container(horizontal=True):
         opening()
         samples()
@@ -34,7 +34,7 @@ def show() -> None:
     top = st.container()
     about(form)
     sides(form)
-    st.subheader("Exchanger")
+    st.subheader("Exchanger", anchor=False)
     form.kinds(_part("exchanger"), ("exchanger",))
     form.fold("Limits of the equipment", [("limits",)], lambda: _limits(form))
     with top:
@@ -142,7 +142,7 @@ def sides(form: Form) -> None:
     model = fields.kind_stated(_part("exchanger").models, form.stated(("exchanger",)))
     for side, place in zip(engine.SIDES, st.columns(2, gap="large"), strict=True):
         with place:
-            st.subheader(model.side_names[side])
+            st.subheader(model.side_names[side], anchor=False)
             stream = _part(side).models[0]
             form.said((side,))
             for part in fields.parts(stream):

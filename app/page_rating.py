@@ -25,7 +25,7 @@ GRADES = {
 def show() -> None:
     raw, present = session.current()
     problems = session.checked(session.text_of(session.case())).problems
-    st.title(plain(session.case().get("tag") or "Rating"))
+    st.title(plain(session.case().get("tag") or "Rating"), anchor=False)
     if raw is None:
         nothing_yet(problems)
         return
@@ -74,13 +74,14 @@ def listed(problems: Any, most: int = 12) -> None:
 
 def answer(said: tuple[Any, ...]) -> None:
     first, *rest = said
-    st.markdown(f"##### {plain(first)}")
+    with st.container(key="answer"):
+        st.markdown(plain(first))
     blocks(rest, "answer")
 
 
 def part(written: Mapping[str, Any], key: str) -> None:
     if key in written:
-        st.subheader(written[key].title)
+        st.subheader(written[key].title, anchor=False)
         blocks(written[key].blocks, key)
 
 
@@ -128,7 +129,7 @@ def key_figures(found: session.Rated) -> None:
 def findings(text: str) -> None:
     verdicts = session.judged(text, session.display().system)
     found = [finding for verdict in verdicts for finding in verdict.findings]
-    st.subheader("Findings")
+    st.subheader("Findings", anchor=False)
     if not found:
         st.markdown("None: every check that could be made is clear.")
     loud = [finding for finding in found if finding.grade != "note"]
@@ -169,7 +170,7 @@ def _words(where: str) -> str:
 
 
 def where_resistance_lies(found: session.Rated, written: Mapping[str, Any]) -> None:
-    st.subheader(written["resistances"].title)
+    st.subheader(written["resistances"].title, anchor=False)
     state, names = found.rating.fouled, found.case.exchanger.side_names
     labels = [_named(name, names) for name in state.resistances]
     whole = sum(state.resistances.values())
@@ -180,7 +181,7 @@ def where_resistance_lies(found: session.Rated, written: Mapping[str, Any]) -> N
 
 
 def where_pressure_goes(found: session.Rated, written: Mapping[str, Any]) -> None:
-    st.subheader("Where the pressure goes")
+    st.subheader("Where the pressure goes", anchor=False)
     units, names, sides = session.display(), found.case.exchanger.side_names, found.rating.fouled.sides
     kinds = list(dict.fromkeys(kind for side in engine.SIDES for kind in sides[side].drops))
     shown = {
@@ -213,7 +214,7 @@ FOULING_SPAN = 0.0006
 
 
 def what_if(found: session.Rated) -> None:
-    st.subheader("What if")
+    st.subheader("What if", anchor=False)
     st.caption("Type a figure with its unit, or drag. The case stays as it is until you adopt the change.")
     for side, place in zip(engine.SIDES, st.columns(2, gap="large"), strict=True):
         with place:

@@ -16,7 +16,7 @@ TITLE = "Report"
 def show() -> None:
     raw, present = session.current()
     problems = session.checked(session.text_of(session.case())).problems
-    st.title("Report")
+    st.title("Report", anchor=False)
     if raw is None:
         nothing_yet(problems)
         return
@@ -42,5 +42,5 @@ def show() -> None:
             icon=":material/download:",
         )
     for section in session.sections(text, system):
-        st.subheader(plain(section.title))
+        st.subheader(plain(section.title), anchor=False)
         blocks(section.blocks, section.key)

@@ -314,9 +314,10 @@ def current() -> tuple[dict[str, Any] | None, bool]:
 
 @st.cache_data(show_spinner=False)
 def fluid_names() -> dict[str, tuple[str, ...]]:
-    """Names to choose from by kind of fluid; what lacks a property is left out."""
+    """Names to choose from, the commonest first; what lacks a property is left out."""
     offers = [offer for offer in engine.offered() if not offer.missing]
+    fluids = [offer.name for offer in offers if offer.kind != "solution"]
     return {
-        "pure": tuple(offer.name for offer in offers if offer.kind != "solution"),
+        "fluid": tuple(dict.fromkeys(["water", *fluids])),
         "solution": tuple(offer.name for offer in offers if offer.kind == "solution"),
     }

@@ -106,7 +106,7 @@ def test_a_case_filled_in_field_by_field_is_complete_and_rates() -> None:
         "exchanger.wall_conductivity": "50 W/mK",
     }
     for side in engine.SIDES:
-        app.selectbox(key=f"{side}.fluid@typed#0").set_value("water").run()
+        app.text_input(key=f"{side}.fluid@typed#0").set_value("water").run()
     for place, text in entries.items():
         app.text_input(key=f"{place}@typed#0").set_value(text).run()
     assert "✓ Complete" in words(app)
@@ -145,6 +145,13 @@ def test_an_unknown_key_of_a_file_is_named_and_can_be_taken_out() -> None:
     assert any("is not a known key" in error.value for error in app.error)
     next(b for b in app.button if b.label.startswith("Take")).click().run()
     assert "✓ Complete" in words(app)
+
+
+def test_a_fluid_chosen_from_the_list_is_written_in_its_box() -> None:
+    app = page("case", kept())
+    app.selectbox(key="inside.fluid.chosen@typed#0").set_value("ammonia").run()
+    assert app.text_input(key="inside.fluid@typed#0").value == "ammonia"
+    assert draft_of(app)["case"]["inside"]["fluid"] == "ammonia"
 
 
 def test_an_emptied_optional_group_leaves_the_case() -> None:
