@@ -58,6 +58,9 @@ RE_LAMINAR, RE_TRANSITIONAL = 100.0, 1000.0
 CLEAR_COUNT, REFUSED_COUNT = 0.12, 0.30
 """By how much more tubes than published a shell is taken without a word, and from where on it is refused."""
 
+SPACING_SLACK = 0.02
+"""Of the tube length: by how much a stated number of baffles and all their spacings may miss it."""
+
 DERIVED_BAFFLES = Source(
     key="derived-baffles",
     text="as many baffles at the stated spacing as the tube length holds, the end spacings sharing the rest",
@@ -290,7 +293,8 @@ class ShellAndTube(Input):
     def path_spacings(self) -> tuple[float, float, float]:
         """Baffles along one path of the shell-side fluid, one way, and the spacings at its inlet and outlet [m].
 
-        A stated number of baffles stands; else as many as fit. What they leave goes to the ends not stated, or to both.
+        A stated number of baffles stands; else as many as fit. What they leave goes to the ends not stated, or to both;
+        where all is stated it must be within SPACING_SLACK of the length.
         Raises ValueError with a sentence where the baffles do not fit.
         """
         assert self.baffle_spacing is not None
@@ -305,17 +309,18 @@ class ShellAndTube(Input):
             count = max(1.0, 1.0 + np.floor(fit + 1e-9))
         rest = room - (count - 1) * spacing - sum(end or 0.0 for end in stated)
         both = None not in stated
-        if both and self.baffles is not None and abs(rest) > 0.02 * room:
-            raise ValueError(
-                f"{self.baffles} baffles with their spacings take {_mm(room - rest)} of the "
-                f"{_mm(room)} of tube they stand on; leave out their number or one of the spacings"
-            )
+        slack = SPACING_SLACK * room
         share = rest / (2 if both else stated.count(None))
-        ends = [end + share if both and end is not None else share if end is None else end for end in stated]
-        if min(ends) <= 0:
+        ends = [(end or 0.0) + (share if both or end is None else 0.0) for end in stated]
+        if min(ends) <= 0 or (both and rest < -slack):
             raise ValueError(
-                f"{count:.4g} baffles {_mm(spacing)} apart and their end spacings are longer than the "
+                f"{count:.4g} baffles at a spacing of {_mm(spacing)} and the end spacings are longer than the "
                 f"{_mm(room)} of tube they stand on"
+            )
+        if both and self.baffles is not None and rest > slack:
+            raise ValueError(
+                f"{count:.4g} baffles with their spacings take {_mm(room - rest)} of the {_mm(room)} of tube they "
+                "stand on; leave out their number or one of the spacings"
             )
         return float(count), ends[0], ends[1]
 
@@ -826,8 +831,11 @@ class ShellAndTube(Input):
         if rear == "U" and self.tubes % 2:
             says = f"{self.tubes} is odd; U-tubes are counted by their legs, two for each"
             yield Problem(path="tubes", says=says)
+        for name in ("u_bend_length", "u_bend_area"):
+            if rear != "U" and getattr(self, name):
+                yield Problem(path=name, says=f"is for U-tubes only; the rear head is {rear}")
         if kind != "F" and self.long_baffle_leakage:
-            says = f"is for F shells only; an {kind} shell has no longitudinal baffle that it could pass in that way"
+            says = f"is for F shells only; the shell is {kind}"
             yield Problem(path="long_baffle_leakage", says=says)
         if kind != "J" and self.shell_inlets != 1:
             yield Problem(path="shell_inlets", says="is for J shells only")
@@ -890,6 +898,10 @@ class ShellAndTube(Input):
 
     def _baffle_problems(self, size_sound: bool) -> Iterator[Problem]:
         if self.shell_letter == "X":
+            for name in ("baffle_cut", "baffle_spacing", "inlet_spacing", "outlet_spacing", "baffles"):
+                if getattr(self, name) is not None:
+                    says = "is not used: an X shell is rated as one bank without baffles; leave it out"
+                    yield Problem(path=name, says=says)
             return
         sound = True
         for name in ("baffle_cut", "baffle_spacing"):
