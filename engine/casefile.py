@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import json
 import math
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from contextlib import suppress
 from dataclasses import dataclass
 from pathlib import Path
@@ -168,7 +168,7 @@ def upgraded(raw: dict[str, Any]) -> dict[str, Any]:
     """The keys as the present version names them. Raises CaseError where they are not a case of a known version."""
     if not isinstance(raw, dict):
         raise CaseError([Problem(path="", says="a case is a group of keys in braces")])
-    problems = []
+    problems = list(_unfit_keys(raw))
     form, version = raw.get("format"), raw.get("version")
     if form != FORMAT:
         given = "is missing" if form is None else f"{short(form)} is not a case"
@@ -187,6 +187,18 @@ def upgraded(raw: dict[str, Any]) -> dict[str, Any]:
     return raw
 
 
+def _unfit_keys(part: Any, place: tuple[str | int, ...] = ()) -> Iterator[Problem]:
+    if len(place) > DEEPEST:
+        yield Problem(path=dotted(place[:1]), says=f"nests deeper than the allowed {DEEPEST} levels")
+        return
+    items = part.items() if isinstance(part, dict) else enumerate(part) if isinstance(part, list) else ()
+    for key, value in items:
+        if isinstance(key, str) and any("\ud800" <= c <= "\udfff" for c in key):
+            shown = key.encode("utf-8", "replace").decode()
+            yield Problem(path=dotted((*place, shown)), says="holds half of a surrogate pair; allowed is plain text")
+        yield from _unfit_keys(value, (*place, key))
+
+
 def _problems_of_sound_parts(raw: dict[str, Any], known: set[str]) -> list[Problem]:
     """When the file as a whole does not read, what its readable parts would still have been refused for."""
     found: list[Problem] = []
@@ -195,7 +207,7 @@ def _problems_of_sound_parts(raw: dict[str, Any], known: set[str]) -> list[Probl
         given = raw.get(side)
         if not isinstance(given, dict):
             continue
-        stream = streams[side] = _readable(Stream, given, side, known)
+        stream = streams[side] = _readable(Stream, given)
         for name in ("flow", "T_in", "p_in", "T_out"):
             stream.__dict__.setdefault(name, None)
         fluid = stream.__dict__.pop("fluid", None)
@@ -208,19 +220,20 @@ def _problems_of_sound_parts(raw: dict[str, Any], known: set[str]) -> list[Probl
     given = raw.get("exchanger")
     kind = given.get("type") if isinstance(given, dict) else None
     if isinstance(given, dict) and isinstance(kind, str) and kind in EXCHANGERS:
-        found += _found(_readable(EXCHANGERS[kind], given, "exchanger", known), "exchanger")
+        found += _found(_readable(EXCHANGERS[kind], given), "exchanger")
     stated = Case.declared()["atmosphere"]
     given = raw.get("atmosphere", ATMOSPHERE) if "atmosphere" not in known else ATMOSPHERE
     found += stream_problems(streams, float(stated.read(given)))
     return [problem for problem in found if not _any_at(problem.path, known)]
 
 
-def _readable(model: type[_Part], raw: dict[str, Any], place: str, known: set[str]) -> _Part:
+def _readable(model: type[_Part], raw: dict[str, Any]) -> _Part:
     """The part with the fields that read; those that do not are absent from it."""
     read: dict[str, Any] = {}
-    for name, field in model.model_fields.items():
-        if name in raw and not _any_at(f"{place}.{name}", known):
-            read[name] = TypeAdapter(field.rebuild_annotation()).validate_python(raw[name], context={"file": True})
+    for name in model.model_fields.keys() & raw.keys():
+        with suppress(ValidationError):
+            adapter = TypeAdapter(model.model_fields[name].rebuild_annotation())
+            read[name] = adapter.validate_python(raw[name], context={"file": True})
     part = cast(_Part, model.model_construct(**read))
     for name in raw.keys() - read.keys():
         part.__dict__.pop(name, None)
