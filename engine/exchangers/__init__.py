@@ -84,12 +84,15 @@ class Flowing:
     factors: Mapping[str, Array] = field(default_factory=dict)
     """Relation name to a (P,) multiplier: how the scatter of a relation is propagated."""
 
-    def factors_of(self, relations: Sequence[Correlation]) -> tuple[Array, ...] | None:
-        """The multipliers of these relations, each (P, 1); None where none is propagated."""
+    def factors_of(self, relations: Sequence[Correlation]) -> tuple[Array, Array, Array] | None:
+        """The multipliers of a film's three relations, each (P, 1); None where none is propagated."""
         if not any(relation.name in self.factors for relation in relations):
             return None
         one = np.ones((np.size(self.flow), 1))
-        return tuple(self.factors[r.name][:, None] if r.name in self.factors else one for r in relations)
+        laminar, transitional, turbulent = (
+            self.factors[r.name][:, None] if r.name in self.factors else one for r in relations
+        )
+        return laminar, transitional, turbulent
 
     def factor_of(self, relation: Correlation) -> Array | float:
         """The (P,) multiplier of one relation; 1 where none is propagated."""
@@ -104,7 +107,7 @@ class Film:
     Re: Array
     Pr: Array
     velocity: Array
-    regime: NDArray[np.int_]
+    regime: NDArray[np.integer[Any]]
     """Index into REGIMES."""
     relations: Sequence[Correlation]
     """The relation that stands behind each regime."""

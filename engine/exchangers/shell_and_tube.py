@@ -9,6 +9,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from functools import cached_property
+from itertools import pairwise
 from typing import Annotated, Any, ClassVar, Literal
 
 import numpy as np
@@ -298,7 +299,7 @@ class ShellAndTube(Input):
         Raises ValueError with a sentence where the baffles do not fit.
         """
         assert self.baffle_spacing is not None
-        room, spacing = float(self.tube_length) * self.shell_type.share, float(self.baffle_spacing)
+        room, spacing = self.tube_length * self.shell_type.share, self.baffle_spacing
         stated = [None if end is None else float(end) for end in (self.inlet_spacing, self.outlet_spacing)]
         if spacing > room:
             raise ValueError(f"{_mm(spacing)} is longer than the {_mm(room)} of tube that the baffles stand on")
@@ -333,29 +334,30 @@ class ShellAndTube(Input):
     def outer_tube_limit(self) -> float:
         """Bundle diameter [m], stated or what the usual clearance of the rear head leaves."""
         if self.bundle_diameter is not None:
-            return float(self.bundle_diameter)
-        return standard_sizes.outer_tube_limit(float(self.shell_id), self.rear_letter)
+            return self.bundle_diameter
+        return standard_sizes.outer_tube_limit(self.shell_id, self.rear_letter)
 
     @cached_property
     def hole_clearance(self) -> float:
         """Diametral clearance of the baffle holes [m], stated or the usual one."""
         if self.tube_hole_clearance is not None:
             return float(self.tube_hole_clearance)
-        return standard_sizes.tube_hole_clearance(float(self.tube_od), self.longest_span)
+        return standard_sizes.tube_hole_clearance(self.tube_od, self.longest_span)
 
     @cached_property
     def baffle_clearance(self) -> float:
         """Diametral clearance between shell and baffle [m], stated or the usual one."""
         if self.shell_baffle_clearance is not None:
             return float(self.shell_baffle_clearance)
-        return standard_sizes.shell_baffle_clearance(float(self.shell_id))
+        return standard_sizes.shell_baffle_clearance(self.shell_id)
 
     @property
     def longest_span(self) -> float:
-        """Longest unsupported span of a tube in the windows [m]."""
+        """Longest unsupported span [m]: a tube in the windows passes two compartments between its supports."""
         assert self.baffle_spacing is not None
         count, inlet, outlet = self.path_spacings
-        return max(inlet, outlet) + (self.baffle_spacing if count > 1 else min(inlet, outlet))
+        compartments = [inlet, *[self.baffle_spacing] * (round(count) - 1), outlet]
+        return max(one + other for one, other in pairwise(compartments))
 
     @cached_property
     def geometry(self) -> shell.BundleGeometry:
@@ -365,21 +367,21 @@ class ShellAndTube(Input):
         _, inlet, outlet = self.path_spacings
         return shell.bundle_geometry(
             layout_angle=self.angle,
-            shell_id=float(self.shell_id),
+            shell_id=self.shell_id,
             bundle_diameter=self.outer_tube_limit,
-            tube_od=float(self.tube_od),
-            tube_pitch=float(self.tube_pitch),
+            tube_od=self.tube_od,
+            tube_pitch=self.tube_pitch,
             tubes=self.tubes,
-            baffle_cut=float(self.baffle_cut),
+            baffle_cut=self.baffle_cut,
             baffles=self.baffle_count,
-            baffle_spacing=float(self.baffle_spacing),
+            baffle_spacing=self.baffle_spacing,
             inlet_spacing=inlet,
             outlet_spacing=outlet,
             tube_hole_clearance=self.hole_clearance,
             shell_baffle_clearance=self.baffle_clearance,
             sealing_strip_pairs=self.sealing_strip_pairs,
             pass_lanes=self.pass_lanes,
-            pass_lane_width=float(self.pass_lane_width),
+            pass_lane_width=self.pass_lane_width,
             shell_passes=self.shell_type.passes,
             flow_share=self.shell_type.share,
             length_share=self.shell_type.share,
@@ -388,9 +390,9 @@ class ShellAndTube(Input):
     @cached_property
     def usual_tube_count(self) -> standard_sizes.TubeCount:
         return standard_sizes.tube_count(
-            float(self.shell_id),
-            float(self.tube_od),
-            float(self.tube_pitch),
+            self.shell_id,
+            self.tube_od,
+            self.tube_pitch,
             self.angle,
             self.tube_passes,
             u_tubes=self.u_tubes,
@@ -433,7 +435,7 @@ class ShellAndTube(Input):
         return self._cells(layout.counter_chain(24 * fineness))
 
     def _cells(self, order: layout.Layout) -> Cells:
-        L = float(self.tube_length)
+        L = self.tube_length
         start, end = (order.span * L).T
         leg: dict[Side, float] = {"inside": L, "outside": L}
         x, weights = entrance_nodes(start, end, np.zeros(len(start), dtype=bool), L)
@@ -450,20 +452,19 @@ class ShellAndTube(Input):
     def _layout(self, fineness: int) -> layout.Layout:
         letter, passes = self.shell_letter, self.tube_passes
         first: layout.Arrangement = "counter" if self.first_pass == "counter" else "co-current"
-        if letter == "X":
-            n = 8 * fineness
-            unit = layout.x_shell(n, passes, first, rows=max(1, n // passes))
+        if letter == "E":
+            # For the films 12 bays are plenty; the temperatures are those of bays a quarter as long.
+            unit = layout.shell_pass((24 if passes == 1 else 12) * fineness, passes, first, halvings=2)
+        elif letter == "F":
+            unit = layout.f_shell(16 * fineness, passes, first, self.long_baffle_leakage)
+        elif letter == "G":
+            unit = layout.g_shell(32 * fineness, passes, first)
+        elif letter == "H":
+            unit = layout.h_shell(32 * fineness, passes, first)
+        elif letter == "J":
+            unit = layout.j_shell(32 * fineness, passes, 1 if self.shell_inlets == 1 else 2)
         else:
-            n = 32 * fineness
-            if letter == "E":
-                # For the films 12 bays are plenty; the temperatures are those of bays a quarter as long.
-                unit = layout.shell_pass(24 * fineness if passes == 1 else 12 * fineness, passes, first, halvings=2)
-            elif letter == "F":
-                unit = layout.f_shell(n // 2, passes, first, float(self.long_baffle_leakage))
-            elif letter == "J":
-                unit = layout.j_shell(n, passes, 1 if self.shell_inlets == 1 else 2)
-            else:
-                unit = (layout.g_shell if letter == "G" else layout.h_shell)(n, passes, first)
+            unit = layout.x_shell(8 * fineness, passes, first, rows=max(1, 8 * fineness // passes))
         return layout.in_series(unit, self.shells_in_series)
 
     # --- films ------------------------------------------------------------------------------------------------------
@@ -488,7 +489,7 @@ class ShellAndTube(Input):
         """(P, 1) flow of one shell [kg/s]."""
         return at.flow[:, None] / self.shells_in_parallel
 
-    def _shell_Re(self, cells: Cells, at: Flowing) -> tuple[Array, Array, Array]:
+    def _shell_numbers(self, cells: Cells, at: Flowing) -> tuple[Array, Array, Array]:
         """Mass velocity (P, 1), local Re (P, n) and mean Re of the shell that a cell lies in."""
         m = self._shell_flow(at)
         G = m / self._cross_flow_area if self.shell_letter == "X" else self.geometry.mass_velocity(m)
@@ -504,11 +505,11 @@ class ShellAndTube(Input):
         """Of an X shell, all of its length [m²]."""
         return shell.crossflow_area(
             self.angle,
-            float(self.shell_id),
+            self.shell_id,
             self.outer_tube_limit,
-            float(self.tube_od),
-            float(self.tube_pitch),
-            float(self.tube_length),
+            self.tube_od,
+            self.tube_pitch,
+            self.tube_length,
         )
 
     @property
@@ -522,68 +523,65 @@ class ShellAndTube(Input):
         return float(self.tube_pitch / self.tube_od)
 
     def film(self, side: Side, cells: Cells, at: Flowing) -> Film:
-        if side == "inside":
-            G, d = self._tube_flow(at)
-            Re, relations = G * d / at.bulk.mu, inside_tubes.TUBE_RELATIONS
-            x1, x2 = cells.start[side], cells.end[side]
-            factors = at.factors_of(relations)
-            Nu, regime = inside_tubes.nusselt_tube(Re, at.bulk.Pr, d, x1, x2, wall=self._wall(at), factors=factors)
-            h = Nu * at.bulk.k / self.tube_id * self.film_factor.inside
-            return Film(h=h, Re=Re, Pr=at.bulk.Pr, velocity=G / at.bulk.rho, regime=regime, relations=relations)
-        G, Re, Re_mean = self._shell_Re(cells, at)
-        local: dict[str, Any] = {
-            "G": G, "Re": Re, "Pr": at.bulk.Pr, "cp": at.bulk.cp, "mu_ratio": at.mu_wall / at.bulk.mu
-        }  # fmt: skip
+        return self._tube_film(cells, at) if side == "inside" else self._shell_film(cells, at)
+
+    def _tube_film(self, cells: Cells, at: Flowing) -> Film:
+        G, d = self._tube_flow(at)
+        Re, Pr, relations = G * d / at.bulk.mu, at.bulk.Pr, inside_tubes.TUBE_RELATIONS
+        x1, x2, factors = cells.start["inside"], cells.end["inside"], at.factors_of(relations)
+        Nu, regime = inside_tubes.nusselt_tube(Re, Pr, d, x1, x2, wall=self._wall(at), factors=factors)
+        h = Nu * at.bulk.k / self.tube_id * self.film_factor.inside
+        return Film(h=h, Re=Re, Pr=Pr, velocity=G / at.bulk.rho, regime=regime, relations=relations)
+
+    def _shell_film(self, cells: Cells, at: Flowing) -> Film:
+        G, Re, Re_mean = self._shell_numbers(cells, at)
+        Pr, cp, mu_ratio = at.bulk.Pr, at.bulk.cp, at.mu_wall / at.bulk.mu
         if self.shell_letter == "X":
             relation = shell.taborek_j
-            h = shell.ideal_film(self.angle, self._pitch_ratio, **local)
+            h = shell.ideal_film(self.angle, self._pitch_ratio, G=G, Re=Re, Pr=Pr, cp=cp, mu_ratio=mu_ratio)
         else:
             relation = shell.bell_delaware_film
-            h = relation(self.geometry, Re_mean=Re_mean, **local)
+            h = relation(self.geometry, G=G, Re=Re, Re_mean=Re_mean, Pr=Pr, cp=cp, mu_ratio=mu_ratio)
+        h = h * np.asarray(at.factor_of(relation))[..., None] * self.film_factor.outside
         regime = (Re >= RE_LAMINAR).astype(np.int8) + (Re >= RE_TRANSITIONAL)
-        factor = np.asarray(at.factor_of(relation))[..., None] * self.film_factor.outside
-        return Film(
-            h=h * factor, Re=Re, Pr=at.bulk.Pr, velocity=G / at.bulk.rho, regime=regime, relations=(relation,) * 3
-        )
+        return Film(h=h, Re=Re, Pr=Pr, velocity=G / at.bulk.rho, regime=regime, relations=(relation,) * 3)
 
     def second_opinions(self, side: Side, cells: Cells, at: Flowing) -> dict[str, Array]:
-        Pr, mu_ratio = at.bulk.Pr, at.mu_wall / at.bulk.mu
-        if side == "outside":
-            found: dict[str, Array] = {}
-            De, _, Re = self._kern_flow(at)
-            if self.shell_letter != "X" and not shell.kern_film.valid[0].outside(Re).any():
-                h = shell.kern_film(De, k=at.bulk.k, Re=Re, Pr=Pr, mu_ratio=mu_ratio)
-                found[shell.kern_film.name] = h.mean(axis=1) * self.film_factor.outside
-            return found
+        return self._tube_opinions(cells, at) if side == "inside" else self._shell_opinions(at)
+
+    def _tube_opinions(self, cells: Cells, at: Flowing) -> dict[str, Array]:
         G, d = self._tube_flow(at)
-        Re, L = G * d / at.bulk.mu, cells.leg[side]
+        Re, Pr, mu_ratio, L = G * d / at.bulk.mu, at.bulk.Pr, at.mu_wall / at.bulk.mu, cells.leg["inside"]
         lowest, highest = float(Re.min()), float(Re.max())
-        numbers: dict[Correlation, Array] = {}
+        found: dict[Correlation, Array] = {}
         if lowest >= inside_tubes.RE_TURBULENT:
-            numbers[inside_tubes.gnielinski_1976] = inside_tubes.gnielinski_1976(Re, Pr)
-            numbers[inside_tubes.dittus_boelter] = inside_tubes.dittus_boelter(Re, Pr, at.heated)
-            numbers[inside_tubes.sieder_tate_turbulent] = inside_tubes.sieder_tate_turbulent(Re, Pr, mu_ratio)
+            found[inside_tubes.gnielinski_1976] = inside_tubes.gnielinski_1976(Re, Pr)
+            found[inside_tubes.dittus_boelter] = inside_tubes.dittus_boelter(Re, Pr, at.heated)
+            found[inside_tubes.sieder_tate_turbulent] = inside_tubes.sieder_tate_turbulent(Re, Pr, mu_ratio)
         elif highest < inside_tubes.RE_LAMINAR:
-            numbers[inside_tubes.hausen_laminar] = inside_tubes.hausen_laminar(Re, Pr, d / L)
-            numbers[inside_tubes.sieder_tate_laminar] = inside_tubes.sieder_tate_laminar(Re, Pr, d / L, mu_ratio)
+            found[inside_tubes.hausen_laminar] = inside_tubes.hausen_laminar(Re, Pr, d / L)
+            found[inside_tubes.sieder_tate_laminar] = inside_tubes.sieder_tate_laminar(Re, Pr, d / L, mu_ratio)
         if inside_tubes.RE_LAMINAR < highest < inside_tubes.RE_TURBULENT:
-            numbers[inside_tubes.transition_2013] = inside_tubes.nusselt_tube(
-                Re, Pr, d, 0.0, L, wall=self._wall(at), joined_by=inside_tubes.transition_2013
-            )[0]
+            joined_by = inside_tubes.transition_2013
+            found[joined_by] = inside_tubes.nusselt_tube(Re, Pr, d, 0.0, L, wall=self._wall(at), joined_by=joined_by)[0]
         to_h = at.bulk.k / self.tube_id * self.film_factor.inside
-        return {relation.name: (Nu * to_h).mean(axis=1) for relation, Nu in numbers.items()}
+        return {relation.name: (Nu * to_h).mean(axis=1) for relation, Nu in found.items()}
+
+    def _shell_opinions(self, at: Flowing) -> dict[str, Array]:
+        kern = shell.kern_film
+        if self.shell_letter == "X":
+            return {}
+        De, _, Re = self._kern_flow(at)
+        if kern.valid[0].outside(Re).any():
+            return {}
+        h = kern(De, k=at.bulk.k, Re=Re, Pr=at.bulk.Pr, mu_ratio=at.mu_wall / at.bulk.mu)
+        return {kern.name: h.mean(axis=1) * self.film_factor.outside}
 
     def _kern_flow(self, at: Flowing) -> tuple[float, Array, Array]:
         """Kern's equivalent diameter [m], mass velocity [kg/m²s] and Re of one path."""
-        assert self.baffle_spacing is not None or self.shell_letter == "X"
-        De = shell.kern_equivalent_diameter(self.angle, float(self.tube_od), float(self.tube_pitch))
-        As = shell.kern_area(
-            float(self.shell_id),
-            float(self.tube_od),
-            float(self.tube_pitch),
-            float(self.baffle_spacing or self.tube_length),
-            self.shell_type.passes,
-        )
+        assert self.baffle_spacing is not None
+        De = shell.kern_equivalent_diameter(self.angle, self.tube_od, self.tube_pitch)
+        As = shell.kern_area(self.shell_id, self.tube_od, self.tube_pitch, self.baffle_spacing, self.shell_type.passes)
         Gs = self._shell_flow(at) * self.shell_type.share / As
         return De, Gs, np.asarray(De * Gs / at.bulk.mu)
 
@@ -600,7 +598,7 @@ class ShellAndTube(Input):
         if self.shell_letter == "X":
             return {}
         g = self.geometry
-        _, Re, _ = self._shell_Re(self.whole(), at)
+        _, Re, _ = self._shell_numbers(self.whole(), at)
         Re = Re.mean(axis=1)
         J, R = shell.film_factors(g, Re), shell.drop_factors(g, Re)
         areas = ("Sm", "Sw", "Dw", "Ssb", "Stb", "Sb", "Fc", "Fw", "Ncc", "Ncw", "Nb", "rs", "rlm", "Fbp", "rss")
@@ -640,7 +638,7 @@ class ShellAndTube(Input):
         self, cells: Cells, at: Flowing, film: Film, heads: losses.Figure = losses.TUBE_PASS
     ) -> dict[str, Array]:
         G, d = self._tube_flow(at)
-        f = losses.friction_tube(film.Re, float(self.inside_roughness) / d, wall=self._wall(at))
+        f = losses.friction_tube(film.Re, self.inside_roughness / d, wall=self._wall(at))
         head = losses.velocity_head(G, at.bulk.rho)
         passes = self.tube_passes * self.shells_in_series
         along = passes * self.tube_length + passes // 2 * self.u_bend_length
@@ -654,7 +652,7 @@ class ShellAndTube(Input):
         }
 
     def _shell_drop(self, cells: Cells, at: Flowing) -> dict[str, Array]:
-        G, Re, Re_mean = self._shell_Re(cells, at)
+        G, Re, Re_mean = self._shell_numbers(cells, at)
         rho, mu_ratio = at.bulk.rho, at.mu_wall / at.bulk.mu
         if self.shell_letter == "X":
             bank = shell.ideal_drop(
@@ -705,9 +703,9 @@ class ShellAndTube(Input):
         if not shell.kern_drop.valid[0].outside(Re).any():
             crossings = (self.baffle_count * self.shell_type.share + 1) * self.shell_type.passes
             found[shell.kern_drop] = shell.kern_drop(
-                De, shell_id=float(self.shell_id), crossings=crossings, Gs=Gs, rho=rho, Re=Re, mu_ratio=mu_ratio
+                De, shell_id=self.shell_id, crossings=crossings, Gs=Gs, rho=rho, Re=Re, mu_ratio=mu_ratio
             )
-        _, Re, Re_mean = self._shell_Re(cells, at)
+        _, Re, Re_mean = self._shell_numbers(cells, at)
         if not shell.gaddis_gnielinski_drop.valid[0].outside(Re).any():
             found[shell.gaddis_gnielinski_drop] = shell.gaddis_gnielinski_drop(
                 self.geometry, m=self._shell_flow(at), rho=rho, mu=at.bulk.mu, mu_ratio=mu_ratio, Re_mean=Re_mean
