@@ -16,7 +16,7 @@ import re
 import sys
 import threading
 from abc import ABC, abstractmethod
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field, fields
 from functools import cache, lru_cache, partial
 from typing import Any, Literal
@@ -25,6 +25,7 @@ import numpy as np
 from numpy.polynomial import chebyshev
 from numpy.typing import ArrayLike, NDArray
 from scipy.constants import bar, zero_Celsius
+from scipy.interpolate import CubicSpline
 
 Array = NDArray[np.float64]
 Phase = Literal["liquid", "gas"]
@@ -377,6 +378,51 @@ class Saturation:
         liquid = self.liquid.enthalpy(np.array([self.T_sat - subcooling, self.T_sat]))
         return float(vapour[1] - vapour[0] + self.h_fg + liquid[1] - liquid[0])
 
+@dataclass(frozen=True, kw_only=True, eq=False)
+class SaturationLine:
+    """A pure fluid along its saturation line by cubic splines in T, from `T_low` to a little below the critical point.
+
+    Outside that span everything is as at its nearer end, so that an iteration may pass through.
+    """
+
+    name: str
+    origin: str
+    T_low: float
+    T_high: float
+    p_critical: float
+    splines: Mapping[str, CubicSpline]
+
+    def _at(self, name: str, T: ArrayLike) -> Array:
+        return np.asarray(self.splines[name](np.clip(np.asarray(T, dtype=float), self.T_low, self.T_high)))
+
+    def T(self, p: ArrayLike) -> Array:
+        """Saturation temperature at absolute pressure p."""
+        ends = np.log(self.p(np.array([self.T_low, self.T_high])))
+        return np.asarray(self.splines["T of ln p"](np.clip(np.log(p), *ends)))
+
+    def p(self, T: ArrayLike) -> Array:
+        return np.exp(self._at("ln p", T))
+
+    def liquid(self, T: ArrayLike) -> Properties:
+        """Saturated liquid, of T's shape."""
+        return self._properties("liquid", T)
+
+    def vapour(self, T: ArrayLike) -> Properties:
+        """Saturated vapour, of T's shape."""
+        return self._properties("vapour", T)
+
+    def _properties(self, phase: str, T: ArrayLike) -> Properties:
+        rho, cp, mu, k = np.moveaxis(np.exp(self._at(phase, T)), -1, 0)
+        return Properties(rho=rho, cp=cp, mu=mu, k=k, origin=self.origin)
+
+    def enthalpy(self, T: ArrayLike, phase: Literal["liquid", "vapour"]) -> Array:
+        """J/kg, from the library's own zero."""
+        return self._at(f"enthalpy of {phase}", T)
+
+    def h_fg(self, T: ArrayLike) -> Array:
+        return self.enthalpy(T, "vapour") - self.enthalpy(T, "liquid")
+
+
 
 # Making them ----------------------------------------------------------------------------------------------------------
 
@@ -433,6 +479,59 @@ def saturation(p: float, name: str = "water") -> Saturation:
         liquid=_pure(code, float(p), "liquid"),
         vapour=_pure(code, float(p), "gas"),
     )
+
+
+@lru_cache(maxsize=8)
+def saturation_line(name: str = "water") -> SaturationLine:
+    """The saturation line of a pure fluid, sampled from the property library, checked between its nodes.
+
+    Raises FluidError where the fluid has none.
+    """
+    backend, code = _pure_code(name)
+    if backend != "HEOS":
+        raise FluidError(f"{_plain(code)} has no saturation line")
+    C, state = _library(), _state("HEOS", code)
+    T_low, T_high = float(state.Ttriple()), _LINE_END * float(state.T_critical())
+
+    def sample(T: float) -> list[float]:
+        found: list[float] = []
+        for quality in (0.0, 1.0):
+            state.update(C.QT_INPUTS, quality, T)
+            found += [state.rhomass(), state.cpmass(), state.viscosity(), state.conductivity(), state.hmass()]
+        return [*found, state.p()]
+
+    # Closer together towards the critical point, where everything bends.
+    T = T_low + (T_high - T_low) * (1 - np.linspace(1, 0, _LINE_NODES) ** 2)
+    rows = np.array([sample(t) for t in T])
+    logs = np.log(np.delete(rows, (4, 9), axis=1))
+    line = SaturationLine(
+        name=_plain(code),
+        origin=_origin(),
+        T_low=T_low,
+        T_high=T_high,
+        p_critical=float(state.p_critical()),
+        splines={
+            "liquid": CubicSpline(T, logs[:, :4]),
+            "vapour": CubicSpline(T, logs[:, 4:8]),
+            "ln p": CubicSpline(T, logs[:, 8]),
+            "T of ln p": CubicSpline(logs[:, 8], T),
+            "enthalpy of liquid": CubicSpline(T, rows[:, 4]),
+            "enthalpy of vapour": CubicSpline(T, rows[:, 9]),
+        },
+    )
+    between = 0.5 * (T[5::29] + T[4:-1:29])
+    seen = np.array([sample(t) for t in between])
+    got = [[x.rho, x.cp, x.mu, x.k] for x in (line.liquid(between), line.vapour(between))]
+    off = np.abs(np.array([*got[0], *got[1]]).T / np.delete(seen[:, :10], (4, 9), axis=1) - 1).max()
+    if off > _LINE_AGREES:
+        raise FluidError(f"the saturation line of {line.name} is not smooth in the property library: {off:.1e}")
+    return line
+
+
+_LINE_END = 0.99
+"""Of the critical temperature: where the saturation line ends."""
+_LINE_NODES = 300
+_LINE_AGREES = 1e-5
 
 
 def _constant(c: Constant) -> Fluid:
