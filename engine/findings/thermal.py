@@ -13,6 +13,7 @@ from engine.findings import COMMON_PRACTICE, Finding, Missing, Subject, percent,
 from engine.findings.validity import OWN, capacities
 from engine.rating import State
 from engine.stated import SIDES, Side
+from engine.studies import SCALING_SURFACE, scales
 
 OUTLETS_APART = 0.02
 """Of the heat that two stated outlets mean."""
@@ -24,7 +25,6 @@ LOW_F = 0.8
 NEAR_CEILING = 0.95
 FOULING_SHARE = 0.5
 """Of the whole resistance."""
-SCALING_SURFACE = 333.15
 BURNS = 333.15
 PHASE_MARGIN = 5.0
 """Between a surface and the freezing, boiling or dew point of the fluid that touches it [K]."""
@@ -355,8 +355,7 @@ def fouling_dominates(s: Subject) -> Iterator[Finding]:
     by_side=True,
 )
 def scaling_surface(s: Subject, side: Side) -> Iterator[Finding]:
-    fluid = s.fluid(side)
-    if side == s.case.hot or s.phase(side) != "liquid" or "water" not in fluid.name.lower().split():
+    if not scales(s.case, side):
         return
     hottest = s.extremes("surface_T", side)[1]
     if hottest > SCALING_SURFACE:
