@@ -301,8 +301,15 @@ def _raw(part: Any, declared: Any = None) -> Any:
         return part.text
     if isinstance(part, float) and isinstance(declared, Stated):
         quantity = part.quantity if isinstance(part, Figure) and part.quantity else declared.quantities[0]
-        return units.show(float(part), quantity, "si", digits=17)
+        return float(part) if quantity == "dimensionless" else _typed(float(part), quantity)
     return part
+
+
+def _typed(value: float, quantity: str) -> str:
+    """The shortest text that reads back as the same value."""
+    shown = (units.show(value, quantity, "si", digits) for digits in range(3, 17))
+    exact = units.show(value, quantity, "si", 17)
+    return next((text for text in shown if units.parse(text, quantity).value == value), exact)
 
 
 class _WithoutDefaults(GenerateJsonSchema):
