@@ -148,8 +148,9 @@ def _to_and_fro(layout: Layout, cell: Ints, UA: Array, C_inside: Array, C_outsid
 
     The scheme of `_shell` in bays halved `layout.halvings` times, without its matrix. A bay is described by what
     leaves it for what enters it, S[out, in] over the outside stream, the passes that run with it and those that run
-    against it. All S are shares of a mixture, so joining bays loses no digit however long they are. Rows of bays are
-    joined by eliminating the streams between them (Redheffer's star product, J. Math. Phys. 41 (1962) 1-41).
+    against it. All entries of S are shares of a mixture, so no bay is too long. Rows of bays are joined by eliminating
+    the streams between them (R. Redheffer, On the relation of transmission-line theory to scattering and transfer,
+    J. Math. Phys. 41 (1962) 1-41).
     """
     with_outside = layout.bay[[path[0] for path in layout.inside_paths]] == 0
     streams = np.concatenate([[-1], np.flatnonzero(with_outside), np.flatnonzero(~with_outside)])
@@ -193,11 +194,11 @@ def _to_and_fro(layout: Layout, cell: Ints, UA: Array, C_inside: Array, C_outsid
     T = np.concatenate([np.array(x[::-1]).swapaxes(0, 1) for x in ([*T_with, inlets], T_against)])
 
     first, last = T[:, :-1], T[:, 1:]
-    entry, exit_ = (np.concatenate([a[:n_with], b[n_with:]]) for a, b in ((first, last), (last, first)))
-    outside_mean = exit_[0] - _lead(UA_cell.sum(axis=0) / C_bay) * (exit_[0] - entry[0])
+    entry, leaving = (np.concatenate([a[:n_with], b[n_with:]]) for a, b in ((first, last), (last, first)))
+    outside_mean = leaving[0] - _lead(UA_cell.sum(axis=0) / C_bay) * (leaving[0] - entry[0])
     small = ntu < 1e-6
     difference = np.where(
-        small, (entry[1:] - outside_mean) * _phi(ntu), (entry[1:] - exit_[1:]) / np.where(small, 1.0, ntu)
+        small, (entry[1:] - outside_mean) * _phi(ntu), (entry[1:] - leaving[1:]) / np.where(small, 1.0, ntu)
     )
 
     def by_cell(x: Array) -> Array:
@@ -207,14 +208,14 @@ def _to_and_fro(layout: Layout, cell: Ints, UA: Array, C_inside: Array, C_outsid
 
     return Temperatures(
         inside_entry=by_cell(entry[1:]),
-        inside_exit=by_cell(exit_[1:]),
+        inside_exit=by_cell(leaving[1:]),
         inside_mean=by_cell(outside_mean + difference),
         outside_entry=by_cell(entry[0]),
-        outside_exit=by_cell(exit_[0]),
+        outside_exit=by_cell(leaving[0]),
         outside_mean=by_cell(outside_mean),
         heat=by_cell(UA_cell * difference),
         inside_outlet=_product(row[place[-1:]], met)[0],
-        outside_outlet=exit_[0, -1],
+        outside_outlet=leaving[0, -1],
     )
 
 
