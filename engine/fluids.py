@@ -378,6 +378,7 @@ class Saturation:
         liquid = self.liquid.enthalpy(np.array([self.T_sat - subcooling, self.T_sat]))
         return float(vapour[1] - vapour[0] + self.h_fg + liquid[1] - liquid[0])
 
+
 @dataclass(frozen=True, kw_only=True, eq=False)
 class SaturationLine:
     """A pure fluid along its saturation line by cubic splines in T, from `T_low` to a little below the critical point.
@@ -421,7 +422,6 @@ class SaturationLine:
 
     def h_fg(self, T: ArrayLike) -> Array:
         return self.enthalpy(T, "vapour") - self.enthalpy(T, "liquid")
-
 
 
 # Making them ----------------------------------------------------------------------------------------------------------

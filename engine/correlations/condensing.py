@@ -58,8 +58,16 @@ SHAH_1979 = Source(
     "Mass Transfer 22 (1979) 547-556",
     checked=False,
 )
+CHURCHILL_CHU_1975 = Source(
+    key="Churchill-Chu-1975",
+    text="Churchill, S. W., Chu, H. H. S., Correlating equations for laminar and turbulent free convection from a "
+    "horizontal cylinder (from a vertical plate), Int. J. Heat Mass Transfer 18 (1975) 1049-1053 (1323-1329)",
+    checked=False,
+)
 
 Real = Array | float
+RE_WAVY, RE_TURBULENT = 30.0, 1600.0
+"""Film Re from which `vertical_film` takes the wavy and the turbulent relation."""
 G_STANDARD = 9.80665
 """Standard gravity [m/s²]."""
 
@@ -125,7 +133,7 @@ def vertical_film(
     laminar = per_h * nusselt_vertical(k, rho_l, rho_v, mu, h_fg, dT, L)
     wavy = ((load + 5.2) / 1.08) ** (1 / 1.22)
     turbulent = (np.maximum(load - 8750, 0.0) * np.sqrt(cp * mu / k) / 58 + 253) ** (4 / 3)
-    Re_film = np.where(laminar < 30.0, laminar, np.where(load < 8750, wavy, turbulent))
+    Re_film = np.where(laminar < RE_WAVY, laminar, np.where(load < 8750, wavy, turbulent))
     return np.asarray(Re_film / per_h), Re_film
 
 
@@ -221,3 +229,28 @@ def horizontal_tube_film(
     Pr = cp * mu / k
     ends = [boyko_kruzhilin(Re_L, Pr, k, d, rho_l, rho_v, x) for x in (0.0, 1.0)]
     return np.asarray(np.maximum(chato(k, rho_l, rho_v, mu, h_fg, dT, d), sum(ends) / 2))
+
+
+# Under condensate
+
+
+@correlation(
+    gives="mean Nu",
+    applies="free convection on a horizontal cylinder, on its diameter",
+    source=CHURCHILL_CHU_1975,
+    valid=(Range(argument="Ra", high=1e12),),
+    scatter=0.15,
+)
+def churchill_chu_horizontal(Ra: Array, Pr: Real) -> Array:
+    return np.asarray((0.60 + 0.387 * Ra ** (1 / 6) / (1 + (0.559 / Pr) ** (9 / 16)) ** (8 / 27)) ** 2)
+
+
+@correlation(
+    gives="mean Nu",
+    applies="free convection on a vertical plate or tube, on its height",
+    source=CHURCHILL_CHU_1975,
+    valid=(Range(argument="Ra", high=1e12),),
+    scatter=0.15,
+)
+def churchill_chu_vertical(Ra: Array, Pr: Real) -> Array:
+    return np.asarray((0.825 + 0.387 * Ra ** (1 / 6) / (1 + (0.492 / Pr) ** (9 / 16)) ** (8 / 27)) ** 2)

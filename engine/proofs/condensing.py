@@ -9,6 +9,8 @@ import numpy as np
 from engine.correlations.condensing import (
     boyko_kruzhilin,
     chato,
+    churchill_chu_horizontal,
+    churchill_chu_vertical,
     kern_rows,
     kutateladze_wavy,
     labuntsov_turbulent,
@@ -236,5 +238,22 @@ ROWS: tuple[Proof, ...] = (
         reason="the same equation",
         kind="independent",
         source="library ht 1.2, condensation.Shah",
+    ),
+    *(
+        Proof(
+            subject=relation.name,
+            what="Ra 1e7, Pr 1.75",
+            ours=partial(lambda relation: float(relation(np.asarray(1e7), 1.75)), relation),
+            value=value,
+            unit="-",
+            tolerance=1e-9,
+            reason="the same equation",
+            kind="independent",
+            source=f"library ht 1.2, conv_free_immersed.{function}",
+        )
+        for relation, function, value in (
+            (churchill_chu_horizontal, "Nu_horizontal_cylinder_Churchill_Chu", 31.48898880528851),
+            (churchill_chu_vertical, "Nu_vertical_plate_Churchill", 34.486783982475195),
+        )
     ),
 )
