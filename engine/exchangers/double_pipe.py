@@ -12,6 +12,7 @@ from pydantic import Field
 from engine import effectiveness as exact
 from engine.correlations import Array, Correlation, Excursion, Source, annulus, inside_tubes, losses
 from engine.exchangers import Cells, Film, Flowing, entrance_nodes, layout, sliver, standard_sizes
+from engine.exchangers.condenser import CondensingSurface
 from engine.stated import Choice, Count, Input, Problem, Side, Stated, Words
 
 LENGTH = ("length",)
@@ -103,6 +104,15 @@ class DoublePipe(Input):
     leg_length: Annotated[float, length("Leg length", "6 m", 100.0, help="One straight leg, effective for heat.")]
     legs_in_series: Annotated[int, Count("Legs in series", 1, 200, help="Two a hairpin.")]
     banks_in_parallel: Banks = Banks()
+    orientation: Annotated[
+        str,
+        Choice(
+            "Orientation",
+            ("horizontal", "vertical"),
+            help="Of the legs; it decides how condensate drains.",
+            assumed="horizontal, the usual position",
+        ),
+    ] = "horizontal"
     material: Annotated[str | None, Words("Inner pipe material", 60)] = None
     wall_conductivity: Annotated[
         float | None, Stated("conductivity", "Wall conductivity", above=0.0, high=500.0, example="50 W/mK")
@@ -367,6 +377,22 @@ class DoublePipe(Input):
             return inside_tubes.excursions_tube(film.Re, film.Pr, d_h, cells.leg[side], wall=wall)
         ratio = surface / self.shell_id
         return annulus.excursions_annulus(film.Re, film.Pr, d_h, ratio, cells.leg[side], wall=wall)
+
+    def condensing_surface(self, side: Side) -> CondensingSurface | str:
+        """What steam condenses on, or the reason why that is not rated. Deposits leave its size as it is."""
+        if side == "outside" and self.finned is not None:
+            return "steam on longitudinal fins is not rated: condensate bridges the fins"
+        vertical = self.orientation == "vertical"
+        if side == "inside" and vertical and self.legs_on_path(side) > 1:
+            return "condensate cannot rise: inside upright legs steam is rated for one leg on its way"
+        return CondensingSurface(
+            inside=side == "inside",
+            vertical=vertical,
+            diameter=self.tube_id if side == "inside" else self.tube_od,
+            height=float(self.leg_length),
+            branches=lambda plugged: np.full(np.shape(plugged), float(self.branches(side))),
+            film_factor=float(getattr(self.film_factor, side)),
+        )
 
     # --- walls ------------------------------------------------------------------------------------------------------
 

@@ -20,6 +20,7 @@ from engine import effectiveness as exact
 from engine.correlations import Array, Correlation, Excursion, Source, inside_tubes, losses
 from engine.correlations import across_bundle as shell
 from engine.exchangers import Cells, Film, Flowing, entrance_nodes, layout, sliver, standard_sizes
+from engine.exchangers.condenser import CondensingSurface
 from engine.exchangers.double_pipe import Factors, length
 from engine.stated import Choice, Count, Input, Problem, Side, Stated, Words
 
@@ -608,6 +609,26 @@ class ShellAndTube(Input):
             **{name: np.asarray(getattr(J, name)) for name in ("Jc", "Jl", "Jb", "Js", "Jr")},
             **{name: np.asarray(getattr(R, name)) for name in ("Rl", "Rb", "Rs")},
         }
+
+    def condensing_surface(self, side: Side) -> CondensingSurface | str:
+        """What steam condenses on, or the reason why that is not rated. Deposits leave its size as it is.
+
+        Two thirds of the tubes across the bundle drip on each other: the mean vertical row of a round bundle (Sinnott,
+        R. K., Chemical Engineering Design, ch. 12; printed page not checked), here at the tube pitch for all layouts.
+        """
+        vertical = self.orientation == "vertical"
+        if side == "inside" and vertical and self.tube_passes > 1:
+            return "condensate cannot rise: inside upright tubes steam is rated for one tube pass"
+        rows = 2 / 3 * self.outer_tube_limit / self.tube_pitch
+        return CondensingSurface(
+            inside=side == "inside",
+            vertical=vertical,
+            diameter=float(self.tube_id if side == "inside" else self.tube_od),
+            height=float(self.tube_length),
+            rows=max(1.0, float(rows)) if side == "outside" and not vertical else 1.0,
+            branches=lambda plugged: self.tubes_per_pass(plugged) * self.shells_in_parallel,
+            film_factor=float(getattr(self.film_factor, side)),
+        )
 
     # --- walls ------------------------------------------------------------------------------------------------------
 
