@@ -59,10 +59,10 @@ def sidebar() -> None:
     with st.sidebar:
         widget = f"units{session.view()}"
         choice = session.display().choice
-        session.start(widget, choice)
         st.selectbox(
             "Show figures in",
             list(CHOICES),
+            list(CHOICES).index(choice),
             format_func=CHOICES.__getitem__,
             key=widget,
             help="What you typed stays as you typed it; only the view changes.",

@@ -121,10 +121,10 @@ class Form:
         model = fields.kind_stated(part.models, self.stated(path))
         kinds = {fields.kind_of(m): m for m in part.models if m is model or fields.kind_of(m) not in LATER}
         widget = self.key((*path, "kind"))
-        session.start(widget, fields.kind_of(model))
         st.selectbox(
             "Type" if "type" in model.model_fields else f"{part.title} given as",
             list(kinds),
+            list(kinds).index(fields.kind_of(model)),
             format_func=lambda kind: _kind_title(kinds[kind]),
             key=widget,
             on_change=_switched,
@@ -189,11 +189,10 @@ class Form:
             if value not in options:
                 options.append(value)
             shown = value
-            session.start(widget, shown)
             st.selectbox(
                 declared.name,
                 options,
-                index=None,
+                options.index(value) if value in options else None,
                 placeholder="needed: choose",
                 format_func=lambda option: NOT_STATED if option is None else option.capitalize(),
                 **common,
@@ -202,11 +201,11 @@ class Form:
         else:
             shown = self.display.typed(text, declared.quantities) if isinstance(declared, engine.Stated) else text
             draw = st.text_area if getattr(declared, "lines", False) else st.text_input
-            session.start(widget, shown)
             row = st.container(horizontal=True, vertical_alignment="bottom") if names else st.container()
             with row:
                 draw(
                     declared.name,
+                    shown,
                     placeholder=self._placeholder(part, needed, names),
                     **common,
                     args=(path, widget, declared, shown, within),

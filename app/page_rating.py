@@ -237,10 +237,9 @@ def entry(case: engine.Case, side: str, name: str) -> None:
     text = session.whatif().get(place, "")
     box, slider = f"try {place}{session.view()}", f"drag {place}{session.view()}"
     at = min(max(_number(text, declared, quantity, unit, stated), low), high)
-    session.start(box, text)
-    session.start(slider, at)
     st.text_input(
         declared.name,
+        text,
         key=box,
         placeholder=f"{stated:.5g} {unit}",
         on_change=_typed,
@@ -250,7 +249,8 @@ def entry(case: engine.Case, side: str, name: str) -> None:
         f"{declared.name}, {case.exchanger.side_names[side].lower()}, {unit}",
         low,
         high,
-        step=(high - low) / 200,
+        at,
+        (high - low) / 200,
         format="%.4g",
         key=slider,
         label_visibility="collapsed",

@@ -181,12 +181,6 @@ def view() -> str:
     return f"@{st.session_state.document.get('units', AS_TYPED)}#{st.session_state.generation}"
 
 
-def start(widget: str, value: Any) -> None:
-    """What a widget shows when it is new."""
-    if widget not in st.session_state:
-        st.session_state[widget] = value
-
-
 def typed(widget: str) -> Any:
     return st.session_state[widget]
 
