@@ -15,7 +15,7 @@ from engine import fluids
 from engine.exchangers.double_pipe import DoublePipe
 from engine.exchangers.shell_and_tube import ShellAndTube
 from engine.sheet import Sheet
-from engine.stated import SIDES, Choice, Count, Figure, Input, Problem, Side, Stated, Words
+from engine.stated import SIDES, Choice, Count, Figure, Input, Problem, Side, Stated, Words, opposite
 
 ATMOSPHERE = 101325.0
 
@@ -62,19 +62,81 @@ class SolutionFluid(Input):
         return fluids.Solution(self.solution, float(self.mass_fraction))
 
 
+SLIGHT_SUPERHEAT = 50.0
+"""Up to which superheat is taken off by condensation on the wet wall [K]."""
+
+
 class SteamState(Input):
-    """Pressure of condensing steam, and how far it enters above and leaves below saturation."""
+    """Pressure of condensing steam, how far it enters above and leaves below saturation, and what hinders it."""
 
     p: Annotated[
         float,
         Stated(("pressure_gauge", "pressure_absolute"), "Steam pressure", low=-101325.0, high=22e6, example="3 barg"),
     ]
     superheat: Annotated[
-        float, Stated("temperature_difference", "Superheat at the inlet", low=0.0, high=300.0, example="0 K")
+        float,
+        Stated(
+            "temperature_difference",
+            "Superheat at the inlet",
+            low=0.0,
+            high=600.0,
+            assumed="dry saturated steam",
+            example="0 K",
+        ),
     ] = 0.0
     subcooling: Annotated[
-        float, Stated("temperature_difference", "Subcooling of the condensate", low=0.0, high=150.0, example="0 K")
+        float,
+        Stated(
+            "temperature_difference",
+            "Subcooling of the condensate",
+            low=0.0,
+            high=150.0,
+            help="It stands under condensate for that: part of the area is flooded.",
+            assumed="condensate leaves at saturation",
+            example="0 K",
+        ),
     ] = 0.0
+    back_pressure: Annotated[
+        float | None,
+        Stated(
+            ("pressure_gauge", "pressure_absolute"),
+            "Back pressure of the condensate",
+            low=-101325.0,
+            high=22e6,
+            help="Behind the trap, lift of the condensate included: below it nothing drains.",
+            example="0.5 barg",
+        ),
+    ] = None
+    noncondensable: Annotated[
+        float | None,
+        Stated(
+            "fraction",
+            "Air in the steam by mass",
+            low=0.0,
+            high=0.5,
+            help="For a warning only; gas that gathers is not rated.",
+            example="0.5 %",
+        ),
+    ] = None
+    vent_T: Annotated[
+        float | None,
+        Stated(
+            "temperature",
+            "Temperature at the vent",
+            low=273.0,
+            high=700.0,
+            help="As read where gas would gather; for a warning only.",
+            example="135 degC",
+        ),
+    ] = None
+
+    def problems(self) -> Iterator[Problem]:
+        if self.superheat > SLIGHT_SUPERHEAT:
+            yield Problem(
+                path="superheat",
+                says=f'"{_text(self.superheat)}" is more than slight: a dry zone that takes off superheat is not '
+                f"rated; allowed is up to {SLIGHT_SUPERHEAT:g} K",
+            )
 
 
 class SteamFluid(Input):
@@ -85,6 +147,10 @@ class SteamFluid(Input):
 
     def spec(self, atmosphere: float) -> fluids.Specification:
         return fluids.Pure("water")
+
+    def problems(self) -> Iterator[Problem]:
+        for problem in self.steam.problems():
+            yield problem.under("steam")
 
 
 class TableFluid(Input):
@@ -225,6 +291,8 @@ class Stream(Input):
             for name in ("T_in", "p_in", "T_out"):
                 if getattr(self, name) is not None:
                     yield Problem(path=name, says="is not stated for steam: its pressure and superheat decide it")
+            if isinstance(self.flow, Figure) and self.flow.quantity == "volume_flow":
+                yield Problem(path="flow", says=f'"{_text(self.flow)}" is a volume; allowed for steam is a mass flow')
             return
         for name in ("flow", "T_in", "p_in"):
             if getattr(self, name) is None:
@@ -325,6 +393,11 @@ class Case(Input):
         return self.inside if side == "inside" else self.outside
 
     @property
+    def steam_side(self) -> Side | None:
+        """The side on which steam condenses."""
+        return next((side for side in SIDES if self.stream(side).condenses), None)
+
+    @property
     def hot(self) -> Side:
         return "inside" if self.T_in("inside") > self.T_in("outside") else "outside"
 
@@ -349,7 +422,12 @@ class Case(Input):
         return float(stream.T_in)
 
     def fluid(self, side: Side) -> fluids.Fluid:
-        """The side's fluid at its inlet pressure. FluidError with a sentence where it cannot be offered."""
+        """The side's fluid at its inlet pressure; of condensing steam its condensate.
+
+        FluidError with a sentence where it cannot be offered.
+        """
+        if self.stream(side).condenses:
+            return fluids.saturation(self.p_in(side)).liquid
         return fluids.fluid_at(self.stream(side).fluid.spec(self.atmosphere), self.p_in(side), self.T_in(side))
 
     def flow(self, side: Side) -> float | None:
@@ -371,8 +449,13 @@ class Case(Input):
             for problem in self.stream(side).problems():
                 sound = False
                 yield problem.under(side)
+        whole = True
         for problem in self.exchanger.problems():
+            whole = False
             yield problem.under("exchanger")
+        steam = self.steam_side
+        if whole and steam is not None and isinstance(reason := self.exchanger.condensing_surface(steam), str):
+            yield Problem(path=f"{steam}.fluid", says=reason)
         yield from self._operating_problems()
         if sound:
             yield from stream_problems({side: self.stream(side) for side in SIDES}, float(self.atmosphere))
@@ -412,10 +495,15 @@ def stream_problems(streams: Mapping[Side, Stream], atmosphere: float) -> Iterat
                 T_in[side] = T
                 yield from (problem.under(side) for problem in _inlet_problems(stream, T, atmosphere))
         except fluids.FluidError as error:
-            yield Problem(path=f"{side}.fluid", says=str(error))
+            path = f"{side}.fluid.steam.p" if isinstance(stream.fluid, SteamFluid) else f"{side}.fluid"
+            yield Problem(path=path, says=str(error))
     if len(T_in) < 2:
         return
     ends = " and ".join(f"{T_in[side] - 273.15:.6g} °C ({side})" for side in SIDES)
+    steam = [side for side in SIDES if isinstance(streams[side].fluid, SteamFluid)]
+    if steam:
+        yield from _steam_problems(streams, steam, T_in)
+        return
     if abs(T_in["inside"] - T_in["outside"]) < 1e-6:
         yield Problem(
             path="outside.T_in",
@@ -431,11 +519,65 @@ def stream_problems(streams: Mapping[Side, Stream], atmosphere: float) -> Iterat
             )
 
 
+def _steam_problems(streams: Mapping[Side, Stream], steam: list[Side], T: Mapping[Side, float]) -> Iterator[Problem]:
+    """What does not go together where steam condenses; `T` is its saturation temperature and the other inlet."""
+    if len(steam) > 1:
+        yield Problem(
+            path="outside.fluid",
+            says="condenses steam as the other side does; allowed is steam on one side, a fluid of one phase on the other",
+        )
+        return
+    side, other = steam[0], opposite(steam[0])
+    state, T_sat, T_cold = _steam_of(streams[side]), f"{T[side] - 273.15:.4g} °C", f"{T[other] - 273.15:.4g} °C"
+    if T[side] - T[other] < 1e-6:
+        yield Problem(
+            path=f"{side}.fluid.steam.p",
+            says=f'"{_text(state.p)}" condenses at {T_sat}, not above the other inlet of {T_cold}; steam must be the '
+            "hot side",
+        )
+        return
+    if T[side] - state.subcooling <= T[other]:
+        yield Problem(
+            path=f"{side}.fluid.steam.subcooling",
+            says=f'"{_text(state.subcooling)}" below {T_sat} would be colder than the other inlet; allowed is up to '
+            f"{T[side] - T[other]:.4g} K",
+        )
+    if state.vent_T is not None and state.vent_T > T[side] + 1.0:
+        yield Problem(
+            path=f"{side}.fluid.steam.vent_T",
+            says=f'"{_text(state.vent_T)}" is hotter than the steam condenses ({T_sat}); allowed is up to that',
+        )
+    T_out = streams[other].T_out
+    if T_out is not None and not T[other] < T_out < T[side]:
+        yield Problem(
+            path=f"{other}.T_out",
+            says=f'"{_text(T_out)}" is against the second law; allowed is between the inlet of {T_cold} and the '
+            f"{T_sat} at which the steam condenses",
+        )
+
+
+def _steam_of(stream: Stream) -> SteamState:
+    assert isinstance(stream.fluid, SteamFluid)
+    return stream.fluid.steam
+
+
 def _inlet_temperature(stream: Stream, atmosphere: float) -> float | None:
+    """Of condensing steam the temperature at which it condenses."""
     if isinstance(stream.fluid, SteamFluid):
-        steam = stream.fluid.steam
-        return fluids.saturation(absolute(steam.p, atmosphere)).T_sat + float(steam.superheat)
+        return _saturation_temperature(absolute(stream.fluid.steam.p, atmosphere))
     return None if stream.T_in is None else float(stream.T_in)
+
+
+def _saturation_temperature(p: float) -> float:
+    """Raises FluidError beyond the ends of the saturation line."""
+    line = fluids.saturation_line()
+    low, high = (float(line.p(T)) for T in (line.T_low, line.T_high))
+    if not low < p < high:
+        raise fluids.FluidError(
+            f"{p / 1e5:.4g} bar absolute is no pressure at which steam condenses here; allowed is "
+            f"{low / 1e5:.2g} to {high / 1e5:.3g} bar absolute"
+        )
+    return fluids.saturation(p).T_sat
 
 
 def _inlet_problems(stream: Stream, T: float, atmosphere: float) -> Iterator[Problem]:
