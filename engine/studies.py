@@ -631,7 +631,7 @@ def _with_doubt(case: Case, about: Answer, probe: Callable[[Array], Conditions])
     found: list[float | None] = []
     for upward, end in ((False, variable.low), (True, variable.high)):
         values = variable.settled(_from(value, end, GRID))
-        bracket = _narrowed(probe, variable, values, moved(doubt if upward == about.at_most else -doubt), rounds=1)
+        bracket = _narrowed(probe, variable, values, moved(doubt if upward == about.at_most else -doubt), rounds=2)
         found.append(None if bracket is None else bracket[0 if upward == about.at_most else 1])
     return replace(about, ends=(found[0], found[1]))
 
