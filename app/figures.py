@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from typing import Any
 
+import numpy as np
 import plotly.graph_objects as go
 
 HOT, COLD, WALL = "#d1603d", "#3d8fc4", "#8b9196"
@@ -144,4 +145,50 @@ def stacked(
         yaxis={"autorange": "reversed"},
         **_frame(270),
     )
+    return figure
+
+
+def bundle(data: Any) -> go.Figure:
+    """The cross-section of a bundle to scale; the tubes of even passes are filled, each pass carries its number."""
+    field, figure = data.field, go.Figure()
+    turn = np.linspace(0, 2 * np.pi, 13 if len(field.x) < 1500 else 7)
+    ring = 0.5 * field.tube_od * np.array([[*np.cos(turn), np.nan], [*np.sin(turn), np.nan]])
+    for even in (False, True):
+        here = (field.tube_pass % 2 == 0) == even
+        x, y = ((at[here, None] + edge).ravel() for at, edge in zip((field.x, field.y), ring, strict=True))
+        figure.add_scatter(
+            x=x.round(5),
+            y=y.round(5),
+            mode="lines",
+            fill="toself",
+            fillcolor=GROUND.replace("0.30", "0.75") if even else "rgba(0,0,0,0)",
+            line={"color": WALL, "width": 1},
+        )
+    turn = np.linspace(0, 2 * np.pi, 121)
+    for radius, dash, width in ((field.shell_radius, "solid", 2.5), (field.bundle_radius, "dot", 1)):
+        line = {"color": WALL, "width": width, "dash": dash}
+        figure.add_scatter(x=radius * np.cos(turn), y=radius * np.sin(turn), mode="lines", line=line)
+    chords = [] if field.cut_y is None else [(field.cut_y, "solid"), (-field.cut_y, "dash")]
+    for y, dash in chords:
+        half = (field.shell_radius**2 - y**2) ** 0.5
+        figure.add_scatter(x=[-half, half], y=[y, y], mode="lines", line={"color": HOT, "width": 2, "dash": dash})
+    for y in field.strip_y:
+        ends = [(radius**2 - y**2) ** 0.5 for radius in (field.bundle_radius, field.shell_radius)]
+        x = [-ends[1], -ends[0], None, *ends]
+        figure.add_scatter(x=x, y=[y] * 5, mode="lines", line={"color": HOT, "width": 4})
+    for number in np.unique(field.tube_pass) if field.tube_pass.max() > 1 else ():
+        here = field.tube_pass == number
+        figure.add_annotation(
+            x=field.x[here].mean(),
+            y=field.y[here].mean(),
+            text=f"<b>{number}</b>",
+            showarrow=False,
+            font={"color": "#1b2430"},
+            bgcolor="white",
+            bordercolor=WALL,
+        )
+    hidden = {"visible": False, "fixedrange": True, "range": [-1.02 * field.shell_radius, 1.02 * field.shell_radius]}
+    figure.update_traces(hoverinfo="skip", showlegend=False)
+    frame = {**_frame(270), "margin": dict.fromkeys("lrtb", 2)}
+    figure.update_layout(xaxis=hidden, yaxis={**hidden, "scaleanchor": "x"}, **frame)
     return figure

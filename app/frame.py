@@ -20,6 +20,7 @@ STYLE = """<style>
 [data-testid="stMainBlockContainer"] {padding-top: 3.5rem}
 [data-testid="stMarkdownContainer"] table {display: block; overflow-x: auto; width: fit-content; max-width: 100%}
 [data-testid="stMarkdownContainer"] td:not(:first-child) {font-variant-numeric: tabular-nums}
+[data-testid="stLayoutWrapper"]:has(> .st-key-bundle) {position: sticky; top: 4.5rem}
 .st-key-answer p {font-size: 1.25rem; font-weight: 600; line-height: 1.4}
 @media (hover: hover) {
   [data-testid="stWidgetLabel"] [data-testid="stTooltipIcon"] {visibility: hidden}
@@ -30,7 +31,7 @@ STYLE = """<style>
 }
 </style>"""
 """A wide table scrolls within itself, never the page. The help of a box shows while the box is pointed at or typed in,
-so that the tabulator key goes from box to box."""
+so that the tabulator key goes from box to box. The drawing of a bundle stays in sight beside its figures."""
 
 
 def drawn(show: Callable[[], None]) -> Callable[[], None]:
@@ -124,6 +125,8 @@ def blocks(blocks: Sequence[Any], place: str) -> None:
             table(block.header, block.rows)
         elif isinstance(block, engine.Chart):
             plot(figures.chart(block), block.alt, f"{place} {i}")
+        elif isinstance(block, engine.Bundle):
+            plot(figures.bundle(block), block.alt, f"{place} {i}")
         else:
             st.markdown(plain(block.alt))
 

@@ -10,9 +10,9 @@ from typing import Any
 import streamlit as st
 
 import engine
-from app import fields, session
+from app import fields, figures, session
 from app.display import plain
-from app.frame import sentence, state_line
+from app.frame import plot, sentence, state_line
 from app.inputs import Form, Problems
 
 TITLE = "Case"
@@ -35,7 +35,7 @@ def show() -> None:
     about(form)
     sides(form)
     st.subheader("Exchanger", anchor=False)
-    form.kinds(_part("exchanger"), ("exchanger",))
+    exchanger(form)
     form.fold("Limits of the equipment", [("limits",)], lambda: _limits(form))
     with top:
         unplaced(problems)
@@ -152,6 +152,21 @@ def sides(form: Form) -> None:
     for part, path in form.tables:
         st.markdown(f"**{plain(fields.words(engine.Case, form.raw, path[:2]))}: {part.title.lower()} of properties**")
         form.rows(part, path)
+
+
+def exchanger(form: Form) -> None:
+    """The exchanger as stated, its bundle drawn to scale beside the figures."""
+    stated = form.stated(("exchanger",))
+    drawn = engine.stated_bundle(stated, session.display().system) if isinstance(stated, dict) else None
+    if drawn is None:
+        form.kinds(_part("exchanger"), ("exchanger",))
+        return
+    entries, drawing = st.columns([2, 1], gap="medium")
+    with entries:
+        form.kinds(_part("exchanger"), ("exchanger",))
+    with drawing, st.container(key="bundle"):
+        plot(figures.bundle(drawn), drawn.alt, "bundle drawn")
+        st.caption(plain("\n".join(drawn.legend)).replace("\n", "  \n"))
 
 
 def _limits(form: Form) -> None:

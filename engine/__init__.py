@@ -12,6 +12,7 @@ from typing import Any
 __version__ = "0.1.0"
 
 _WHERE = {
+    "Bundle": "report.blocks",
     "Case": "case",
     "CaseError": "stated",
     "Chart": "report.sections",
@@ -47,6 +48,7 @@ _WHERE = {
     "save_case": "casefile",
     "sections": "report",
     "show": "units",
+    "stated_bundle": "report.inputs",
     "to_unit": "units",
     "unit_of": "units",
     "upgraded": "casefile",

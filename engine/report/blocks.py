@@ -5,6 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 
+from engine.exchangers.tube_field import TubeField
 from engine.stated import Side
 
 
@@ -94,7 +95,16 @@ class ShellScheme:
     alt: str
 
 
-Figure = Chart | DoublePipeScheme | ShellScheme
+@dataclass(frozen=True, kw_only=True)
+class Bundle:
+    """The cross-section of a bundle to scale; `legend` tells the figures that it was drawn from."""
+
+    field: TubeField
+    legend: tuple[str, ...]
+    alt: str
+
+
+Figure = Chart | DoublePipeScheme | ShellScheme | Bundle
 Block = str | Table | Figure
 
 

@@ -10,7 +10,7 @@ from reportlab.graphics.shapes import Circle, Drawing, Line, Path, Polygon, Poly
 from reportlab.lib.colors import Color, HexColor, white
 from reportlab.pdfbase.pdfmetrics import stringWidth
 
-from engine.report.blocks import Chart, DoublePipeScheme, Figure, Flow, ShellScheme, Strip
+from engine.report.blocks import Bundle, Chart, DoublePipeScheme, Figure, Flow, ShellScheme, Strip
 from engine.stated import Side
 
 REGULAR, BOLD = "DejaVuSans", "DejaVuSans-Bold"
@@ -382,10 +382,71 @@ def _shell_nozzles(
         drawing.add(_text(x0 + (x1 - x0) * share, y, fitted(words, x1 - x0), anchor=anchor))
 
 
+# --- bundle -----------------------------------------------------------------------------------------------------------
+
+HALF = 0.5523
+"""Handle of the cubic that draws a quarter of a circle, over the radius."""
+
+
+def draw_bundle(bundle: Bundle, width: float, height: float = 170.0) -> Drawing:
+    """The tubes to scale within shell and outer tube limit; even passes are grey, each pass carries its number."""
+    field, drawing = bundle.field, Drawing(width, height)
+    scale = (height / 2 - 3) / field.shell_radius
+    x0, y0 = 24.0 + height / 2, height / 2
+
+    def circle(radius: float, **style: object) -> Circle:
+        return Circle(x0, y0, radius * scale, fillColor=None, strokeColor=INK, **style)
+
+    drawing.add(circle(field.shell_radius, strokeWidth=1.4))
+    drawing.add(circle(field.bundle_radius, strokeWidth=0.4, strokeDashArray=[1, 2]))
+    places = list(zip(x0 + scale * field.x, y0 + scale * field.y, field.tube_pass, strict=True))
+    for even, fill in ((False, white), (True, HexColor("#9aa3ab"))):
+        path = Path(fillColor=fill, strokeColor=INK, strokeWidth=0.3)
+        for x, y, number in places:
+            if (number % 2 == 0) == even:
+                _add_circle(path, x, y, field.tube_od * scale / 2)
+        drawing.add(path)
+    if field.cut_y is not None:
+        half = math.sqrt(field.shell_radius**2 - field.cut_y**2) * scale
+        for y, dash in ((field.cut_y, None), (-field.cut_y, [5, 3])):
+            level = y0 + y * scale
+            drawing.add(
+                Line(x0 - half, level, x0 + half, level, strokeColor=INK, strokeWidth=1.2, strokeDashArray=dash)
+            )
+    for y in field.strip_y:
+        inner, outer = (math.sqrt(r**2 - y**2) * scale for r in (field.bundle_radius, field.shell_radius))
+        level = y0 + y * scale
+        for way in (-1, 1):
+            drawing.add(Line(x0 + way * inner, level, x0 + way * outer, level, strokeColor=INK, strokeWidth=2))
+    passes = int(field.tube_pass.max()) if len(places) else 0
+    for number in range(1, passes + 1) if passes > 1 else ():
+        of_pass = [(x, y) for x, y, one in places if one == number]
+        if of_pass:
+            x, y = (sum(values) / len(of_pass) for values in zip(*of_pass, strict=True))
+            drawing.add(Rect(x - 6, y - 5, 12, 10, rx=3, fillColor=white, strokeColor=INK, strokeWidth=0.5))
+            drawing.add(_text(x, y - 2.6, str(number), anchor="middle", bold=True))
+    left = x0 + height / 2 + 26
+    for i, words in enumerate(bundle.legend):
+        drawing.add(_text(left, height - 22 - 11 * i, fitted(words, width - left)))
+    return drawing
+
+
+def _add_circle(path: Path, x: float, y: float, r: float) -> None:
+    h = HALF * r
+    path.moveTo(x + r, y)
+    path.curveTo(x + r, y + h, x + h, y + r, x, y + r)
+    path.curveTo(x - h, y + r, x - r, y + h, x - r, y)
+    path.curveTo(x - r, y - h, x - h, y - r, x, y - r)
+    path.curveTo(x + h, y - r, x + r, y - h, x + r, y)
+    path.closePath()
+
+
 def drawn(figure: Figure, width: float) -> Drawing:
     """Any figure of a report."""
     if isinstance(figure, Chart):
         return draw_chart(figure, width)
     if isinstance(figure, ShellScheme):
         return draw_shell(figure, width)
+    if isinstance(figure, Bundle):
+        return draw_bundle(figure, width)
     return draw_double_pipe(figure, width)

@@ -5,15 +5,18 @@ from __future__ import annotations
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from typing import Any
 
+from pydantic import ValidationError
+
 from engine.case import Case, ConstantFluid, Stream, TableFluid
 from engine.correlations import Source
 from engine.exchangers.double_pipe import DoublePipe
 from engine.exchangers.shell_and_tube import ShellAndTube
-from engine.report.blocks import Block, DoublePipeScheme, Flow, ShellScheme, Table
+from engine.exchangers.tube_field import tube_field
+from engine.report.blocks import Block, Bundle, DoublePipeScheme, Flow, ShellScheme, Table
 from engine.report.words import Words, capital, fluid_name, listed
 from engine.stated import SIDES, Choice, Count, Input, Side, Stated
 
-NOT_STATED = "not stated"
+NOT_STATED, MISSING = "not stated", "is missing"
 WIDTHS = (1.6, 2, 2.4)
 
 
@@ -50,6 +53,60 @@ def scheme(case: Case, words: Words, T_out: Mapping[Side, str]) -> Block:
         banks=exchanger.banks,
         flows=flows,
         alt=f"{exchanger.title}, {exchanger.arrangement}; {legs} of {words.typed(exchanger.leg_length)}{banks}. {ends}",
+    )
+
+
+DRAWN = ("tema", "shell_id", "tube_od", "tube_pitch", "tubes", "tube_passes", "bundle_diameter", "baffle_cut")
+"""What must be sound of an exchanger for its bundle to be drawn."""
+
+
+def stated_bundle(given: Mapping[str, Any], system: str = "si") -> Bundle | None:
+    """The bundle of an exchanger as typed, while the case is still incomplete; None where too little is sound."""
+    if given.get("type") != "shell-and-tube":
+        return None
+    try:
+        exchanger = ShellAndTube.model_validate(dict(given))
+    except ValidationError:
+        return None
+    if any(problem.path in DRAWN and problem.says != MISSING for problem in exchanger.problems()):
+        return None
+    return bundle(exchanger, Words(system))
+
+
+def bundle(exchanger: ShellAndTube, words: Words) -> Bundle:
+    """The cross-section of one shell, in figures of a system of units."""
+    field = tube_field(exchanger)
+    bore, od, pitch = (words.typed(value) for value in (exchanger.shell_id, exchanger.tube_od, exchanger.tube_pitch))
+    limit = words.show(2 * field.bundle_radius, "length")
+    passes = _counted(exchanger.tube_passes, "pass", "passes")
+    tubes = f"{exchanger.tubes} tubes of {od} at {exchanger.layout_angle}, pitch {pitch}"
+    short = field.capacity < field.tubes
+    room = (
+        f"only {field.capacity} of {field.tubes} tubes find a place"
+        if short
+        else f"places for {field.capacity}, tie rods and impingement plates not counted"
+    )
+    cut = "no baffles" if exchanger.shell_letter == "X" else "baffle cut not stated"
+    if field.cut_y is not None:
+        cut = f"baffle cut {words.typed(exchanger.baffle_cut)}"
+    pairs = exchanger.sealing_strip_pairs
+    strips = _counted(pairs, "pair of sealing strips", "pairs of sealing strips") if pairs else "no sealing strips"
+    legend = [
+        f"shell bore {bore}",
+        f"outer tube limit {limit}",
+        tubes,
+        passes + ", the even ones grey" * (exchanger.tube_passes > 1),
+        room,
+        cut,
+    ]
+    if field.cut_y is not None:
+        legend.append("full and broken line: edges of the baffles, in turn")
+    return Bundle(
+        field=field,
+        legend=(*map(capital, legend), capital(strips)),
+        alt=f"Cross-section of one shell to scale, flow across the bundle upright: bore {bore}, outer tube limit "
+        f"{limit}; {tubes}, in {passes}; {room}. {capital(cut)}, {strips}. Laid out from the stated figures, not "
+        f"from the drawing of what was built.{' Check bore, pitch, layout and count.' if short else ''}",
     )
 
 

@@ -15,6 +15,7 @@ from engine import __version__, units
 from engine.case import Case
 from engine.correlations import REGISTER, Correlation, Source, losses
 from engine.exchangers.double_pipe import DoublePipe
+from engine.exchangers.shell_and_tube import ShellAndTube
 from engine.findings import GRADES, Finding, Verdict
 from engine.findings import findings as by_grade
 from engine.rating import Profile, Rating, SideState, State
@@ -280,6 +281,8 @@ class _Report:
             for side, T in self.rating.fouled.T_out.items():
                 T_out[side] = self.words.best(T, "temperature", self._ends("fouled", f"{side}.T_out"))
         yield inputs.scheme(self.case, self.words, T_out)
+        if isinstance(self.case.exchanger, ShellAndTube):
+            yield inputs.bundle(self.case.exchanger, self.words)
 
     # --- results ------------------------------------------------------------------------------------------------------
 
