@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 from scipy.linalg import expm
 
 from engine import effectiveness as exact
-from engine.proofs.effectiveness import PROOFS
+from engine.proofs.effectiveness import ROWS
 
 settings.register_profile("any machine", deadline=None)
 settings.load_profile("any machine")
@@ -39,7 +39,7 @@ some_F = st.tuples(st.floats(0.02, 0.98), st.floats(0.05, 3.0), st.integers(1, 4
 """Share of the largest P, R, shells."""
 
 
-@pytest.mark.parametrize("proof", PROOFS, ids=lambda proof: f"{proof.subject}: {proof.what}")
+@pytest.mark.parametrize("proof", ROWS, ids=lambda proof: f"{proof.subject}: {proof.what}")
 def test_published_and_derived_values_are_reproduced(proof):
     assert proof.holds(), f"{proof.what}: {proof.ours()} instead of {proof.value} ({proof.source})"
 

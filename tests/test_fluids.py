@@ -16,7 +16,7 @@ from hypothesis import strategies as st
 
 from engine import fluids
 from engine.fluids import Constant, FluidError, Pure, Solution, Table, TablePoint, fluid_at, offered, saturation
-from engine.proofs.fluids import PROOFS
+from engine.proofs.fluids import ROWS
 
 K = 273.15
 LUBE_OIL = Table(
@@ -36,7 +36,7 @@ THREE_POINTS = Table(
 )
 
 
-@pytest.mark.parametrize("proof", PROOFS, ids=lambda proof: proof.what)
+@pytest.mark.parametrize("proof", ROWS, ids=lambda proof: proof.what)
 def test_check_value_is_reproduced(proof):
     assert proof.holds(), f"off by {proof.difference():.3g}, allowed {proof.tolerance:g} ({proof.reason})"
 

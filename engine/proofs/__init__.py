@@ -6,9 +6,25 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
-from typing import Literal
+from importlib import import_module
+from typing import Any, Literal
 
 Kind = Literal["printed", "derived", "independent", "from memory"]
+
+
+PARTS = (
+    "inside_tubes",
+    "annulus",
+    "losses",
+    "across_bundle",
+    "condensing",
+    "vibration",
+    "standard_sizes",
+    "fluids",
+    "effectiveness",
+    "double_pipe",
+)
+"""The modules that hold the rows, each in its `ROWS`; imported when rows are asked for."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -30,10 +46,39 @@ class Proof:
     source: str
     relative: bool = True
 
-    def difference(self) -> float:
+    def difference(self, ours: float | None = None) -> float:
         """Ours minus the published value, relative or in `unit` as the tolerance is."""
-        off = float(self.ours()) - self.value
+        off = (float(self.ours()) if ours is None else ours) - self.value
         return off / self.value if self.relative else off
 
-    def holds(self) -> bool:
-        return abs(self.difference()) <= self.tolerance
+    def holds(self, ours: float | None = None) -> bool:
+        return abs(self.difference(ours)) <= self.tolerance
+
+
+def rows() -> tuple[Proof, ...]:
+    """Every row, part by part."""
+    return tuple(row for part in PARTS for row in import_module(f"engine.proofs.{part}").ROWS)
+
+
+def table() -> list[dict[str, Any]]:
+    """Every row computed, as plain values: what it is, theirs, ours, how far off, how far is allowed and why."""
+    found = []
+    for row in rows():
+        ours = float(row.ours())
+        found.append(
+            {
+                "subject": row.subject,
+                "what": row.what,
+                "value": row.value,
+                "ours": ours,
+                "unit": row.unit,
+                "difference": row.difference(ours),
+                "tolerance": row.tolerance,
+                "relative": row.relative,
+                "holds": row.holds(ours),
+                "kind": row.kind,
+                "source": row.source,
+                "reason": row.reason,
+            }
+        )
+    return found

@@ -377,4 +377,4 @@ def _sources() -> Iterator[Proof]:
         yield row("from memory", source, what, subject, ours, value, tolerance, "rounded to the digits shown")
 
 
-PROOFS: tuple[Proof, ...] = (*_grids(), *_shells(), *_sources())
+ROWS: tuple[Proof, ...] = (*_grids(), *_shells(), *_sources())

@@ -201,7 +201,7 @@ OLD_TABLES = "older steam tables than the formulation used here"
 HALF_DIGIT = "half the last printed digit"
 THIN = "the printed value is for zero density; here 100 Pa"
 
-PROOFS: tuple[Proof, ...] = (
+ROWS: tuple[Proof, ...] = (
     *(
         row(f"water at {T:g} K and {p:g} Pa: {name}", partial(prop, WATER, p, T, name), value, unit, slack, FIT, IF97)
         for T, p, v, cp, slack_v, slack_cp in IF97_STATES
