@@ -22,6 +22,7 @@ Shape = Literal["box", "group", "rows", "kinds"]
 class Part:
     """One field: a box to fill, a group of further fields, rows of them, or kinds of group to choose from."""
 
+    owner: type[engine.Input]
     name: str
     shape: Shape
     declared: Any
@@ -49,16 +50,16 @@ def _part(model: type[engine.Input], name: str) -> Part | None:
     needed = field.is_required()
     default = None if needed else field.default
     if declared is not None:
-        return Part(name, "box", declared, (), needed, default)
+        return Part(model, name, "box", declared, (), needed, default)
     models = tuple(engine.EXCHANGERS.values()) if name == "exchanger" else tuple(_models(field.annotation))
     if not models:
         return None
     if any(kind_of(m) for m in models):
-        return Part(name, "kinds", None, models, needed, default)
+        return Part(model, name, "kinds", None, models, needed, default)
     if _is_list(field.annotation):
         fewest = next((m.min_length for m in field.metadata if hasattr(m, "min_length")), 0)
-        return Part(name, "rows", fewest, models, needed, default)
-    return Part(name, "group", None, models, needed, default)
+        return Part(model, name, "rows", fewest, models, needed, default)
+    return Part(model, name, "group", None, models, needed, default)
 
 
 def _models(annotation: Any) -> Iterator[type[engine.Input]]:
@@ -160,6 +161,23 @@ def words(model: type[engine.Input], raw: Any, path: Path) -> str:
             said.append(part.title)
         model = kind_stated(part.models, get(raw, path[: i + 1]))
     return ", ".join([said[0], *(text[:1].lower() + text[1:] for text in said[1:])]) if said else ""
+
+
+def in_form_words(says: str, model: type[engine.Input]) -> str:
+    """A sentence of the engine with the keys that it quotes called as the form calls them."""
+    for part in parts(model):
+        if part.shape == "box":
+            says = says.replace(f'"{part.name}"', f"“{part.declared.name}”")
+    return says
+
+
+def model_at(model: type[engine.Input], raw: Any, path: Path) -> type[engine.Input]:
+    """The model that declares what stands at a path: a group's own, or that of the group a box is in."""
+    for i, step in enumerate(path):
+        part = next((part for part in parts(model) if part.name == step), None)
+        if part is not None and part.models:
+            model = kind_stated(part.models, get(raw, path[: i + 1]))
+    return model
 
 
 def steps(place: str) -> Path:

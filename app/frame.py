@@ -96,7 +96,9 @@ def state_line(problems: Problems) -> str:
 
 def sentence(place: str, says: str) -> str:
     """A problem with its place as the form calls it."""
-    where = fields.words(engine.Case, session.case(), fields.steps(place)) if place else ""
+    path = fields.steps(place)
+    says = fields.in_form_words(says, fields.model_at(engine.Case, session.case(), path))
+    where = fields.words(engine.Case, session.case(), path)
     if not where:
         return f"{says[0].upper()}{says[1:]}."
     return f"{where} {says}." if says == MISSING else f"{where}: {says}."

@@ -31,11 +31,13 @@ NOZZLES, DETAILS = "Nozzles", "Further details"
 class Problems:
     """What the engine says to the case, handed out to the fields it belongs to."""
 
-    def __init__(self, problems: Sequence[engine.Problem]) -> None:
+    def __init__(self, problems: Sequence[engine.Problem], raw: Any) -> None:
         self._left: dict[str, list[str]] = {}
+        self.missing = 0
         for problem in problems:
             self._left.setdefault(problem.path, []).append(problem.says)
-        self.missing = sum(problem.says == MISSING for problem in problems)
+            stated = fields.get(raw, fields.steps(problem.path)) if problem.path else raw
+            self.missing += stated in (None, "", {}, [])
         self.wrong = len(problems) - self.missing
 
     def take(self, *paths: Path) -> list[str]:
@@ -73,7 +75,7 @@ class Form:
 
     def group(self, model: type[engine.Input], path: Path, columns: int = 1, within: Path | None = None) -> None:
         """All fields of a model: what is usually stated first, the rest in folds."""
-        self.said(path)
+        self.said(path, model)
         boxes, folds = _arranged(model)
         self.boxes(boxes, path, columns, within)
         for part in fields.parts(model):
@@ -111,8 +113,8 @@ class Form:
     def boxes(self, inner: Sequence[Part], path: Path, columns: int, within: Path | None = None) -> None:
         for first in range(0, len(inner), columns):
             row = inner[first : first + columns]
-            wrong = any(says != MISSING for part in row for says in self.problems.under((*path, part.name)))
-            for part, place in zip(row, _side_by_side(columns, "top" if wrong else "bottom"), strict=False):
+            said = any(says != MISSING for part in row for says in self.problems.under((*path, part.name)))
+            for part, place in zip(row, _side_by_side(columns, "top" if said else "bottom"), strict=False):
                 with place:
                     self.box(part, (*path, part.name), within)
 
@@ -139,10 +141,10 @@ class Form:
         """A table, row by row, with a place to paste a whole one."""
         stated = self.stated(path)
         count = len(stated) if isinstance(stated, list) else 0
-        self.said(path)
+        self.said(path, part.models[0])
         columns = fields.parts(part.models[0])
         for i in range(count):
-            self.said((*path, i))
+            self.said((*path, i), part.models[0])
             *places, last = st.columns([1] * len(columns) + [0.75], vertical_alignment="bottom")
             for column, place in zip(columns, places, strict=True):
                 with place:
@@ -213,8 +215,7 @@ class Form:
                 if names:
                     self._list_of(names, declared.name, path, widget)
         for says in problems:
-            if says != MISSING and not (says and not text):
-                _wrong(says)
+            _said(says, part.owner, wrong=bool(text))
 
     def _list_of(self, names: Sequence[str], label: str, path: Path, widget: str) -> None:
         """Names to choose from, beside a box in which any other may be typed."""
@@ -241,21 +242,22 @@ class Form:
             return f"taken as {part.default}"
         return f"e.g. {example}" if example else ""
 
-    def said(self, path: Path) -> None:
+    def said(self, path: Path, model: type[engine.Input]) -> None:
         """What the engine says to a whole group."""
         for says in self.problems.take(path):
-            if says == MISSING:
-                st.caption("Needed.")
-            else:
-                _wrong(says)
+            _said(says, model, wrong=bool(self.stated(path)))
 
 
 def _side_by_side(count: int, aligned: str = "top") -> Sequence[Any]:
     return st.columns(count, vertical_alignment=aligned) if count > 1 else [st.container()] * count
 
 
-def _wrong(says: str) -> None:
-    st.caption(f":red[✗ {plain(says[0].upper() + says[1:])}]")
+def _said(says: str, model: type[engine.Input], wrong: bool) -> None:
+    """A sentence of the engine, in red where it is about something stated, with fields called as in the form."""
+    if says == MISSING:
+        return
+    says = fields.in_form_words(says, model)
+    st.caption(f":red[✗ {plain(says[0].upper() + says[1:])}]" if wrong else plain(f"Needed: {says}"))
 
 
 def _help(declared: Any) -> str | None:

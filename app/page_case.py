@@ -22,7 +22,7 @@ FIRST = ("tag", "service")
 
 
 def show() -> None:
-    problems = Problems(session.checked(session.text_of(session.case())).problems)
+    problems = Problems(session.checked(session.text_of(session.case())).problems, session.case())
     form = Form(problems)
     st.title(plain(form.stated(("tag",)) or "New case"), anchor=False)
     with st.container(horizontal=True):
@@ -144,7 +144,7 @@ def sides(form: Form) -> None:
         with place:
             st.subheader(model.side_names[side], anchor=False)
             stream = _part(side).models[0]
-            form.said((side,))
+            form.said((side,), stream)
             for part in fields.parts(stream):
                 if part.shape == "kinds":
                     form.kinds(part, (side, part.name))
