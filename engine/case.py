@@ -524,7 +524,7 @@ def _steam_problems(streams: Mapping[Side, Stream], steam: list[Side], T: Mappin
     if len(steam) > 1:
         yield Problem(
             path="outside.fluid",
-            says="condenses steam as the other side does; allowed is steam on one side, a fluid of one phase on the other",
+            says="condenses steam as the inside does; allowed is steam on one side, a fluid of one phase on the other",
         )
         return
     side, other = steam[0], opposite(steam[0])

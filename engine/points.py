@@ -20,6 +20,7 @@ from engine.correlations import Array
 from engine.exchangers import Cells, Film, Flowing
 from engine.fluids import Fluid, Properties, Tabulated
 from engine.stated import SIDES, CaseError, Problem, Side, opposite
+from engine.steam import MOST_FLOODED, Flooded, Steam, steam_of
 
 CHUNK = 512
 """Points solved at once: small enough for the work arrays to stay in the processor's cache."""
@@ -32,6 +33,8 @@ SETTLE_AT = (1e-2, 1e-6)
 PATIENCE = 14
 """Iterations after which a chunk goes on without the few points that settle slowly."""
 MOST_ITERATIONS = 80
+LIKELY_U = 1000.0
+"""Of steam heaters [W/m²K]: the heat to start from."""
 FEW = 8
 """So few points are not parted."""
 
@@ -43,9 +46,13 @@ class Points:
     """Operating points of one case; every array (P,), SI."""
 
     flow: Mapping[Side, Array]
+    """Of condensing steam the most that comes; infinite where as much comes as condenses."""
     T_in: Mapping[Side, Array]
+    """Of condensing steam its saturation temperature as supplied."""
     R_fouling: Mapping[Side, Array]
     tubes_plugged: Array
+    duty_most: Array
+    """Heat at which a valve throttles the condensing steam [W]; infinite where none does."""
     factors: Mapping[str, Array] = field(default_factory=dict)
     """"side:relation" or "side:property" (rho, cp, mu, k) or "wall" to multipliers: how doubt is propagated."""
 
@@ -58,6 +65,7 @@ class Points:
             T_in={side: x[rows] for side, x in self.T_in.items()},
             R_fouling={side: x[rows] for side, x in self.R_fouling.items()},
             tubes_plugged=self.tubes_plugged[rows],
+            duty_most=self.duty_most[rows],
             factors={name: x[rows] for name, x in self.factors.items()},
         )
 
@@ -68,8 +76,23 @@ def in_series(r: Mapping[str, Array]) -> Array:
 
 
 @dataclass(frozen=True, kw_only=True)
+class Condensed:
+    """What the condensing side of solved points does; arrays (P,)."""
+
+    steam: Steam
+    T_sat: Array
+    """In the chest [K]: as supplied, or lower where less steam comes than the area would condense."""
+    flow: Array
+    """What condenses [kg/s]."""
+    flooded: Flooded | None
+
+
+@dataclass(frozen=True, kw_only=True)
 class Solution:
-    """Solved points by the march, arrays (P,) or (P, n)."""
+    """Solved points by the march, arrays (P,) or (P, n).
+
+    Where part of the area is flooded by condensate, the cells are those of the rest of it.
+    """
 
     points: Points
     cells: Cells
@@ -81,6 +104,7 @@ class Solution:
     surface: Mapping[Side, Array]
     films: Mapping[Side, Film]
     flowing: Mapping[Side, Flowing]
+    """Without the condensing side."""
     r: Mapping[str, Array]
     """Local resistances by name, (P, n_cells), on the outside bare area."""
     heat: Array
@@ -88,6 +112,7 @@ class Solution:
     iterations: NDArray[np.int_]
     residual: Array
     problem: Texts
+    condensed: Condensed | None = None
 
     @cached_property
     def share(self) -> Array:
@@ -97,14 +122,23 @@ class Solution:
     def U_local(self) -> Array:
         return in_series(self.r)
 
+    @property
+    def flooded(self) -> Flooded | None:
+        return None if self.condensed is None else self.condensed.flooded
+
     @cached_property
     def U(self) -> Array:
-        return np.asarray(self.U_local @ self.share)
+        U, flooded = np.asarray(self.U_local @ self.share), self.flooded
+        return U if flooded is None else (1 - flooded.share) * U + flooded.share * flooded.U
 
     @cached_property
     def resistances(self) -> dict[str, Array]:
         """⟨U r_k⟩/⟨U⟩: so weighted, they sum to 1/U exactly."""
-        return {name: (self.U_local * r) @ self.share / self.U for name, r in self.r.items()}
+        total, flooded = {name: (self.U_local * r) @ self.share for name, r in self.r.items()}, self.flooded
+        if flooded is not None:
+            s = flooded.share
+            total = {name: (1 - s) * x + s * flooded.U * flooded.r[name] for name, x in total.items()}
+        return {name: x / self.U for name, x in total.items()}
 
     @cached_property
     def U_clean(self) -> Array:
@@ -118,29 +152,44 @@ class Solution:
 def points_of(case: Case, frame: pd.DataFrame | None = None) -> tuple[Points, Texts]:
     """Operating points from a frame (columns by path, SI; what is absent comes from the case), and a problem per row.
 
-    Raises CaseError for an unknown column.
+    Of condensing steam `T_in` is the temperature at which it enters, or `fluid.steam.p` its absolute pressure; `flow`
+    is a limit, and NaN means none. Raises CaseError for an unknown column.
     """
     n = 1 if frame is None else len(frame)
+    steam = steam_of(case)
     columns = {f"{side}.{name}" for side in SIDES for name in ("flow", "T_in", "R_fouling")} | {"tubes_plugged"}
+    pressure = "" if steam is None else f"{steam.side}.fluid.steam.p"
+    if pressure:
+        columns.add(pressure)
     given = {} if frame is None else {str(name): frame[name].to_numpy(float) for name in frame.columns}
     unknown = sorted(set(given) - columns)
     if unknown:
         allowed = ", ".join(sorted(columns))
         raise CaseError([Problem(path=name, says=f"is not a known column; allowed are {allowed}") for name in unknown])
+    if steam is not None and {pressure, f"{steam.side}.T_in"} <= set(given):
+        says = f"stands beside {pressure}; of steam one of the two decides the other"
+        raise CaseError([Problem(path=f"{steam.side}.T_in", says=says)])
 
     def column(name: str, default: float) -> Array:
         return np.asarray(given.get(name, np.full(n, default)), dtype=float)
 
+    flow: dict[Side, Array] = {side: column(f"{side}.flow", case.flow(side) or np.nan) for side in SIDES}
+    T_in: dict[Side, Array] = {side: column(f"{side}.T_in", case.T_in(side)) for side in SIDES}
+    if steam is not None:
+        side = steam.side
+        flow[side] = np.where(np.isnan(flow[side]), np.inf, flow[side])
+        T_in[side] = steam.line.T(given[pressure]) if pressure in given else T_in[side] - steam.superheat
     points = Points(
-        flow={side: column(f"{side}.flow", case.flow(side) or np.nan) for side in SIDES},
-        T_in={side: column(f"{side}.T_in", case.T_in(side)) for side in SIDES},
+        flow=flow,
+        T_in=T_in,
         R_fouling={side: column(f"{side}.R_fouling", float(case.stream(side).R_fouling)) for side in SIDES},
         tubes_plugged=column("tubes_plugged", float(getattr(case.exchanger, "tubes_plugged", 0))),
+        duty_most=np.full(n, np.inf),
     )
-    return points, _row_problems(case, points)
+    return points, _row_problems(case, points, steam)
 
 
-def _row_problems(case: Case, points: Points) -> Texts:
+def _row_problems(case: Case, points: Points, steam: Steam | None) -> Texts:
     problem = np.full(len(points), "", dtype=object)
 
     def refuse(rows: Any, sentence: str) -> None:
@@ -148,16 +197,38 @@ def _row_problems(case: Case, points: Points) -> Texts:
 
     for side in SIDES:
         flow, T, R = points.flow[side], points.T_in[side], points.R_fouling[side]
-        refuse(~(np.isfinite(flow) & (flow > 0)), f"{side}.flow is not a positive finite number of kg/s")
+        condenses = steam is not None and side == steam.side
+        refuse(~((np.isfinite(flow) | condenses) & (flow > 0)), f"{side}.flow is not a positive finite number of kg/s")
         refuse(~(np.isfinite(R) & (R >= 0) & (R <= 0.1)), f"{side}.R_fouling is not from 0 to 0.1 m²K/W")
+        if steam is not None and condenses:
+            low, high = steam.line.T_low, steam.line.T_high
+            ends = f"{low - 273.15:.2f} to {high - 273.15:.1f} °C"
+            refuse(~((low < T) & (high > T)), f"{side}: the steam condenses at no temperature from {ends}")
+            continue
         fluid = case.fluid(side)
         for i in np.flatnonzero(~np.isfinite(T) | fluid.outside(np.nan_to_num(T))):
             sentence = fluid.problem(T[i], "at the inlet") if np.isfinite(T[i]) else "is not a number"
             refuse(np.arange(len(points)) == i, f"{side}.T_in: {sentence}")
+    if steam is not None:
+        warmer = points.T_in[steam.side] - steam.subcooling - points.T_in[opposite(steam.side)] > 1e-6
+        refuse(~warmer, f"{steam.side}: the condensate would leave colder than the other fluid enters")
     refuse(np.abs(points.T_in["inside"] - points.T_in["outside"]) < 1e-6, "both inlets have the same temperature")
     refuse(~(points.tubes_plugged >= 0), "tubes_plugged is not a count from 0 on")
     refuse(~(case.exchanger.area_at(points.tubes_plugged) > 0), "tubes_plugged leaves no tube open")
     return problem
+
+
+@dataclass(frozen=True, kw_only=True)
+class _Setting:
+    """What all points of a case have in common while they are solved."""
+
+    case: Case
+    cells: Cells
+    fluids: Mapping[Side, Fluid]
+    """Without the condensing side."""
+    steam: Steam | None
+    whole: Cells
+    """For the flow of condensate where it floods."""
 
 
 def solve(case: Case, points: Points, *, fineness: int = 1) -> Iterator[tuple[NDArray[np.intp], Solution]]:
@@ -169,23 +240,33 @@ def solve(case: Case, points: Points, *, fineness: int = 1) -> Iterator[tuple[ND
     """
     if not len(points):
         return
-    cells = case.exchanger.cells(fineness)
+    steam = steam_of(case)
     # No temperature leaves the span between the inlets by more than a heat loss can pull it.
     ends = np.concatenate([points.T_in[side] for side in SIDES])
     room = 2.0 + (0.5 * np.ptp(ends) if case.exchanger.heat_loss else 0.0)
-    fluids = {side: case.fluid(side).within(ends.min() - room, ends.max() + room) for side in SIDES}
+    on = _Setting(
+        case=case,
+        cells=case.exchanger.cells(fineness),
+        fluids={
+            side: case.fluid(side).within(ends.min() - room, ends.max() + room)
+            for side in SIDES
+            if steam is None or side != steam.side
+        },
+        steam=steam,
+        whole=case.exchanger.whole(),
+    )
     slow: list[NDArray[np.intp]] = []
     for first in range(0, len(points), CHUNK):
         rows = np.arange(first, min(first + CHUNK, len(points)))
         most = PATIENCE if len(points) > FEW else MOST_ITERATIONS
-        solved = _march(case, points.part(rows), cells, fluids, most)
+        solved = _march(on, points.part(rows), most)
         slow.append(rows[solved.residual > TOLERANCE])
         yield rows, solved
     late = np.concatenate(slow)
     if len(points) > FEW:
         for first in range(0, late.size, CHUNK):
             rows = late[first : first + CHUNK]
-            yield rows, _march(case, points.part(rows), cells, fluids, MOST_ITERATIONS)
+            yield rows, _march(on, points.part(rows), MOST_ITERATIONS)
 
 
 def _properties(fluid: Fluid, T: Array, side: Side, points: Points) -> Properties:
@@ -207,7 +288,6 @@ def flowing_side(fluid: Fluid, side: Side, points: Points, T: Array, T_wall: Arr
         one = np.ones(len(points))
         mu, cp, k = (doubt.get(f"{side}:{name}", one)[:, None] for name in ("mu", "cp", "k"))
         mu_wall, Pr_wall = mu_wall * mu, Pr_wall * mu * cp / k
-    prefix = f"{side}:"
     return Flowing(
         flow=points.flow[side],
         T=T,
@@ -219,8 +299,14 @@ def flowing_side(fluid: Fluid, side: Side, points: Points, T: Array, T_wall: Arr
         heated=(points.T_in[side] < points.T_in[opposite(side)])[:, None],
         R_fouling=points.R_fouling[side],
         tubes_plugged=points.tubes_plugged,
-        factors={name[len(prefix) :]: value for name, value in points.factors.items() if name.startswith(prefix)},
+        factors=_factors(side, points),
     )
+
+
+def _factors(side: Side, points: Points) -> dict[str, Array]:
+    """Of one side, by the name of a relation or a property."""
+    prefix = f"{side}:"
+    return {name[len(prefix) :]: value for name, value in points.factors.items() if name.startswith(prefix)}
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -243,37 +329,41 @@ class _Step:
     films: Mapping[Side, Film]
     r: Mapping[str, Array]
     found: march.Temperatures
+    mean: Mapping[Side, Array]
+    """Of a condensing side, alike in all cells: where its chest would settle with these films."""
     surface: Mapping[Side, Array]
     lossy: NDArray[np.bool_]
+    condensed: Condensed | None
 
     def guess(self) -> Array:
         return np.stack(
-            [self.found.inside_mean, self.found.outside_mean, self.surface["inside"], self.surface["outside"]], axis=1
+            [self.mean["inside"], self.mean["outside"], self.surface["inside"], self.surface["outside"]], axis=1
         )
 
 
-def _step(
-    case: Case,
-    points: Points,
-    cells: Cells,
-    fluids: Mapping[Side, Fluid],
-    guess: Array,
-    settled: _Settled,
-    heat: Array,
-) -> _Step:
+def _step(on: _Setting, points: Points, guess: Array, settled: _Settled, heat: Array) -> _Step:
     """Properties, films, U and the temperatures they lead to, from a guess (P, 4, n) of inside and outside bulk and
     inside and outside surface; `heat` (P, n) from the inside to the outside."""
-    exchanger = case.exchanger
+    exchanger, steam = on.case.exchanger, on.steam
     flowing: dict[Side, Flowing] = {}
     films: dict[Side, Film] = {}
     capacity: dict[Side, Array] = {}
+    T_in, condensed = dict(points.T_in), None
     for i, side in enumerate(SIDES):
-        flowing[side] = flowing_side(fluids[side], side, points, guess[:, i], guess[:, 2 + i])
-        films[side] = exchanger.film(side, cells, flowing[side])
+        if steam is not None and side == steam.side:
+            condensed = _condensed(steam, points, guess[:, i, 0], heat)
+            T_in[side], capacity[side] = condensed.T_sat, np.full((1, 1), np.inf)
+            at = steam.at(
+                condensed.T_sat, guess[:, 2 + i], condensed.flow, points.tubes_plugged, _factors(side, points)
+            )
+            films[side] = steam.surface.film(at)
+            continue
+        flowing[side] = flowing_side(on.fluids[side], side, points, guess[:, i], guess[:, 2 + i])
+        films[side] = exchanger.film(side, on.cells, flowing[side])
         capacity[side] = points.flow[side][:, None] * flowing[side].bulk.cp * settled.bend[:, i]
-    share = cells.layout.area_share
+    share = on.cells.layout.area_share
     lossy: NDArray[np.bool_] = np.zeros(len(points), dtype=bool)
-    if exchanger.heat_loss:
+    if exchanger.heat_loss and "outside" in flowing:
         # What the outside stream loses to the surroundings changes how far it warms or cools for the heat it gets:
         # the same as another heat capacity in that cell.
         loss = float(exchanger.heat_loss) * share
@@ -281,27 +371,99 @@ def _step(
         bad = ~((ratio > 0.02) & (ratio < 50.0))
         lossy = np.asarray(bad.any(axis=1))
         capacity["outside"] = capacity["outside"] * np.where(bad, 1.0, ratio)
-    r = resistances(case, points, films, 0.5 * (guess[:, 2] + guess[:, 3]), settled.spread)
+    r = resistances(on.case, points, films, 0.5 * (guess[:, 2] + guess[:, 3]), settled.spread)
     U = in_series(r)
+    area = exchanger.area_at(points.tubes_plugged)
+    if condensed is not None and condensed.steam.subcooling:
+        condensed = replace(condensed, flooded=_flooded(on, points, condensed, guess, capacity, r, heat, area))
+        assert condensed.flooded is not None
+        cold = opposite(condensed.steam.side)
+        area, T_in[cold] = area * (1 - condensed.flooded.share), T_in[cold] + condensed.flooded.rise
     found = march.temperatures(
-        cells.layout,
-        U * (exchanger.area_at(points.tubes_plugged)[:, None] * share),
+        on.cells.layout,
+        U * (area[:, None] * share),
         capacity["inside"],
         capacity["outside"],
-        points.T_in["inside"],
-        points.T_in["outside"],
+        T_in["inside"],
+        T_in["outside"],
     )
+    mean: dict[Side, Array] = {"inside": found.inside_mean, "outside": found.outside_mean}
     flux = U * (found.inside_mean - found.outside_mean)
     surface: dict[Side, Array] = {
         "inside": found.inside_mean - flux * r["inside film"],
         "outside": found.outside_mean + flux * r["outside film"],
     }
-    return _Step(settled=settled, flowing=flowing, films=films, r=r, found=found, surface=surface, lossy=lossy)
+    if condensed is not None:
+        side = condensed.steam.side
+        T = _chest(points, condensed, T_in[opposite(side)], np.abs(found.heat.sum(axis=1)))
+        mean[side] = np.broadcast_to(T[:, None], U.shape)
+    return _Step(
+        settled=settled,
+        flowing=flowing,
+        films=films,
+        r=r,
+        found=found,
+        mean=mean,
+        surface=surface,
+        lossy=lossy,
+        condensed=condensed,
+    )
 
 
-def _settle(case: Case, cells: Cells, fluids: Mapping[Side, Fluid], step: _Step, *, roughly: bool) -> _Settled:
+def _condensed(steam: Steam, points: Points, T_guess: Array, heat: Array) -> Condensed:
+    """The chest at a guess of its temperature, and the condensate of the heat passed."""
+    T_supply = points.T_in[steam.side]
+    T_sat = np.minimum(T_guess, T_supply)
+    parts = steam.parts(T_supply, T_sat)
+    flow = (np.abs(heat.sum(axis=1)) + steam.loss) / (parts["desuperheating"] + parts["condensing"])
+    return Condensed(steam=steam, T_sat=T_sat, flow=flow, flooded=None)
+
+
+def _flooded(
+    on: _Setting,
+    points: Points,
+    condensed: Condensed,
+    guess: Array,
+    capacity: Mapping[Side, Array],
+    r: Mapping[str, Array],
+    heat: Array,
+    area: Array,
+) -> Flooded:
+    """The flooded share, beside the cell that the cold fluid meets first."""
+    steam, cold = condensed.steam, opposite(condensed.steam.side)
+    coldest = guess[:, SIDES.index(cold)].argmin(axis=1)
+    rows = np.arange(len(points))
+    T = condensed.T_sat - 0.5 * steam.subcooling
+    drained = replace(points, flow={**points.flow, steam.side: condensed.flow})
+    at = flowing_side(steam.condensate, steam.side, drained, T[:, None], 0.5 * (T + points.T_in[cold])[:, None])
+    return steam.flooded(
+        on.whole,
+        at,
+        T_supply=points.T_in[steam.side],
+        T_sat=condensed.T_sat,
+        T_cold=points.T_in[cold],
+        C_cold=np.broadcast_to(capacity[cold], heat.shape)[rows, coldest],
+        passed=np.abs(heat.sum(axis=1)),
+        area=area,
+        r={name: np.broadcast_to(x, heat.shape)[rows, coldest] for name, x in r.items()},
+    )
+
+
+def _chest(points: Points, condensed: Condensed, T_cold: Array, passed: Array) -> Array:
+    """Saturation temperature at which the chest settles when `passed` [W] by the condensing area follows its difference
+    to the cold fluid: as supplied, or where the steam that comes is all condensed."""
+    steam, T_supply = condensed.steam, points.T_in[condensed.steam.side]
+    heat = steam.heat(T_supply, condensed.T_sat)
+    most = np.minimum(points.flow[steam.side] * heat - steam.loss, points.duty_most)
+    if condensed.flooded is not None:
+        most = most * passed / (passed + condensed.flooded.heat)
+    return np.minimum(T_supply, T_cold + most * (condensed.T_sat - T_cold) / passed)
+
+
+def _settle(on: _Setting, step: _Step, *, roughly: bool) -> _Settled:
     found = step.found
-    spread = film_spread(case, cells, step.flowing, {side: step.films[side].h for side in SIDES}, step.r)
+    h = {side: step.films[side].h for side in SIDES}
+    spread = film_spread(on.case, on.cells, step.flowing, h, step.r)
     if roughly:
         return replace(step.settled, spread=spread)
     met = (
@@ -309,7 +471,9 @@ def _settle(case: Case, cells: Cells, fluids: Mapping[Side, Fluid], step: _Step,
         (found.outside_entry, found.outside_exit, found.outside_mean),
     )
     bend = [
-        fluids[side].mean_cp(entry, exit) / fluids[side].values(mean, "cp")[0]
+        on.fluids[side].mean_cp(entry, exit) / on.fluids[side].values(mean, "cp")[0]
+        if side in on.fluids
+        else np.ones_like(mean)
         for side, (entry, exit, mean) in zip(SIDES, met, strict=True)
     ]
     return _Settled(bend=np.stack(bend, axis=1), spread=spread)
@@ -329,7 +493,7 @@ def film_spread(
     local: list[Array] = []
     for side in SIDES:
         h = np.broadcast_to(h_mean[side], shape)
-        if side in cells.nodes.start:
+        if side in cells.nodes.start and side in flowing:
             at = case.exchanger.film(side, cells.nodes, _repeated(flowing[side], count)).h
             at = at.reshape(*at.shape[:-1], -1, count)
             # The printed mean over the cell stands; the nodes only say how it is spread.
@@ -377,19 +541,30 @@ def resistances(
     }
 
 
-def _march(case: Case, points: Points, cells: Cells, fluids: Mapping[Side, Fluid], most: int) -> Solution:
-    n, P = cells.layout.n_cells, len(points)
-    T_i, T_o = points.T_in["inside"][:, None], points.T_in["outside"][:, None]
+def _march(on: _Setting, points: Points, most: int) -> Solution:
+    n, P = on.cells.layout.n_cells, len(points)
+    T_in = dict(points.T_in)
+    if on.steam is not None:
+        # A point that is asked at what pressure its duty is met may have any supply above it.
+        T_in[on.steam.side] = np.minimum(T_in[on.steam.side], on.steam.T_sat)
+    T_i, T_o = T_in["inside"][:, None], T_in["outside"][:, None]
     span = np.abs(T_i - T_o)[:, 0]
-    # A quarter of the way from each inlet to the other is near enough to start from.
-    guess = np.stack([0.75 * T_i + 0.25 * T_o, 0.25 * T_i + 0.75 * T_o, 0.5 * (T_i + T_o), 0.5 * (T_i + T_o)], axis=1)
+    # A quarter of the way from each inlet to the other is near enough to start from; steam stays where it is.
+    start = {"inside": 0.75 * T_i + 0.25 * T_o, "outside": 0.25 * T_i + 0.75 * T_o}
+    if on.steam is not None:
+        start[on.steam.side] = T_in[on.steam.side][:, None]
+    guess = np.stack([start["inside"], start["outside"], 0.5 * (T_i + T_o), 0.5 * (T_i + T_o)], axis=1)
+    guess = np.broadcast_to(guess, (P, 4, n))
     heat = np.broadcast_to(T_i - T_o, (P, n)) * 1e12
+    if on.steam is not None:
+        area = on.case.exchanger.area_at(points.tubes_plugged)[:, None] * on.cells.layout.area_share
+        heat = LIKELY_U * area * (T_i - T_o)
     settled, level = _Settled(bend=np.ones((P, 2, 1)), spread=np.ones((P, 2, 1))), 0
     before: tuple[Array, Array] | None = None
     count = 0
     while True:
         count += 1
-        step = _step(case, points, cells, fluids, guess, settled, heat)
+        step = _step(on, points, guess, settled, heat)
         new, heat = step.guess(), step.found.heat
         change = new - guess
         residual = np.abs(change).max(axis=(1, 2)) / span
@@ -400,9 +575,9 @@ def _march(case: Case, points: Points, cells: Cells, fluids: Mapping[Side, Fluid
         before = (new, change) if count > 1 else None
         if level < len(SETTLE_AT) and worst <= SETTLE_AT[level]:
             level += 1
-            settled = _settle(case, cells, fluids, step, roughly=level < len(SETTLE_AT))
+            settled = _settle(on, step, roughly=level < len(SETTLE_AT))
             before = None
-    return _solution(case, points, cells, fluids, step, np.full(P, count), residual)
+    return _solution(on, points, step, np.full(P, count), residual)
 
 
 def _accelerated(new: Array, change: Array, old_new: Array, old_change: Array) -> Array:
@@ -415,19 +590,12 @@ def _accelerated(new: Array, change: Array, old_new: Array, old_change: Array) -
     return new - share[:, None, None] * (new - old_new)
 
 
-def _solution(
-    case: Case,
-    points: Points,
-    cells: Cells,
-    fluids: Mapping[Side, Fluid],
-    step: _Step,
-    iterations: NDArray[np.int_],
-    residual: Array,
-) -> Solution:
-    found = step.found
-    drops = {side: case.exchanger.drop(side, cells, step.flowing[side], step.films[side]) for side in SIDES}
+def _solution(on: _Setting, points: Points, step: _Step, iterations: NDArray[np.int_], residual: Array) -> Solution:
+    case, cells, found, condensed = on.case, on.cells, step.found, step.condensed
     flowing = dict(step.flowing)
-    for side in SIDES:
+    drops: dict[Side, Mapping[str, Array]] = {side: {} for side in SIDES}
+    for side in flowing:
+        drops[side] = case.exchanger.drop(side, cells, flowing[side], step.films[side])
         if flowing[side].gas:
             # A gas is rated at its mean pressure: density once more, with half of the drop taken off.
             p = case.p_in(side)
@@ -442,10 +610,10 @@ def _solution(
         "inside": (found.inside_entry, found.inside_exit),
         "outside": (found.outside_entry, found.outside_exit),
     }
-    for side in SIDES:
+    for side, fluid in on.fluids.items():
         dp = sum(drops[side].values(), np.zeros(len(points)))
         p_in = case.p_in(side)
-        if fluids[side].phase == "gas":
+        if fluid.phase == "gas":
             _mark(
                 problem,
                 dp >= 0.5 * p_in,
@@ -454,18 +622,19 @@ def _solution(
                     "rated at its mean pressure; allowed is up to half"
                 ),
             )
-        T_boil = _boiling_limit(fluids[side], p_in, dp)
+        hottest = max(float(x.max()) for x in (*ends[side], step.surface[side]))
+        T_boil = _boiling_limit(fluid, p_in, dp, hottest)
         places = {"": np.concatenate([*ends[side]], axis=1)}
-        if not isinstance(fluids[side], Tabulated):
+        if not isinstance(fluid, Tabulated):
             # Beyond a typed table the wall takes the properties of the table's last allowed temperature, and a finding
             # says so: only the wall's correction depends on them.
             places["at the wall"] = step.surface[side]
         for where, T in places.items():
-            bad = fluids[side].outside(T)
+            bad = fluid.outside(T)
             _mark(
                 problem,
                 bad.any(axis=1),
-                lambda i, T=T, bad=bad, side=side, where=where: fluids[side].problem(
+                lambda i, T=T, bad=bad, side=side, fluid=fluid, where=where: fluid.problem(
                     float(T[i][bad[i]][0]), f"{side} {where}".strip()
                 ),
             )
@@ -473,17 +642,26 @@ def _solution(
             _mark(
                 problem,
                 hot.any(axis=1),
-                lambda i, T=T, side=side, where=where, T_boil=T_boil: (
-                    f"{side} {where or 'bulk'}: {fluids[side].name} at {T[i].max() - 273.15:.1f} °C boils at the "
+                lambda i, T=T, side=side, fluid=fluid, where=where, T_boil=T_boil: (
+                    f"{side} {where or 'bulk'}: {fluid.name} at {T[i].max() - 273.15:.1f} °C boils at the "
                     f"outlet pressure ({T_boil[i] - 273.15:.1f} °C)"
                 ),
             )
     _mark(problem, step.lossy, lambda i: "exchanger.heat_loss is as large as the heat passed in some cells")
+    duty = np.abs(found.heat.sum(axis=1))
+    T_out: dict[Side, Array] = {"inside": found.inside_outlet, "outside": found.outside_outlet}
+    if condensed is not None:
+        side, steam, flooded = condensed.steam.side, condensed.steam, condensed.flooded
+        duty = duty if flooded is None else duty + flooded.heat
+        heat = steam.heat(points.T_in[side], condensed.T_sat)
+        condensed = replace(condensed, flow=(duty + steam.loss) / heat)
+        T_out[side] = condensed.T_sat - steam.subcooling
+        _mark_steam(problem, points, condensed)
     return Solution(
         points=points,
         cells=cells,
-        duty=np.abs(found.heat.sum(axis=1)),
-        T_out={"inside": found.inside_outlet, "outside": found.outside_outlet},
+        duty=duty,
+        T_out=T_out,
         entry={side: ends[side][0] for side in SIDES},
         exit={side: ends[side][1] for side in SIDES},
         mean={"inside": found.inside_mean, "outside": found.outside_mean},
@@ -496,17 +674,57 @@ def _solution(
         iterations=iterations,
         residual=residual,
         problem=problem,
+        condensed=condensed,
     )
 
 
-def _boiling_limit(fluid: Fluid, p_in: float, dp: Array) -> Array:
-    """(P,) saturation temperature at the outlet pressure; infinite where the fluid has none that is known."""
+def _mark_steam(problem: Texts, points: Points, condensed: Condensed) -> None:
+    steam, side = condensed.steam, condensed.steam.side
+    given = points.flow[side]
+    _mark(
+        problem,
+        given * steam.heat(points.T_in[side], condensed.T_sat) <= steam.loss,
+        lambda i: f"exchanger.heat_loss takes all the heat of {given[i]:.4g} kg/s of steam",
+    )
+    lowest = steam.line.T_low
+    _mark(
+        problem,
+        condensed.T_sat - steam.subcooling <= lowest,
+        lambda i: (
+            f"{side}.flow: with {given[i]:.4g} kg/s of steam its condensate would be below {lowest - 273.15:.2f} °C"
+        ),
+    )
+    if condensed.flooded is not None:
+        cold = opposite(side)
+        _mark(
+            problem,
+            condensed.T_sat - steam.subcooling <= points.T_in[cold],
+            lambda i: (
+                f"{side}.fluid.steam.subcooling: steam that condenses at {condensed.T_sat[i] - 273.15:.1f} °C cannot "
+                f"be subcooled by {steam.subcooling:.3g} K with a fluid of {points.T_in[cold][i] - 273.15:.1f} °C"
+            ),
+        )
+        _mark(
+            problem,
+            condensed.flooded.share >= MOST_FLOODED,
+            lambda i: (
+                f"{side}.fluid.steam.subcooling: {steam.subcooling:.3g} K would flood over {MOST_FLOODED:.0%} of the "
+                "area with condensate"
+            ),
+        )
+
+
+def _boiling_limit(fluid: Fluid, p_in: float, dp: Array, hottest: float) -> Array:
+    """(P,) saturation temperature at the outlet pressure; infinite where none is known or nothing comes near it."""
     limit = np.full(np.shape(dp), np.inf)
-    if fluid.phase != "liquid" or fluid.saturation_temperature(p_in) is None:
+    if fluid.phase != "liquid":
         return limit
     p = np.maximum(p_in - dp, 0.01 * p_in)
-    # ln p is nearly linear in 1/T along a saturation line: three points of it are enough for thousands.
     lowest = float(p.min())
+    first = fluid.saturation_temperature(lowest)
+    if first is None or hottest < first:
+        return limit
+    # ln p is nearly linear in 1/T along a saturation line: three points of it are enough for thousands.
     nodes = np.geomspace(lowest, p_in, 5)
     T = [fluid.saturation_temperature(float(node)) for node in nodes]
     if any(t is None for t in T):
@@ -530,5 +748,6 @@ def joined(parts: list[Points]) -> Points:
         T_in=merge([p.T_in for p in parts]),
         R_fouling=merge([p.R_fouling for p in parts]),
         tubes_plugged=np.concatenate([p.tubes_plugged for p in parts]),
+        duty_most=np.concatenate([p.duty_most for p in parts]),
         factors=merge([p.factors for p in parts]),
     )
