@@ -31,10 +31,10 @@ AS_STATED = "As stated"
 
 MOST_VALUES = 2000
 """Of one sweep."""
-GRID = 41
+GRID = 81
 """Values tried in one round of a search."""
-NARROWED = 3
-"""Rounds after the first: they leave 1/64,000 of one step of the first."""
+NARROWED = 2
+"""Rounds after the first: they leave 1/6400 of one step of the first."""
 
 FLOW_SPAN = (1 / 20, 10.0)
 """Of the stated flow: where its limits are looked for."""
@@ -428,7 +428,7 @@ def sweep(case: Case, path: str, values: ArrayLike) -> Conditions:
     return _conditions(case, frame, list(tried))
 
 
-def around(variable: Variable, value: float | None = None, count: int = GRID) -> Array:
+def around(variable: Variable, value: float | None = None, count: int = 41) -> Array:
     """Values to sweep that show today's and, where it is near enough to be of use, another one."""
     today = variable.today
     if variable.quantity == "temperature":
@@ -631,7 +631,7 @@ def _with_doubt(case: Case, about: Answer, probe: Callable[[Array], Conditions])
     found: list[float | None] = []
     for upward, end in ((False, variable.low), (True, variable.high)):
         values = variable.settled(_from(value, end, GRID))
-        bracket = _narrowed(probe, variable, values, moved(doubt if upward == about.at_most else -doubt), rounds=2)
+        bracket = _narrowed(probe, variable, values, moved(doubt if upward == about.at_most else -doubt), rounds=1)
         found.append(None if bracket is None else bracket[0 if upward == about.at_most else 1])
     return replace(about, ends=(found[0], found[1]))
 

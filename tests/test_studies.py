@@ -560,7 +560,7 @@ def test_where_figures_turn_back_the_first_crossing_on_the_way_is_taken():
 
     near, far = studies._narrowed(waves, variable, np.linspace(300.0, 350.0, 41), lambda found: found.within([limit]))
     assert near <= 310.0 < far
-    assert far - near < 1e-4
+    assert far - near < 1e-3
 
 
 @pytest.mark.parametrize(
@@ -586,7 +586,7 @@ def test_the_interval_is_where_the_limit_would_bind_at_the_ends_of_its_own_inter
     doubt = NORMAL_95 * propagate(there, rate(there))["fouled"].sd["outside.T_out"]
     for end, shift in zip(found.ends, (-doubt, doubt), strict=True):
         moved = answer(oil_cooler(inside__dp_allowed=None, outside__T_out=f"{60 + shift!r} degC"), question)
-        assert end == pytest.approx(moved.value, abs=0.01)
+        assert end == pytest.approx(moved.value, abs=0.02)
 
 
 def test_a_doubtful_flow_widens_the_interval_of_another_answer():
