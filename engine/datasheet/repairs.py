@@ -1,0 +1,319 @@
+"""The smallest repair of a sheet: the one figure, then the two, whose change clears most failures. Never applied.
+
+A figure's values worth trying are those at which a failed check that it enters would close, and those that a known
+slip would have put off to where it stands.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from dataclasses import dataclass, replace
+
+from engine.datasheet import Checked, Equation, Line, Repair, Slip
+from engine.datasheet.figures import Missing, Subject
+from engine.datasheet.slips import MATCH, Candidate, candidates
+from engine.stated import Figure
+
+LOOKED = 1e4
+"""By how much a figure may be off at most."""
+MOST_STEPS = 30
+MOST_PAIRS = 3
+SMALL_COUNTS = (1, 2, 3, 4, 5, 6, 8, 10, 12, 16)
+FEW = ("shells_in_series", "shells_in_parallel", "tube_passes", "banks_in_parallel", "legs_in_series")
+
+
+@dataclass(frozen=True)
+class _Closure:
+    """A check that can be read again, its fields of the sheet, and how it stands."""
+
+    ended: Checked
+    fields: frozenset[str]
+
+    @property
+    def equation(self) -> Equation:
+        return self.ended.equation
+
+    @property
+    def fails(self) -> bool:
+        return self.ended.outcome == "found"
+
+    def miss(self, changed: Mapping[str, float]) -> float:
+        """The misfit in tolerances with some figures changed; infinite where it cannot be computed.
+
+        The share of rounding in the tolerance goes with the size of the figures.
+        """
+        try:
+            found = self.equation.reread(changed)
+        except Missing:
+            return math.inf
+        if not isinstance(found, Line):
+            return 2.0 if found.says else 0.0
+        line = self.ended.line
+        tolerance = self.equation.allowance(found)
+        if line is not None:
+            size = max(abs(line.sheet), abs(line.recomputed))
+            new = max(abs(found.sheet), abs(found.recomputed))
+            scale = new / size if size and line.quantity != "temperature" else 1.0
+            tolerance = max(tolerance, 1e-9 * new) + self.ended.rounding * scale
+        return abs(found.misfit) / tolerance if tolerance else (0.0 if not found.misfit else math.inf)
+
+
+@dataclass(frozen=True, kw_only=True)
+class Found:
+    """Slips and repairs of a sheet."""
+
+    slips: tuple[Slip, ...] = ()
+    repairs: tuple[Repair, ...] = ()
+    pairs: tuple[tuple[Repair, Repair], ...] = ()
+
+    def slip_of(self, ended: Checked) -> str:
+        """What the best slip among a failed check's fields would be, in words."""
+        if ended.outcome != "found" or ended.line is None:
+            return ""
+        for slip in self.slips:
+            if slip.field in ended.fields:
+                return f"if {ended.subject.label(slip.field)} is {slip.name}"
+        return ""
+
+
+def repairs_of(subject: Subject, ended: Iterable[Checked]) -> Found:
+    """Repairs of one figure and of two, the best first; none where no check that closes fails gravely."""
+    closures = [
+        _Closure(c, frozenset(path for path in c.fields if path in subject.sheet_values))
+        for c in ended
+        if c.outcome != "not possible"
+    ]
+    failed = [c for c in closures if c.fails and _counts(c)]
+    if not any(c.ended.check.closes and c.ended.grade != "note" for c in failed):
+        return Found()
+    search = _Search(subject, closures, {})
+    singles = search.ranked(failed)
+    if not singles:
+        return Found()
+    slips = sorted((trial for trial in search.slips(failed) if trial.net > 0), key=lambda trial: trial.order)
+    best = slips[0].net if slips else 0
+    pairs = []
+    if singles[0].clears < len(failed):
+        pairs = list(_pairs(subject, closures, failed, singles[:MOST_PAIRS]))
+    return Found(
+        slips=tuple(trial.as_slip(subject, len(failed)) for trial in slips if trial.net >= best),
+        repairs=tuple(trial.as_repair(subject, len(failed)) for trial in singles),
+        pairs=tuple(pairs),
+    )
+
+
+def _counts(c: _Closure) -> bool:
+    """Whether a failure counts: every one but notes about what is not stated."""
+    return c.ended.line is not None or c.ended.grade != "note"
+
+
+@dataclass(frozen=True, kw_only=True)
+class _Trial:
+    """One field at one value, and what became of the checks."""
+
+    field: str
+    to: float
+    clears: int
+    breaks: int
+    left: float
+    """Sum of what misfit is left, so that of two equal trials the one that closes better stands first."""
+    slip: Candidate | None = None
+
+    @property
+    def net(self) -> int:
+        return self.clears - self.breaks
+
+    @property
+    def order(self) -> tuple[float, ...]:
+        return (-self.net, self.slip is None, self.left)
+
+    def as_repair(self, subject: Subject, of: int) -> Repair:
+        value = subject.sheet_values[self.field]
+        return Repair(
+            field=self.field,
+            before=float(value),
+            to=self.to,
+            clears=self.clears,
+            of=of,
+            breaks=self.breaks,
+            quantity=value.quantity if isinstance(value, Figure) else "",
+            slip=self.slip.name if self.slip else "",
+        )
+
+    def as_slip(self, subject: Subject, of: int) -> Slip:
+        assert self.slip is not None
+        return Slip(
+            field=self.field, name=self.slip.name, factor=self.slip.factor, to=self.to, clears=self.clears, of=of
+        )
+
+
+class _Search:
+    """Tries values of the sheet's figures, on top of what is already changed."""
+
+    def __init__(self, subject: Subject, closures: Sequence[_Closure], changed: Mapping[str, float]) -> None:
+        self.subject, self.closures, self.changed = subject, closures, changed
+
+    def ranked(self, failed: Sequence[_Closure]) -> list[_Trial]:
+        """The best trial of each field that takes part in a failure that closes, those that gain first."""
+        found = []
+        for path in self._fields(failed):
+            trials = [self._trial(path, to, failed, slip) for to, slip in self._values(path, failed)]
+            if trials:
+                best = min(trials, key=lambda trial: trial.order)
+                if best.net > 0:
+                    found.append(best)
+        return sorted(found, key=lambda trial: trial.order)
+
+    def slips(self, failed: Sequence[_Closure]) -> Iterator[_Trial]:
+        """The first slip of each field that a root of its failures matches and that gains most."""
+        for path in self._fields(failed):
+            trials = [self._trial(path, to, failed, slip) for to, slip in self._values(path, failed) if slip]
+            if trials:
+                most = max(trial.net for trial in trials)
+                yield next(trial for trial in trials if trial.net == most)
+
+    def _fields(self, failed: Sequence[_Closure]) -> list[str]:
+        entering = {path for c in failed if c.ended.check.closes for path in c.fields}
+        return [
+            path
+            for path in self.subject.sheet_values
+            if path in entering and path not in self.changed and not isinstance(self.subject.sheet_values[path], str)
+        ]
+
+    def _values(self, path: str, failed: Sequence[_Closure]) -> Iterator[tuple[float, Candidate | None]]:
+        """Values worth trying: where a failure closes, and the slips near one of those."""
+        if path in FEW:
+            yield from ((float(n), None) for n in SMALL_COUNTS if n != self.subject.sheet_values[path])
+            return
+        roots = []
+        for c in failed:
+            if c.ended.check.closes and path in c.fields and c.ended.line is not None:
+                root = self._root(c, path)
+                if root is not None:
+                    roots.append(root)
+        whole = not isinstance(self.subject.sheet_values[path], Figure)
+        for slip in candidates(self.subject, path):
+            if any(self._matches(slip, root, width) for root, width in roots):
+                yield slip.to, slip
+        for root, _ in roots:
+            yield (float(round(root)) if whole else root), None
+
+    def _matches(self, slip: Candidate, root: float, width: float) -> bool:
+        if slip.factor == 1.0:
+            return abs(slip.to - root) <= MATCH * abs(slip.to - root) + width + 0.5
+        return root > 0 and slip.to > 0 and abs(math.log(slip.to / root)) <= MATCH + width / root
+
+    def _trial(self, path: str, to: float, failed: Sequence[_Closure], slip: Candidate | None) -> _Trial:
+        """What a value does to the checks that the field enters; a note that remains counts as not cleared."""
+        changed = {**self.changed, path: to}
+        clears = breaks = 0
+        left = 0.0
+        failing = set(map(id, failed))
+        for c in self.closures:
+            if path not in c.fields:
+                continue
+            counted = id(c) in failing
+            if not counted and not c.ended.check.closes:
+                continue
+            miss = c.miss(changed)
+            left += min(miss, 10.0) ** 2
+            if counted and miss <= 1.0:
+                clears += 1
+            elif not counted and not c.fails and miss > 1.0:
+                breaks += 1
+        return _Trial(field=path, to=to, clears=clears, breaks=breaks, left=left, slip=slip)
+
+    def _root(self, c: _Closure, path: str) -> tuple[float, float] | None:
+        """The value of a field at which a failed check closes, and how far rounding may shift it; None without one."""
+        start = float(self.subject.sheet_values[path])
+        value = self.subject.sheet_values[path]
+        additive = isinstance(value, Figure) and (value.quantity == "temperature" or value.quantity in PRESSURES)
+        if not additive and start <= 0:
+            return None
+
+        def at(u: float) -> float:
+            return start + u if additive else start * math.exp(u)
+
+        def misfit(u: float) -> float:
+            try:
+                found = c.equation.reread({**self.changed, path: at(u)})
+            except (Missing, OverflowError):
+                return math.nan
+            return found.misfit if isinstance(found, Line) else math.nan
+
+        step = 1.0 if additive else 0.01
+        limit = 400.0 if additive else math.log(LOOKED)
+        if additive and isinstance(value, Figure) and value.quantity in PRESSURES:
+            step, limit = 1e3, 1e7
+        u = _solved(misfit, step, limit, self._scale(c))
+        if u is None:
+            return None
+        x = at(u)
+        nearby = at(u + 1e-3 * step)
+        slope = (misfit(u + 1e-3 * step) - misfit(u)) / (nearby - x) if nearby != x else 0.0
+        width = abs(c.ended.rounding / slope) if slope and math.isfinite(slope) else 0.0
+        return x, width
+
+    @staticmethod
+    def _scale(c: _Closure) -> float:
+        return c.ended.tolerance or 1e-12
+
+
+PRESSURES = ("pressure_absolute", "pressure_gauge")
+
+
+def _solved(misfit: Callable[[float], float], step: float, limit: float, tolerance: float) -> float | None:
+    """A root near zero of a smooth function, by secants that stay within a limit; None where they do not settle.
+
+    For a limit, inside which the misfit is zero, the edge of it is found.
+    """
+    u0, f0 = 0.0, misfit(0.0)
+    if not math.isfinite(f0):
+        return None
+    u1 = step
+    f1 = misfit(u1)
+    if not math.isfinite(f1) or f1 == f0:
+        u1 = -step
+        f1 = misfit(u1)
+    for _ in range(MOST_STEPS):
+        if not math.isfinite(f1):
+            u1 = 0.5 * (u0 + u1)
+            f1 = misfit(u1)
+            continue
+        if abs(f1) <= 1e-3 * tolerance:
+            return u1
+        if f1 == f0:
+            return None
+        move = -f1 * (u1 - u0) / (f1 - f0)
+        most = limit / 4
+        u2 = u1 + max(-most, min(most, move))
+        if abs(u2) > limit:
+            return None
+        u0, f0, u1 = u1, f1, u2
+        f1 = misfit(u1)
+    return None
+
+
+def _pairs(
+    subject: Subject, closures: Sequence[_Closure], failed: Sequence[_Closure], singles: Sequence[_Trial]
+) -> Iterator[tuple[Repair, Repair]]:
+    """Two figures that together clear more than the best single one, the best pair first."""
+    found = []
+    for first in singles:
+        search = _Search(subject, closures, {first.field: first.to})
+        still = [c for c in failed if c.miss({first.field: first.to}) > 1.0]
+        for second in search.ranked(still)[:MOST_PAIRS]:
+            together = {first.field: first.to, second.field: second.to}
+            clears = sum(c.miss(together) <= 1.0 for c in failed)
+            if clears > singles[0].clears:
+                found.append((clears, first, replace(second, clears=clears)))
+    seen = set()
+    for clears, first, second in sorted(found, key=lambda pair: -pair[0]):
+        names = frozenset((first.field, second.field))
+        if names not in seen:
+            seen.add(names)
+            yield replace(first, clears=clears).as_repair(subject, len(failed)), second.as_repair(subject, len(failed))
+
+
+__all__ = ["Found", "repairs_of"]
