@@ -10,6 +10,7 @@ import argparse
 import json
 import os
 import sys
+from collections import Counter
 from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -145,6 +146,33 @@ def _schema(_: argparse.Namespace) -> int:
     return DONE
 
 
+def _prove_arguments(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("--json", metavar="FILE", help="write the table; - for standard output and nothing else")
+
+
+def _prove(options: argparse.Namespace) -> int:
+    from engine.proofs import table
+
+    lines = table()
+    if options.json == "-":
+        _say(_as_json(lines))
+    else:
+        if options.json:
+            _write(options.json, _as_json(lines).encode())
+        for line in lines:
+            scale, unit = (100.0, " %") if line["relative"] else (1.0, f" {line['unit']}")
+            _say(
+                f"{'holds' if line['holds'] else 'FAILS'}  {line['subject']}: {line['what']}\n"
+                f"  {line['kind']} {line['value']:.6g} {line['unit']}, ours {line['ours']:.6g}: "
+                f"off by {scale * line['difference']:+.2g}{unit} where {scale * line['tolerance']:.2g}{unit} is "
+                f"allowed ({line['reason']})\n"
+                f"  {line['source']}\n"
+            )
+        kinds = Counter(line["kind"] for line in lines)
+        _say(f"{len(lines)} values: " + ", ".join(f"{n} {kind}" for kind, n in kinds.most_common()))
+    return DONE if all(line["holds"] for line in lines) else FAULT
+
+
 # --- the table of commands --------------------------------------------------------------------------------------------
 
 
@@ -163,6 +191,9 @@ COMMANDS: dict[str, Command] = {
     "rate": Command("rate a case, clean and fouled, with intervals and findings", _rate, _rate_arguments),
     "methods": Command("list the correlations with their limits, scatter and source", _methods),
     "fluids": Command("list the fluids that can be named", _fluids),
+    "prove": Command(
+        "compute every published or derived value that the engine must reproduce", _prove, _prove_arguments
+    ),
     "findings": Command("list the findings that a rating can have, and what each needs", _findings),
     "schema": Command("print the JSON Schema of the case file", _schema),
 }

@@ -139,11 +139,6 @@ def test_requirements_pin_every_library():
     assert {library.lower() for library in LIBRARIES} - {"pydantic_core"} <= pinned
 
 
-def test_a_file_is_short_enough_to_be_read_unless_it_is_one_subject_in_full():
-    in_full = {
-        *("engine.fluids", "engine.units", "engine.studies", "engine.rating", "engine.points"),
-        *("engine.correlations.across_bundle", "engine.exchangers.shell_and_tube", "engine.exchangers.standard_sizes"),
-        *("engine.findings.thermal", "engine.report.sections", "engine.datasheet"),
-    }
-    long = {name_of(path) for path in FILES if len(path.read_text(encoding="utf-8").splitlines()) > 520}
-    assert long <= in_full
+@pytest.mark.parametrize("path", APP, ids=name_of)
+def test_a_page_is_short_enough_to_be_read_at_once(path):
+    assert len(path.read_text(encoding="utf-8").splitlines()) <= 520
