@@ -21,6 +21,7 @@ STYLE = """<style>
 [data-testid="stMarkdownContainer"] table {display: block; overflow-x: auto; width: fit-content; max-width: 100%}
 [data-testid="stMarkdownContainer"] td:not(:first-child) {font-variant-numeric: tabular-nums}
 [data-testid="stLayoutWrapper"]:has(> .st-key-bundle) {position: sticky; top: 4.5rem}
+.st-key-former {border-left: 6px double #b9641a; padding-left: 0.9rem; opacity: 0.8}
 .st-key-answer p {font-size: 1.25rem; font-weight: 600; line-height: 1.4}
 @media (hover: hover) {
   [data-testid="stWidgetLabel"] [data-testid="stTooltipIcon"] {visibility: hidden}
@@ -30,8 +31,8 @@ STYLE = """<style>
   [data-testid="stMarkdownContainer"] :is(td, th) {font-size: 0.8rem; padding: 0.25rem 0.4rem}
 }
 </style>"""
-"""A wide table scrolls within itself, never the page. The help of a box shows while the box is pointed at or typed in,
-so that the tabulator key goes from box to box. The drawing of a bundle stays in sight beside its figures."""
+"""A wide table scrolls within itself, never the page. Results of a former case carry a mark along their whole length.
+The help of a box shows while the box is pointed at or typed in, so that the tabulator key goes from box to box."""
 
 
 def drawn(show: Callable[[], None]) -> Callable[[], None]:

@@ -203,7 +203,7 @@ class Form:
         else:
             shown = self.display.typed(text, declared.quantities) if isinstance(declared, engine.Stated) else text
             draw = st.text_area if getattr(declared, "lines", False) else st.text_input
-            row = st.container(horizontal=True, vertical_alignment="bottom") if names else st.container()
+            row = st.container(horizontal=True, wrap=False, vertical_alignment="bottom") if names else st.container()
             with row:
                 draw(
                     declared.name,

@@ -31,7 +31,12 @@ def show() -> None:
         return
     if not present:
         stale(problems)
-    text, units = session.text_of(raw), session.display()
+    with st.container(key="present" if present else "former"):
+        results(session.text_of(raw), present)
+
+
+def results(text: str, present: bool) -> None:
+    units = session.display()
     found = session.rated(text)
     written = {section.key: section for section in session.sections(text, units.system)}
     answer(written["answer"].blocks)

@@ -41,6 +41,7 @@ def show() -> None:
             on_click="ignore",
             icon=":material/download:",
         )
-    for section in session.sections(text, system):
-        st.subheader(plain(section.title), anchor=False)
-        blocks(section.blocks, section.key)
+    with st.container(key="present" if present else "former"):
+        for section in session.sections(text, system):
+            st.subheader(plain(section.title), anchor=False)
+            blocks(section.blocks, section.key)
