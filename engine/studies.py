@@ -75,6 +75,10 @@ class Limit:
     stated: bool = True
     """False for a limit of common practice."""
 
+    @property
+    def slack_quantity(self) -> str:
+        return "temperature_difference" if self.quantity == "temperature" else self.quantity
+
     def slack(self, figure: ArrayLike) -> Array:
         """How far figures stay inside the limit, in its own unit: negative where they pass it."""
         x = np.asarray(figure, dtype=float)
@@ -170,10 +174,16 @@ class Conditions:
             inside = inside & (self.slack(limit) >= 0)
         return inside
 
+    def nearest(self, row: int, limits: Iterable[Limit] | None = None) -> tuple[Limit, ...]:
+        """The limits of a row that has an answer, the one passed the furthest, or come nearest to, first."""
+        if self.frame["problem"].iloc[row]:
+            return ()
+        slack = {limit: self.slack(limit)[row] / limit.scale for limit in (self.limits if limits is None else limits)}
+        return tuple(sorted(slack, key=slack.__getitem__))
+
     def passed(self, row: int, limits: Iterable[Limit] | None = None) -> tuple[Limit, ...]:
         """The limits that a row passes, the furthest first."""
-        slack = {limit: self.slack(limit)[row] / limit.scale for limit in (self.limits if limits is None else limits)}
-        return tuple(sorted((limit for limit in slack if slack[limit] < 0), key=slack.__getitem__))
+        return tuple(limit for limit in self.nearest(row, limits) if self.slack(limit)[row] < 0)
 
 
 def _own_figures(case: Case, solved: Solution) -> dict[str, Array]:
@@ -221,20 +231,22 @@ def _conditions(case: Case, frame: pd.DataFrame, index: Sequence[float | str]) -
 
 def operating_table(case: Case) -> Conditions:
     """The case as stated, then each of its operating conditions by name; one solve."""
-    changes = ("flow", "T_in", "R_fouling")
-    rows: list[dict[str, float]] = [{}]
+    names = ("flow", "T_in", "R_fouling")
+    stated: dict[str, float] = {"tubes_plugged": float(getattr(case.exchanger, "tubes_plugged", 0))}
+    for side in SIDES:
+        flow, R = case.flow(side), float(case.stream(side).R_fouling)
+        stated |= {f"{side}.flow": flow or np.nan, f"{side}.T_in": case.T_in(side), f"{side}.R_fouling": R}
+    rows = [stated]
     for condition in case.operating:
-        stated = {f"{side}.{name}": getattr(condition, f"{side}_{name}") for name in changes for side in SIDES}
-        given = {path: value for path, value in stated.items() if value is not None}
+        changes = {f"{side}.{name}": getattr(condition, f"{side}_{name}") for name in names for side in SIDES}
+        changes["tubes_plugged"] = condition.tubes_plugged
+        row = {**stated, **{path: float(value) for path, value in changes.items() if value is not None}}
         for side in SIDES:
-            flow, T = given.get(f"{side}.flow", case.stream(side).flow), given.get(f"{side}.T_in")
-            given[f"{side}.flow"] = float(_mass_flow(case, side, flow, case.T_in(side) if T is None else T))
-        if condition.tubes_plugged is not None:
-            given["tubes_plugged"] = condition.tubes_plugged
-        rows.append({path: float(value) for path, value in given.items()})
-    stated_frame = _stated_columns(points_of(case)[0])
-    frame = pd.DataFrame([{**stated_frame.iloc[0], **row} for row in rows])
-    return _conditions(case, _solved(case, frame), [AS_STATED, *(condition.name for condition in case.operating)])
+            flow = changes[f"{side}.flow"] or case.stream(side).flow
+            row[f"{side}.flow"] = float(_mass_flow(case, side, flow, row[f"{side}.T_in"]))
+        rows.append(row)
+    index = [AS_STATED, *(condition.name for condition in case.operating)]
+    return _conditions(case, _solved(case, pd.DataFrame(rows)), index)
 
 
 def _mass_flow(case: Case, side: Side, flow: float | None, T_in: ArrayLike) -> Array:
@@ -700,8 +712,7 @@ def _worth(limit: Limit, system: str) -> str:
 
 def _missed(limit: Limit, system: str, by: float = 0.0) -> str:
     verb = "missed" if limit.key.endswith(".T_out") else "exceeded" if limit.upper else "undercut"
-    kind = "temperature_difference" if limit.quantity == "temperature" else limit.quantity
-    much = f" by {units.show(by, kind, system, 3)}" if by else ""
+    much = f" by {units.show(by, limit.slack_quantity, system, 3)}" if by else ""
     return f"{_worth(limit, system)} is {verb}{much}"
 
 

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import io
 import time
 
 import numpy as np
@@ -9,10 +10,12 @@ import pandas as pd
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from pypdf import PdfReader
 
 from engine import studies
 from engine.casefile import dump_case, parse_case, raw_of
 from engine.rating import rate, rate_points
+from engine.report import Table, report_pdf, studied
 from engine.stated import CaseError
 from engine.studies import (
     Conditions,
@@ -637,3 +640,37 @@ def test_a_study_takes_no_longer_than_a_reader_waits(case, capsys):
     with capsys.disabled():
         print(f"\n{case.exchanger.type}: " + ", ".join(f"{name} {1e3 * t:.0f} ms" for name, t in spent.items()))
     assert max(spent.values()) < 10.0
+
+
+# --- in the report ----------------------------------------------------------------------------------------------------
+
+
+def test_the_report_holds_the_conditions_as_columns_and_the_answers():
+    case = oil_cooler(operating=CONDITIONS)
+    written = {section.key: section for section in studied(case)}
+    assert list(written) == ["operating", "reach"]
+    verdict, *tables = written["operating"].blocks
+    assert verdict == "Maximum passes a limit; no difference and ice have no answer."
+    tables = [block for block in tables if isinstance(block, Table)]
+    assert [name for table in tables for name in table.header if name] == list(operating_table(case).frame.index)
+    last = {row[0]: row[1:] for row in tables[0].rows}
+    assert last["First limit"][2].startswith("required outlet of the annulus: PASSED by 0.")
+    assert last["Margin to the required outlet of the annulus"][1] == "+4.61 K"
+    [asked_and_told] = [block for block in written["reach"].blocks if isinstance(block, Table)]
+    assert len(asked_and_told.rows) == len(questions(case))
+
+
+def test_a_case_without_conditions_has_answers_only_and_one_without_an_answer_nothing():
+    assert [section.key for section in studied(oil_cooler())] == ["reach"]
+    boiling = oil_cooler(inside__p_in="0.2 bara", outside__T_in="95 degC", outside__T_out=None, inside__flow="0.3 m3/h")
+    assert studied(boiling) == ()
+
+
+def test_the_pdf_prints_the_studies_before_the_assumptions():
+    case = oil_cooler(operating=CONDITIONS)
+    rating = rate(case)
+    pages = PdfReader(io.BytesIO(report_pdf(rating, {}, (), "us", studied(case, "us")))).pages
+    text = " ".join(page.extract_text() for page in pages)
+    assert text.index("Operating conditions") < text.index("What it would take") < text.index("Assumptions")
+    assert "clean start" in text
+    assert "140.0 °F" in text

@@ -3,6 +3,7 @@
 from engine.report.blocks import Chart, DoublePipeScheme, Section, ShellScheme, Table
 from engine.report.pdf import report_pdf
 from engine.report.sections import sections
+from engine.report.studies import studied
 from engine.report.text import report_text
 
 __all__ = [
@@ -14,4 +15,5 @@ __all__ = [
     "report_pdf",
     "report_text",
     "sections",
+    "studied",
 ]

@@ -48,13 +48,17 @@ TABLE_TITLE = ParagraphStyle(
 
 
 def report_pdf(
-    rating: Rating, intervals: Mapping[str, Intervals], verdicts: Sequence[Verdict], system: str = "si"
+    rating: Rating,
+    intervals: Mapping[str, Intervals],
+    verdicts: Sequence[Verdict],
+    system: str = "si",
+    studies: Sequence[Section] = (),
 ) -> bytes:
     """The report of a rated case on A4, figures in a system of units ("si", "us", "metric").
 
-    Raises ValueError for an unknown system.
+    `studies` as in `sections`. Raises ValueError for an unknown system.
     """
-    written = sections(rating, intervals, verdicts, system)
+    written = sections(rating, intervals, verdicts, system, studies)
     case = rating.case
     name = f"{case.tag or 'No tag'}{', revision ' + case.revision if case.revision else ''}"
     _, pages = _laid_out(written, name, case.input_hash, 0)

@@ -80,11 +80,16 @@ CAUTIONS = (
 
 
 def sections(
-    rating: Rating, intervals: Mapping[str, Intervals], verdicts: Sequence[Verdict], system: str = "si"
+    rating: Rating,
+    intervals: Mapping[str, Intervals],
+    verdicts: Sequence[Verdict],
+    system: str = "si",
+    studies: Sequence[Section] = (),
 ) -> tuple[Section, ...]:
     """The whole report in reading order, with figures in a system of units ("si", "us", "metric").
 
-    `verdicts` should have been judged in the same system. Raises ValueError for an unknown system.
+    `verdicts` should have been judged in the same system, and `studies`, sections of their own, be written in it.
+    Raises ValueError for an unknown system.
     """
     if system not in units.SYSTEMS:
         raise ValueError(f'"{system}" is not a system of units; allowed are {", ".join(units.SYSTEMS)}')
@@ -101,6 +106,7 @@ def sections(
         ("methods", "Methods side by side", report.methods()),
         ("findings", "Findings", report.findings()),
         ("contributors", "What to measure to be surer", report.contributors()),
+        *((section.key, section.title, section.blocks) for section in studies),
         ("assumptions", "Assumptions", report.assumptions()),
         ("not_checked", "Not checked", report.not_checked()),
         ("relations", "Relations and sources", report.relations()),
