@@ -413,6 +413,12 @@ class Case(Input):
         assert stream.p_in is not None
         return absolute(stream.p_in, self.atmosphere)
 
+    def p_back(self, side: Side) -> float | None:
+        """Absolute back pressure of a side's condensate [Pa], where it condenses and that is stated."""
+        fluid = self.stream(side).fluid
+        p = fluid.steam.back_pressure if isinstance(fluid, SteamFluid) else None
+        return None if p is None else absolute(p, self.atmosphere)
+
     def T_in(self, side: Side) -> float:
         """Inlet temperature [K]."""
         stream = self.stream(side)

@@ -144,12 +144,17 @@ class Steam:
         ratio = self.case.exchanger.area_ratio if self.side == "inside" else 1.0
         r = dict(r)
         for _ in range(ROUNDS):
-            forced = self.case.exchanger.film(self.side, cells, at).h @ cells.layout.area_share
+            forced = self.single_phase(cells, at)
             r[name] = ratio / np.maximum(forced, self._free(T, at.T_wall[:, 0]))
             surface = T - (T - T_other) * r[name] / sum(r.values())
             at = replace(at, T_wall=surface[:, None])
         share = heat * sum(r.values()) / (area * mtd)
         return Flooded(share=np.minimum(share, MOST_FLOODED), heat=heat, r=r, mtd=mtd, rise=rise)
+
+    def single_phase(self, cells: Cells, at: Flowing) -> Array:
+        """(P,) mean h of its condensate or vapour that fills the passage, (P, 1), by the exchanger's own film."""
+        h = self.case.exchanger.film(self.side, cells, at).h
+        return np.asarray((h * np.ones(cells.layout.n_cells)) @ cells.layout.area_share)
 
     def _free(self, T: Array, T_surface: Array) -> Array:
         """h of free convection under condensate; none is known inside a tube."""
