@@ -158,7 +158,7 @@ class Form:
             )
         with st.container(horizontal=True):
             st.button("Add a row", key=self.key((*path, "add")), on_click=session.put, args=((*path, count), {}))
-            with st.popover("Paste a table"):
+            with st.popover("Paste a table", key=self.key((*path, "paste out"))):
                 order = ", ".join(column.declared.name.lower() for column in columns)
                 st.markdown(
                     f"Columns in this order, or named in a first line: {order}. "

@@ -19,6 +19,8 @@ TITLE = "Case"
 SAMPLES = Path(__file__).resolve().parent.parent / "sample_cases"
 FIRST = ("tag", "service")
 """Of the words about the case; the others stand in a fold."""
+SET_BY_STEAM = ("T_in", "p_in", "T_out")
+"""What the pressure and superheat of condensing steam decide, so that no box asks for it."""
 
 
 def show() -> None:
@@ -42,7 +44,9 @@ def show() -> None:
 
 
 def in_short() -> str:
-    """The answer in a few words, while the case is typed; empty while it is incomplete."""
+    """The answer in a few words, while the case is typed; how to begin where nothing is stated."""
+    if session.case() == session.empty_case():
+        return "State the two streams and the exchanger, or open an example."
     found = session.rated(session.text_of(session.case()))
     if found is None:
         return ""
@@ -54,8 +58,13 @@ def in_short() -> str:
     return f"Duty fouled {duties[0]}, clean {duties[1]}{margin}."
 
 
+def fold_out(label: str, icon: str) -> Any:
+    """A popover that closes when another case takes the place of the present one."""
+    return st.popover(label, icon=icon, key=f"{label}{session.view()}")
+
+
 def opening() -> None:
-    with st.popover("Open", icon=":material/folder_open:"):
+    with fold_out("Open", ":material/folder_open:"):
         widget = f"upload{session.view()}"
         st.file_uploader(
             "A case file (JSON)",
@@ -77,7 +86,7 @@ def samples() -> None:
     known = _samples()
     if not known:
         return
-    with st.popover("Examples", icon=":material/menu_book:"):
+    with fold_out("Examples", ":material/menu_book:"):
         for name, sample in known.items():
             st.button(
                 plain(f"{sample.get('tag') or name}: {sample.get('service') or 'a case'}"),
@@ -102,7 +111,7 @@ def _samples() -> dict[str, dict[str, Any]]:
 
 
 def saving() -> None:
-    with st.popover("Save", icon=":material/download:"):
+    with fold_out("Save", ":material/download:"):
         st.download_button(
             "Save the case as a file",
             case_file(),
@@ -125,7 +134,7 @@ def file_name(raw: dict[str, Any], ending: str) -> str:
 
 
 def starting() -> None:
-    with st.popover("New", icon=":material/note_add:"):
+    with fold_out("New", ":material/note_add:"):
         st.caption("The present case goes away unless you save it. One step back brings it again.")
         st.button("Start an empty case", on_click=session.replace, args=(session.empty_case(), "new case"))
 
@@ -148,7 +157,12 @@ def sides(form: Form) -> None:
             for part in fields.parts(stream):
                 if part.shape == "kinds":
                     form.kinds(part, (side, part.name))
-            form.boxes([part for part in fields.parts(stream) if part.shape == "box"], (side,), 2)
+            steam = fields.get(form.raw, (side, "fluid", "steam")) is not None
+            decided = SET_BY_STEAM if steam else ()
+            boxes = [part for part in fields.parts(stream) if part.shape == "box"]
+            form.boxes(
+                [part for part in boxes if part.name not in decided or form.stated((side, part.name))], (side,), 2
+            )
     for part, path in form.tables:
         st.markdown(f"**{plain(fields.words(engine.Case, form.raw, path[:2]))}: {part.title.lower()} of properties**")
         form.rows(part, path)
