@@ -336,11 +336,16 @@ class DoublePipe(Input):
             factors = at.factors_of(relations)
             ratio = surface / self.shell_id
             Nu, regime = annulus.nusselt_annulus(Re, Pr, d_h, ratio, x1, x2, wall=wall, factors=factors)
+        h = self._coefficient(side, Nu * at.bulk.k / d_h, surface)
+        return Film(h=h, Re=Re, Pr=Pr, velocity=G / at.bulk.rho, regime=regime, relations=relations)
+
+    def _coefficient(self, side: Side, h: Array, surface: Array) -> Array:
+        """A film coefficient of the surface that the fluid touches, on the side's own bare surface."""
         own = self.tube_id if side == "inside" else self.tube_od
-        h = Nu * at.bulk.k / d_h * (surface / own) * getattr(self.film_factor, side)
+        h = h * (surface / own) * getattr(self.film_factor, side)
         if side == "outside" and self.finned is not None and self.fins is not None:
             h = h * self.finned.effective_share(h, float(self.fins.conductivity))
-        return Film(h=h, Re=Re, Pr=Pr, velocity=G / at.bulk.rho, regime=regime, relations=relations)
+        return h
 
     def second_opinions(self, side: Side, cells: Cells, at: Flowing) -> dict[str, Array]:
         area, d_h, surface = self._passage(side, at)
@@ -367,8 +372,8 @@ class DoublePipe(Input):
             else:
                 Nu = inside_tubes.nusselt_tube(Re, Pr, d_h, 0.0, L, **joined)[0]
             found[inside_tubes.transition_2013] = Nu
-        own = self.tube_id if side == "inside" else self.tube_od
-        return {relation.name: (Nu * at.bulk.k / d_h * surface / own).mean(axis=1) for relation, Nu in found.items()}
+        to_h = at.bulk.k / d_h
+        return {r.name: self._coefficient(side, Nu * to_h, surface).mean(axis=1) for r, Nu in found.items()}
 
     def excursions(self, side: Side, cells: Cells, at: Flowing, film: Film) -> tuple[Excursion, ...]:
         _, d_h, surface = self._passage(side, at)
