@@ -8,7 +8,7 @@ from typing import Any
 
 from engine import __version__
 from engine.findings import Verdict
-from engine.rating import Profile, Rating, SideState, State
+from engine.rating import Chest, Profile, Rating, SideState, State
 from engine.stated import SIDES
 from engine.uncertainty import Intervals
 
@@ -85,6 +85,7 @@ def _state(state: State, doubt: Intervals | None) -> dict[str, Any]:
         ],
         **{side: _side(state.sides[side]) for side in SIDES},
         "wall": {"R": _number(state.wall_R)},
+        "steam": _steam(state.chest) if state.chest else None,
         "profile": _profile(state.profile) if state.profile else None,
     }
 
@@ -95,12 +96,24 @@ def _interval(low: float, high: float) -> dict[str, float | None]:
 
 def _side(side: SideState) -> dict[str, Any]:
     return {
-        **{name: _number(getattr(side, name)) for name in ("T_in", "T_out", "h", "Re", "Pr", "velocity")},
+        **{name: _number(getattr(side, name)) for name in ("flow", "T_in", "T_out", "h", "Re", "Pr", "velocity")},
         "regime": side.regime,
         "dp": _number(side.dp),
         "dp_parts": {name: _number(part) for name, part in side.drops.items()},
         "R_fouling": _number(side.R_fouling),
         "correlations": [relation.name for relation in side.relations],
+    }
+
+
+def _steam(chest: Chest) -> dict[str, Any]:
+    figures = ("p_supply", "p", "T_sat", "heat", "p_required", "stall_duty")
+    return {
+        "side": chest.side,
+        **{name: _number(getattr(chest, name)) for name in figures},
+        "zones": [
+            {"name": zone.name, **{name: _number(getattr(zone, name)) for name in ("duty", "area", "U", "mtd")}}
+            for zone in chest.zones
+        ],
     }
 
 

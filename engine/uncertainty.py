@@ -13,7 +13,8 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from engine.case import Case, ConstantFluid, PureFluid, TableFluid
+from engine import fluids
+from engine.case import Case, ConstantFluid, PureFluid, SteamFluid, TableFluid
 from engine.correlations import Array
 from engine.points import SETTLED, Points, Solution, joined, points_of, solve
 from engine.rating import Rating
@@ -44,6 +45,7 @@ QUANTITIES = (
     "inside.dp",
     "outside.dp",
 )
+"""Those that an interval is found for; of a condensing side all but its drop, see `quantities_of`."""
 _LINEAR = ("inside.T_out", "outside.T_out")
 
 
@@ -101,6 +103,11 @@ def doubts(case: Case, rating: Rating) -> list[Doubt]:
     return found
 
 
+def quantities_of(case: Case) -> tuple[str, ...]:
+    """The quantities that a case has: the drop of condensing steam is not rated."""
+    return tuple(quantity for quantity in QUANTITIES if quantity != f"{case.steam_side}.dp")
+
+
 def _name(case: Case, side: Side) -> str:
     return case.exchanger.side_names[side].lower()
 
@@ -119,6 +126,15 @@ def _stated(case: Case, side: Side) -> Iterable[Doubt]:
             if figure.quantity == "volume_flow":
                 sd = figure.sd / float(figure) * (case.flow(side) or 0.0)
             yield Doubt(name=f"{where} {words}", path=f"{side}.{name}", sd=sd, origin="as stated", shrink=shrink)
+    if isinstance(stream.fluid, SteamFluid) and isinstance(p := stream.fluid.steam.p, Figure) and p.sd:
+        line, p_in = fluids.saturation_line(), case.p_in(side)
+        yield Doubt(
+            name=f"{where} steam pressure",
+            path=f"{side}.T_in",
+            sd=0.5 * float(np.diff(line.T(p_in + np.array([-p.sd, p.sd])))[0]),
+            origin="as stated, by its saturation temperature",
+            shrink="read the steam pressure with a calibrated gauge at the exchanger",
+        )
 
 
 def _relations(case: Case, rating: Rating, side: Side) -> Iterable[Doubt]:
@@ -140,6 +156,8 @@ def _relations(case: Case, rating: Rating, side: Side) -> Iterable[Doubt]:
             origin=origin,
             shrink="calibrate with a clean test: the film factor of this side",
         )
+    if side == case.steam_side:
+        return
     drop = case.exchanger.drop_relation(side)
     if drop.scatter is not None:
         yield Doubt(
@@ -153,7 +171,7 @@ def _relations(case: Case, rating: Rating, side: Side) -> Iterable[Doubt]:
 
 def _properties(case: Case, side: Side) -> Iterable[Doubt]:
     stream = case.stream(side)
-    library = isinstance(stream.fluid, PureFluid)
+    library = isinstance(stream.fluid, (PureFluid, SteamFluid))
     typed = isinstance(stream.fluid, (TableFluid, ConstantFluid))
     for name, sd in PROPERTY_SD["library" if library else "stated"].items():
         yield Doubt(
@@ -179,14 +197,14 @@ def propagate(case: Case, rating: Rating, *, samples: int = 0, seed: int = 0) ->
     out: dict[str, Intervals] = {}
     for k, state in enumerate(rating.states):
         first = k * (1 + 2 * len(found))
-        centre = {q: values[q][first] for q in QUANTITIES}
-        slopes: dict[str, list[float]] = {q: [] for q in QUANTITIES}
+        centre = {q: values[q][first] for q in quantities_of(case)}
+        slopes: dict[str, list[float]] = {q: [] for q in quantities_of(case)}
         left_out = []
         for i, doubt in enumerate(found):
             up, down = first + 1 + 2 * i, first + 2 + 2 * i
             if not (good[up] or good[down]):
                 left_out.append(doubt.name)
-            for q in QUANTITIES:
+            for q in quantities_of(case):
                 high = _scale(q, values[q][up]) if good[up] else None
                 low = _scale(q, values[q][down]) if good[down] else None
                 middle = _scale(q, centre[q])
@@ -263,12 +281,13 @@ def each_way(base: Points, found: Sequence[Doubt]) -> Points:
 
 
 def _figures(case: Case, points: Points) -> tuple[dict[str, Array], NDArray[np.bool_]]:
-    values = {q: np.full(len(points), np.nan) for q in QUANTITIES}
+    values = {q: np.full(len(points), np.nan) for q in quantities_of(case)}
     good = np.zeros(len(points), dtype=bool)
     for rows, solved in solve(case, points):
         good[rows] = (solved.problem == "") & (solved.residual <= SETTLED)
-        for name, column in _of(case, solved).items():
-            values[name][rows] = column
+        found = _of(case, solved)
+        for name in values:
+            values[name][rows] = found[name]
     return values, good
 
 
@@ -297,8 +316,8 @@ def _sampled(case: Case, rating: Rating, found: list[Doubt], samples: int, seed:
         points = _moved(_base(case, state), {d.path: d.sd * z[i] for i, d in enumerate(found)})
         values, good = _figures(case, points)
         tails = (2.5, 97.5)
-        of = {q: tuple(float(x) for x in np.percentile(values[q][good], tails)) for q in QUANTITIES}
-        sd = {q: float(np.std([_scale(q, x) for x in values[q][good]])) for q in QUANTITIES}
+        of = {q: tuple(float(x) for x in np.percentile(values[q][good], tails)) for q in quantities_of(case)}
+        sd = {q: float(np.std([_scale(q, x) for x in values[q][good]])) for q in quantities_of(case)}
         lost = int((~good).sum())
         note = (f"{lost} of {samples} draws have no answer",) if lost else ()
         out[state] = Intervals(

@@ -13,9 +13,9 @@ from tests.cases import OIL_COOLER, changed, oil_cooler
 
 STATE = {
     "duty", "area", "mtd", "F", "effectiveness", "NTU", "U_clean", "U_dirty", "U_required", "margin", "intervals",
-    "contributors", "inside", "outside", "wall", "profile",
+    "contributors", "inside", "outside", "wall", "steam", "profile",
 }  # fmt: skip
-SIDE = {"T_in", "T_out", "h", "Re", "Pr", "velocity", "regime", "dp", "dp_parts", "R_fouling", "correlations"}
+SIDE = {"flow", "T_in", "T_out", "h", "Re", "Pr", "velocity", "regime", "dp", "dp_parts", "R_fouling", "correlations"}
 PROFILE = {
     "x", "inside_T", "outside_T", "wall_T_inside", "wall_T_outside", "inside_regime", "outside_regime"
 }  # fmt: skip
