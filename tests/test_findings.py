@@ -130,6 +130,28 @@ def bundle(where: str = "", **changes: Any) -> Look:
     return look(where, **{"exchanger": exchanger, "inside__flow": "20 kg/s", "outside__flow": "20 kg/s", **changes})
 
 
+STEEL = {"exchanger__wall_conductivity": None, "exchanger__material": "carbon steel"}
+NOZZLES = {"exchanger__shell_nozzle_id": "203 mm", "exchanger__tube_nozzle_id": "154 mm"}
+
+
+def boiling_bundle() -> Look:
+    """As `boiling`, in a shell."""
+    hot = {"outside__T_in": "150 degC", "outside__p_in": "9 barg"}
+    return bundle(inside__T_in="95 degC", inside__p_in="0 barg", **hot, **STEEL, **NOZZLES)
+
+
+def gas_bundle(**changes: Any) -> Look:
+    """Air of 5 bar in the shell, water under more pressure in steel tubes."""
+    air = {"outside__fluid": "Air", "outside__T_in": "150 degC", "outside__p_in": "5 barg", "inside__p_in": "9 barg"}
+    return bundle(**{**STEEL, **air, "outside__flow": "1 kg/s", **changes})
+
+
+def long_spans(**changes: Any) -> Look:
+    """Four baffles 0.8 m apart in a shell of 0.591 m, four times the flow."""
+    baffles = {"exchanger__baffle_spacing": "800 mm", "exchanger__baffles": 4}
+    return bundle(**{**STEEL, **baffles, "outside__flow": "80 kg/s", **changes})
+
+
 def all_stated() -> Look:
     streams = {f"{side}__R_fouling": "0 m2K/W" for side in ("inside", "outside")}
     exchanger = {
@@ -376,6 +398,84 @@ CASES: dict[str, tuple[Case, Case, Case | None]] = {
         lambda: look(exchanger__heat_loss="5 kW"),
         lambda: look(exchanger__heat_loss="0.1 kW"),
         boiling,
+    ),
+    # shell
+    "tube-count": (
+        # Ludwig and Kern hold 358 to 398 in two passes: 430 are 8 % more, 460 are 16 % more.
+        lambda: bundle(exchanger__tubes=460),
+        lambda: bundle(exchanger__tubes=380),
+        None,
+    ),
+    "type-letters": (
+        lambda: bundle(exchanger__tema="BEW", exchanger__tube_passes=4),
+        lambda: bundle(exchanger__tema="BEP", exchanger__tube_passes=4),
+        None,
+    ),
+    "mechanical-cleaning": (
+        lambda: bundle("outside", outside__R_fouling="0.0005 m2K/W"),
+        lambda: bundle(
+            "outside",
+            outside__R_fouling="0.0005 m2K/W",
+            exchanger__tema="AES",
+            exchanger__layout_angle="90 deg",
+        ),
+        None,
+    ),
+    "nozzle-momentum": (
+        # 80 kg/s through 324 cm²: 2.5 m/s, ρv² = 6200
+        lambda: bundle("outside", outside__flow="80 kg/s", **NOZZLES),
+        lambda: bundle("outside", **NOZZLES),
+        lambda: bundle("outside"),
+    ),
+    "bundle-entrance": (
+        lambda: bundle(outside__flow="80 kg/s", **NOZZLES),
+        lambda: bundle(**NOZZLES),
+        bundle,
+    ),
+    "nozzle-over-spacing": (
+        lambda: bundle(exchanger__baffle_spacing="150 mm", exchanger__inlet_spacing="150 mm", **NOZZLES),
+        lambda: bundle(**NOZZLES),
+        bundle,
+    ),
+    "erosion-velocity": (
+        # 100 kg/s through 150 bores of 14.83 mm: 3.9 m/s
+        lambda: bundle(inside__flow="100 kg/s", **STEEL),
+        lambda: bundle(**STEEL),
+        bundle,
+    ),
+    "allowance-unused": (
+        lambda: bundle("outside", outside__R_fouling="0.0002 m2K/W", outside__dp_allowed="100 kPa"),
+        lambda: bundle("outside", outside__R_fouling="0.0002 m2K/W", outside__dp_allowed="15 kPa"),
+        lambda: bundle("outside", outside__R_fouling="0.0002 m2K/W"),
+    ),
+    "baffle-spacing": (
+        # A fifth of 591 mm is 118 mm.
+        lambda: bundle(exchanger__baffle_spacing="110 mm"),
+        lambda: bundle(exchanger__baffle_spacing="120 mm"),
+        None,
+    ),
+    "window-velocity": (long_spans, bundle, None),
+    "leakage-and-bypass": (lambda: bundle(exchanger__tema="AET"), bundle, boiling_bundle),
+    "unsupported-span": (
+        # Tubes of 19.05 mm in steel: 1524 mm; two spacings of 800 mm are 1600 mm.
+        long_spans,
+        lambda: bundle(**STEEL),
+        bundle,
+    ),
+    "temperature-cross": (bundle, lambda: bundle(exchanger__shells_in_series=2), boiling_bundle),
+    "near-cliff": (bundle, lambda: bundle(exchanger__tube_length="2.44 m"), boiling_bundle),
+    "tube-vibration": (long_spans, lambda: bundle(**STEEL), bundle),
+    "vortex-resonance": (
+        # 0.66 m/s past 19.05 mm: 0.2 to 0.5 of 35 Hz; spans of 1.6 m swing at 14 Hz.
+        long_spans,
+        lambda: bundle(**STEEL),
+        bundle,
+    ),
+    "acoustic-resonance": (
+        # At 2.5 kg/m³, 3 kg/s and 16 m/s: 0.2 to 0.5 of 830 Hz; half a wave across 0.59 m at 330 m/s: 280 Hz.
+        lambda: gas_bundle(outside__flow="3 kg/s"),
+        gas_bundle,
+        lambda: gas_bundle(outside__flow="8 kg/s"),
     ),
 }
 """Where the rule fires, where it stays silent, where it is not possible (None: it can always be judged)."""

@@ -690,12 +690,15 @@ class ShellAndTube(Input):
             "nozzles": self._shell_nozzles(at, self._mean(rho, cells)),
         }
 
-    def _shell_nozzles(self, at: Flowing, rho: Array) -> Array:
-        kind = self.shell_type
-        inlets, outlets = kind.inlets, kind.outlets
+    @property
+    def shell_nozzles(self) -> tuple[int, int]:
+        """Inlets and outlets of one shell."""
         if self.shell_letter == "J" and self.shell_inlets == 2:
-            inlets, outlets = 2, 1
-        return self._nozzle_drop(self.shell_nozzle_id, at, rho, inlets, outlets)
+            return 2, 1
+        return self.shell_type.inlets, self.shell_type.outlets
+
+    def _shell_nozzles(self, at: Flowing, rho: Array) -> Array:
+        return self._nozzle_drop(self.shell_nozzle_id, at, rho, *self.shell_nozzles)
 
     def _nozzle_drop(self, bore: float | None, at: Flowing, rho: Array, inlets: int, outlets: int) -> Array:
         """(P,) loss in the nozzles of all shells in series; each shell has its own."""

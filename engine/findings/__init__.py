@@ -32,7 +32,7 @@ GRADES: Mapping[Grade, str] = {
 
 COMMON_PRACTICE = "common practice"
 
-MODULES = ("validity", "thermal", "flow")
+MODULES = ("validity", "thermal", "flow", "shell")
 """The files of rules, in the order in which they are judged."""
 
 

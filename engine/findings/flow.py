@@ -137,8 +137,7 @@ def gas_near_sound(s: Subject, side: Side) -> Iterator[Finding]:
     rho_mean = float(s.fluid(side).at(np.asarray((at.T_in + at.T_out) / 2)).rho)
     rho, cp = at.properties_out["rho"], at.properties_out["cp"]
     v = at.velocity * rho_mean / rho * p_in / p_out
-    gas_constant = p_in / (rho * at.T_out)
-    sound = float(np.sqrt(cp / (cp - gas_constant) * gas_constant * at.T_out))
+    sound = speed_of_sound(p_in, rho, cp, at.T_out)
     if v > MACH * sound:
         yield s.finding(
             "watch",
@@ -150,6 +149,12 @@ def gas_near_sound(s: Subject, side: Side) -> Iterator[Finding]:
             },
             do="Check flow, pressure and bore; use more pipes or tubes in parallel.",
         )
+
+
+def speed_of_sound(p: float, rho: float, cp: float, T: float) -> float:
+    """Of an ideal gas [m/s]."""
+    gas_constant = p / (rho * T)
+    return float(np.sqrt(cp / (cp - gas_constant) * gas_constant * T))
 
 
 @rule(

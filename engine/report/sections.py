@@ -64,7 +64,7 @@ ALWAYS_ASSUMED = (
 NEVER_CHECKED = (
     "mechanical design, thickness and remaining life of pressure parts",
     "sizing of relief, and tube rupture",
-    "vibration, noise, erosion and corrosion",
+    "vibration and noise beyond a screening of the tubes in a shell, erosion and corrosion",
     "supports, nozzle loads and thermal stress",
     "start-up, shut-down and upset operation",
     "compatibility of the materials with the fluids",
