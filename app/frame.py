@@ -74,7 +74,9 @@ def sidebar() -> None:
             st.caption(f"Results in {CHOICES[session.display().system]}, after your own figures.")
         what = session.last_replaced()
         if what:
-            st.button("One step back", help=f"Before: {what}", on_click=session.go_back, icon=":material/undo:")
+            st.button(
+                "One step back", help=plain(f"Takes back: {what}"), on_click=session.go_back, icon=":material/undo:"
+            )
         if session.unkept():
             st.warning(session.unkept())
         else:
@@ -103,6 +105,13 @@ def sentence(place: str, says: str) -> str:
     if not where:
         return f"{says[0].upper()}{says[1:]}."
     return f"{where} {says}." if says == MISSING else f"{where}: {says}."
+
+
+def listed(problems: Sequence[engine.Problem], most: int = 12) -> None:
+    """Problems as a list of sentences, the first of them."""
+    said = [f"- {plain(sentence(problem.path, problem.says))}" for problem in problems]
+    more = [f"- and {len(said) - most} more"] if len(said) > most else []
+    st.markdown("\n".join([*said[:most], *more]))
 
 
 def table(header: Sequence[str], rows: Sequence[Sequence[str]]) -> None:

@@ -8,9 +8,9 @@ from typing import Any
 import streamlit as st
 
 import engine
-from app import fields, figures, session
+from app import fields, figures, session, what_if
 from app.display import plain
-from app.frame import blocks, plot, sentence, table
+from app.frame import blocks, listed, plot
 
 TITLE = "Rating"
 GRADES = {
@@ -52,7 +52,7 @@ def results(text: str, present: bool) -> None:
     with right:
         where_pressure_goes(found, written)
     if present:
-        what_if(found)
+        what_if.show(found)
     for key in ("results", "methods", "contributors"):
         part(written, key)
 
@@ -69,12 +69,6 @@ def stale(problems: Any) -> None:
         icon=":material/history:",
     )
     listed(problems)
-
-
-def listed(problems: Any, most: int = 12) -> None:
-    said = [f"- {plain(sentence(problem.path, problem.says))}" for problem in problems]
-    more = [f"- and {len(said) - most} more"] if len(said) > most else []
-    st.markdown("\n".join([*said[:most], *more]))
 
 
 def answer(said: tuple[Any, ...]) -> None:
@@ -209,138 +203,3 @@ def where_pressure_goes(found: session.Rated, written: Mapping[str, Any]) -> Non
 def _named(place: str, names: Mapping[str, str]) -> str:
     side, _, rest = place.partition(" ")
     return f"{names[side]} {rest}" if side in names else place.capitalize()
-
-
-# --- what if ----------------------------------------------------------------------------------------------------------
-
-TRIED = ("flow", "T_in", "R_fouling")
-FOULING_SPAN = 0.0006
-"""Least span of the fouling slider [m²K/W]: a river water's usual allowance, twice over."""
-
-
-def what_if(found: session.Rated) -> None:
-    st.subheader("What if", anchor=False)
-    st.caption("Type a figure with its unit, or drag. The case stays as it is until you adopt the change.")
-    for side, place in zip(engine.SIDES, st.columns(2, gap="large"), strict=True):
-        with place:
-            st.markdown(f"**{found.case.exchanger.side_names[side]}**")
-            for name in TRIED:
-                if getattr(found.case.stream(side), name) is not None:
-                    entry(found.case, side, name)
-    if session.whatif():
-        outcome(found)
-
-
-def entry(case: engine.Case, side: str, name: str) -> None:
-    """One figure to try, as a box and as a slider that follow each other."""
-    stream, place = case.stream(side), f"{side}.{name}"
-    declared, value = type(stream).declared()[name], getattr(stream, name)
-    quantity = getattr(value, "quantity", "") or declared.quantities[0]
-    unit = _unit(value, quantity)
-    low, high = (float(engine.to_unit(end, quantity, unit)) for end in _ends(name, float(value)))
-    stated = float(engine.to_unit(float(value), quantity, unit))
-    text = session.whatif().get(place, "")
-    box, slider = f"try {place}{session.view()}", f"drag {place}{session.view()}"
-    at = min(max(_number(text, declared, quantity, unit, stated), low), high)
-    st.text_input(
-        declared.name,
-        text,
-        key=box,
-        placeholder=f"{stated:.5g} {unit}",
-        on_change=_typed,
-        args=(place, box, slider, (declared, quantity, unit, stated, low, high)),
-    )
-    st.slider(
-        f"{declared.name}, {case.exchanger.side_names[side].lower()}, {unit}",
-        low,
-        high,
-        at,
-        (high - low) / 200,
-        format="%.4g",
-        key=slider,
-        label_visibility="collapsed",
-        on_change=_dragged,
-        args=(place, box, slider, unit),
-    )
-
-
-def _unit(value: Any, quantity: str) -> str:
-    units = session.display()
-    if units.choice == "typed" and getattr(value, "text", ""):
-        return str(engine.parse(value.text, quantity).unit)
-    return units.unit(quantity)
-
-
-def _ends(name: str, value: float) -> tuple[float, float]:
-    if name == "flow":
-        return 0.25 * value, 2.0 * value
-    if name == "T_in":
-        return value - 30.0, value + 30.0
-    return 0.0, max(3.0 * value, FOULING_SPAN)
-
-
-def _number(text: str, declared: Any, quantity: str, unit: str, otherwise: float) -> float:
-    """A typed figure in the unit of its slider; the stated one where it is of another quantity or cannot be read."""
-    try:
-        figure = engine.parse(text, *declared.quantities)
-    except engine.UnitError:
-        return otherwise
-    return float(engine.to_unit(figure.value, quantity, unit)) if figure.quantity == quantity else otherwise
-
-
-def _typed(place: str, box: str, slider: str, about: tuple[Any, ...]) -> None:
-    *how, low, high = about
-    text = session.typed(box).strip()
-    session.try_out(place, text)
-    session.show_in(slider, min(max(_number(text, *how), low), high))
-
-
-def _dragged(place: str, box: str, slider: str, unit: str) -> None:
-    text = f"{session.typed(slider):.5g} {unit}"
-    session.try_out(place, text)
-    session.show_in(box, text)
-
-
-def outcome(found: session.Rated) -> None:
-    trial = session.text_of(session.trial(session.case()))
-    tried, problems = session.rated(trial), session.checked(trial).problems
-    if tried is None:
-        listed(problems)
-    elif not tried.rating.states:
-        st.error(plain(f"No answer: {tried.rating.problem}."))
-    else:
-        compared(found, tried)
-    with st.container(horizontal=True):
-        st.button(
-            "Adopt this in the case",
-            disabled=tried is None,
-            type="primary",
-            on_click=session.replace,
-            args=(session.trial(session.case()), "what-if adopted"),
-        )
-        st.button("Back to the case", on_click=session.end_trial)
-
-
-def compared(found: session.Rated, tried: session.Rated) -> None:
-    units, names = session.display(), found.case.exchanger.side_names
-    pair = (found.rating.fouled, tried.rating.fouled)
-    rows = [_row("Duty", "heat_flow", [s.duty for s in pair])]
-    for side in engine.SIDES:
-        shift = pair[1].T_out[side] - pair[0].T_out[side]
-        shown = [units.show(state.T_out[side], "temperature") for state in pair]
-        rows.append([f"{names[side]} outlet", *shown, _signed(units.show(shift, "temperature_difference", 3))])
-    rows.append(_row("U in service", "heat_transfer_coefficient", [s.U_dirty for s in pair], 3))
-    if all(state.margin is not None for state in pair):
-        rows.append(["Margin of U", *(f"{100 * state.margin:+.0f} %" for state in pair), ""])
-    for side in engine.SIDES:
-        rows.append(_row(f"{names[side]} drop", "pressure_difference", [s.sides[side].dp for s in pair], 3))
-    table(("Fouled", "Case", "What if", "Change"), rows)
-
-
-def _row(name: str, quantity: str, values: list[float], digits: int = 4) -> list[str]:
-    shown = [session.display().show(value, quantity, digits) for value in values]
-    return [name, *shown, f"{100 * (values[1] / values[0] - 1):+.1f} %"]
-
-
-def _signed(text: str) -> str:
-    return text if text.startswith("-") else f"+{text}"

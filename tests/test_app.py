@@ -286,6 +286,38 @@ def test_a_rating_that_is_not_of_the_present_case_says_so_and_why() -> None:
     assert not page("rating", token_of(app)).warning
 
 
+@pytest.mark.parametrize("path", sorted((ROOT / "sample_cases").glob("*.json")), ids=lambda path: path.stem)
+def test_every_sample_case_is_complete_and_shown_on_every_page(path: Path) -> None:
+    token = kept(engine.read_raw(path))
+    for name in ("case", "rating", "report"):
+        app = page(name, token)
+        assert not app.exception
+        assert "went wrong" not in words(app)
+        assert not app.warning
+    assert "✓ Complete" in words(page("case", token))
+
+
+def test_a_file_that_is_no_case_is_refused_and_the_case_stays() -> None:
+    app = page("case", kept())
+    for data, said in (
+        (b"not json", "is not JSON"),
+        (b'{"format": "other"}', "is not a case"),
+        (b'{"format": "countercheck-case", "version": 99}', "newer"),
+        (b"\xff\xfe", "is not text"),
+    ):
+        app.file_uploader[0].set_value(("a*b.json", data, "application/json")).run()
+        assert said in "".join(e.value for e in app.info)
+        assert draft_of(app)["case"] == OIL_COOLER
+
+
+def test_a_file_opens_as_it_was_saved() -> None:
+    app = page("case")
+    data = engine.dump_case(engine.parse_case(OIL_COOLER)).encode()
+    app.file_uploader[0].set_value(("e-1402.json", data, "application/json")).run()
+    assert draft_of(app)["case"] == OIL_COOLER
+    assert app.text_input(key="inside.flow@typed#1").value == "12 m3/h"
+
+
 def test_without_any_complete_case_no_result_is_shown() -> None:
     app = page("rating")
     assert not app.metric
