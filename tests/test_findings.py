@@ -92,11 +92,19 @@ def with_lost_doubt() -> Look:
     return replace(at, intervals={**at.intervals, "fouled": lost})
 
 
-def steam() -> Look:
-    case = parse_case(
-        changed(WATER, outside__fluid=STEAM, outside__T_in=None, outside__p_in=None, outside__flow="1 kg/s")
-    )
-    return Look(rating=Rating(case=case, states={}, methods={}, problem="outside: not rated in this test"))
+def heater(**changes: Any) -> Look:
+    """2 kg/s of water heated from 20 °C by steam of 3 bar gauge, which condenses at 143.7 °C."""
+    steam = {"outside__T_in": None, "outside__p_in": None, "outside__flow": None, "inside__p_in": "6 barg"}
+    return look(**{**steam, "outside__fluid": STEAM, **changes})
+
+
+def steam_with(**keys: str) -> dict[str, Any]:
+    return {"outside__fluid": {"steam": {**STEAM["steam"], **keys}}}
+
+
+def boiling_heater(**changes: Any) -> Look:
+    """The water's wall is above the 99.6 °C at which it boils."""
+    return heater(inside__T_in="95 degC", inside__p_in="0 barg", **changes)
 
 
 def oil_inside(where: str = "inside", **changes: Any) -> Look:
@@ -347,7 +355,6 @@ CASES: dict[str, tuple[Case, Case, Case | None]] = {
     "blocked-in": (lambda: look(outside__T_in="51 degC"), lambda: look(outside__T_in="49 degC"), None),
     "leak-direction": (oil_inside, look, lambda: oil_inside(inside__p_in="0.01 bara")),
     "hot-surface": (lambda: look(outside__T_in="61 degC"), lambda: look(outside__T_in="59 degC"), None),
-    "steam-hammer": (steam, look, None),
     # flow
     "drop-over-allowance": (
         lambda: look("inside", inside__dp_allowed="0.1 kPa"),
@@ -476,6 +483,38 @@ CASES: dict[str, tuple[Case, Case, Case | None]] = {
         lambda: gas_bundle(outside__flow="3 kg/s"),
         gas_bundle,
         lambda: gas_bundle(outside__flow="8 kg/s"),
+    ),
+    # steam
+    "steam-hammer": (heater, look, None),
+    "steam-stall": (
+        # 2 kg/s from 20 to 30 °C take 84 kW of the hundreds that steam of 3 bar gauge gives.
+        lambda: heater(inside__T_out="30 degC", **steam_with(back_pressure="0.5 barg")),
+        look,
+        heater,
+    ),
+    "steam-short": (
+        # 0.02 kg/s of steam give some 45 kW: the chest settles far below the atmosphere.
+        lambda: heater(outside__flow="0.02 kg/s"),
+        lambda: heater(outside__flow="2 kg/s"),
+        boiling_heater,
+    ),
+    "superheat-dry-wall": (
+        # Between slow steam and as slow a gas that is nearly as warm the wall stands half-way to the superheat.
+        lambda: heater(
+            inside__fluid="Air",
+            inside__flow="0.02 kg/s",
+            inside__T_in="140 degC",
+            inside__p_in="1 barg",
+            **steam_with(superheat="50 K"),
+        ),
+        lambda: heater(**steam_with(superheat="50 K")),
+        boiling_heater,
+    ),
+    "flooded-area": (lambda: heater(**steam_with(subcooling="10 K")), heater, boiling_heater),
+    "gas-in-steam": (
+        lambda: heater(**steam_with(noncondensable="1 %")),
+        lambda: heater(**steam_with(vent_T="143.5 degC")),
+        heater,
     ),
 }
 """Where the rule fires, where it stays silent, where it is not possible (None: it can always be judged)."""

@@ -32,7 +32,7 @@ GRADES: Mapping[Grade, str] = {
 
 COMMON_PRACTICE = "common practice"
 
-MODULES = ("validity", "thermal", "flow", "shell")
+MODULES = ("validity", "thermal", "flow", "shell", "steam")
 """The files of rules, in the order in which they are judged."""
 
 
@@ -121,7 +121,13 @@ class Subject:
         return side == "outside" and isinstance(self.case.exchanger, ShellAndTube)
 
     def p_out(self, side: Side) -> float:
-        """The lower outlet pressure of both states [Pa]. Missing where the drop leaves none."""
+        """The lower outlet pressure of both states [Pa]; of condensing steam that of its chest.
+
+        Missing where the drop leaves none.
+        """
+        chests = [state.chest for state in self.states.values() if state.chest is not None]
+        if side == self.case.steam_side and chests:
+            return min(chest.p for chest in chests)
         p_out = self.case.p_in(side) - max(state.sides[side].dp for state in self.states.values())
         if p_out <= 0:
             raise Missing(f"an outlet pressure of the {self.name(side)}: the drop is larger than the inlet pressure")

@@ -39,6 +39,8 @@ VACUUM, HIGH_PRESSURE = 0.5e5, 10e5
 def drop_over_allowance(s: Subject, side: Side) -> Iterator[Finding]:
     path = f"{side}.dp_allowed"
     allowed, dp = float(s.stated(path)), s.fouled.sides[side].dp
+    if s.phase(side) == "condensing":
+        raise Missing(f"a drop of the {s.name(side)}: that of condensing steam is not rated")
     low, high = s.interval(f"{side}.dp") or (dp, dp)
     if high <= allowed:
         return
@@ -72,6 +74,8 @@ def drop_over_allowance(s: Subject, side: Side) -> Iterator[Finding]:
     by_side=True,
 )
 def drop_over_inlet_pressure(s: Subject, side: Side) -> Iterator[Finding]:
+    if s.phase(side) == "condensing":
+        raise Missing(f"a drop of the {s.name(side)}: that of condensing steam is not rated")
     p_in, dp = s.case.p_in(side), max(state.sides[side].dp for state in s.states.values())
     atmosphere = float(s.case.atmosphere)
     because = {"drop": s.dp(dp), "inlet": s.p(p_in)}

@@ -723,16 +723,3 @@ def hot_surface(s: Subject) -> Iterator[Finding]:
             because={"hot inlet": s.T(T), "limit": s.T(BURNS)},
             do="Insulate or guard what can be touched.",
         )
-
-
-@rule("steam-hammer", title="Steam and its condensate", grades=("note",), needs="nothing", source=COMMON_PRACTICE)
-def steam_hammer(s: Subject) -> Iterator[Finding]:
-    for side in SIDES:
-        if s.case.stream(side).condenses:
-            yield s.finding(
-                "note",
-                where=side,
-                says=f"Steam of {s.p(s.case.p_in(side))} in the {s.name(side)} hammers where condensate stands.",
-                because={"condensing point": s.T(s.case.T_in(side))},
-                do="See that the condensate drains freely before steam is let in.",
-            )

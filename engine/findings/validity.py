@@ -204,7 +204,10 @@ def near_uniform_flux(s: Subject) -> Iterator[Finding]:
 
 def capacities(state: State) -> dict[Side, float]:
     """flow·cp of each side [W/K], as the rating's own duty and temperatures give it; boundless where it condenses."""
-    return {side: state.duty / max(abs(at.T_out - at.T_in), 1e-12) for side, at in state.sides.items()}
+    return {
+        side: np.inf if at.regime == "condensing" else state.duty / max(abs(at.T_out - at.T_in), 1e-12)
+        for side, at in state.sides.items()
+    }
 
 
 @rule(
