@@ -12,7 +12,6 @@ import engine
 
 AS_TYPED = "typed"
 CHOICES = {AS_TYPED: "As typed", **engine.SYSTEMS}
-TOTAL_NAMES = {"inside": "Inside", "outside": "Outside"}
 _MARKUP = re.compile(r"([\\`*_{}\[\]<>#$|~:!&])")
 
 

@@ -188,7 +188,7 @@ class Form:
         if isinstance(declared, engine.Choice):
             options = [None, *declared.options] if part.default is None and not part.needed else [*declared.options]
             value = next((o for o in declared.options if o.lower() == text.strip().lower()), text or part.default)
-            if value not in options:
+            if value not in options and value is not None:
                 options.append(value)
             shown = value
             st.selectbox(

@@ -183,6 +183,13 @@ def test_every_kind_of_fluid_and_every_type_of_exchanger_has_a_form() -> None:
         assert {d.name for d in model.declared().values()} <= labels
 
 
+def test_a_choice_that_is_needed_is_not_made_for_the_user() -> None:
+    app = page("case", kept({**OIL_COOLER, "exchanger": {"type": "shell-and-tube"}}))
+    assert app.selectbox(key="exchanger.layout_angle@typed#0").value is None
+    app.selectbox(key="exchanger.layout_angle@typed#0").set_value("90 deg").run()
+    assert draft_of(app)["case"]["exchanger"]["layout_angle"] == "90 deg"
+
+
 def test_what_one_kind_of_fluid_had_comes_back_with_it() -> None:
     app = page("case", kept())
     app.selectbox(key="outside.fluid.kind@typed#0").set_value("constant").run()
