@@ -107,6 +107,19 @@ def sentence(place: str, says: str) -> str:
     return f"{where} {says}." if says == MISSING else f"{where}: {says}."
 
 
+def link(title: str, label: str, first: bool = False) -> None:
+    """A way to another page of the table of pages, told by its title; `first` for the one that opens at the start."""
+    st.page_link(
+        st.Page(_elsewhere, title=title, url_path=title.lower().replace(" ", "-"), default=first),
+        label=label,
+        icon=":material/arrow_forward:",
+    )
+
+
+def _elsewhere() -> None:
+    """Stands for a page that is only pointed to."""
+
+
 def listed(problems: Sequence[engine.Problem], most: int = 12) -> None:
     """Problems as a list of sentences, the first of them."""
     said = [f"- {plain(sentence(problem.path, problem.says))}" for problem in problems]

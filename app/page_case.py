@@ -12,7 +12,7 @@ import streamlit as st
 import engine
 from app import fields, figures, session
 from app.display import plain
-from app.frame import plot, sentence, state_line
+from app.frame import link, plot, sentence, state_line
 from app.inputs import Form, Problems
 
 TITLE = "Case"
@@ -33,6 +33,8 @@ def show() -> None:
         saving()
         starting()
     st.markdown(f"**{state_line(problems)}** {plain(in_short())}")
+    if not problems.missing and not problems.wrong:
+        link("Rating", "See the rating")
     top = st.container()
     about(form)
     sides(form)

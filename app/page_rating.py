@@ -10,7 +10,7 @@ import streamlit as st
 import engine
 from app import fields, figures, session, what_if
 from app.display import plain
-from app.frame import blocks, listed, plot
+from app.frame import blocks, link, listed, plot
 
 TITLE = "Rating"
 GRADES = {
@@ -58,8 +58,9 @@ def results(text: str, present: bool) -> None:
 
 
 def nothing_yet(problems: Any) -> None:
-    st.info("There is nothing to rate yet. On the page Case:")
+    st.info("There is nothing to rate yet:")
     listed(problems)
+    link("Case", "Go to the case", first=True)
 
 
 def stale(problems: Any) -> None:
@@ -69,6 +70,7 @@ def stale(problems: Any) -> None:
         icon=":material/history:",
     )
     listed(problems)
+    link("Case", "Go to the case", first=True)
 
 
 def answer(said: tuple[Any, ...]) -> None:
