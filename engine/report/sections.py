@@ -264,6 +264,8 @@ class _Report:
 
     def _drop_verdict(self, side: Side) -> str:
         dp, kind = self.rating.fouled.sides[side].dp, "pressure_difference"
+        if side == self.case.steam_side:
+            return f"The drop of the steam that condenses in the {self.names[side].lower()} is not rated."
         drops = self.words.doubted(dp, kind, self._ends("fouled", f"{side}.dp"))
         text, allowed = f"The {self.names[side].lower()} drops {drops}", self.case.stream(side).dp_allowed
         if allowed is None:
@@ -346,10 +348,32 @@ class _Report:
             "NTU": [show(s.NTU, "dimensionless", 3) for s in self.both],
             "U required": [show(s.U_required, "heat_transfer_coefficient", 3) for s in self.both],
             "Margin of U": [NONE if s.margin is None else _off(s.margin) for s in self.both],
+            **self._steam_rows(),
         }
         for label, (clean, fouled) in rows.items():
             if (clean, fouled) != (NONE, NONE):
                 yield label, clean, "", fouled, ""
+
+    def _steam_rows(self) -> dict[str, list[str]]:
+        """What condenses, at which pressure, and where its heat goes; empty where nothing condenses."""
+        chests, show = [state.chest for state in self.both if state.chest is not None], self.words.show
+        if not chests:
+            return {}
+        zones = [{zone.name: zone for zone in chest.zones} for chest in chests]
+
+        def shares(name: str, of: str) -> list[str]:
+            found = [getattr(at.get(name), of, None) for at in zones]
+            wholes = [getattr(state, of) for state in self.both]
+            return [NONE if x is None else _percent(x / whole) for x, whole in zip(found, wholes, strict=True)]
+
+        return {
+            "Condensate": [show(chest.flow, "mass_flow") for chest in chests],
+            "Steam pressure in the chest": [show(chest.p, "pressure_absolute") for chest in chests],
+            "Pressure for the required duty": [show(chest.p_required, "pressure_absolute") for chest in chests],
+            "Superheat, of the duty": shares("desuperheating", "duty"),
+            "Subcooling, of the duty": shares("subcooling", "duty"),
+            "Under condensate, of the area": shares("subcooling", "area"),
+        }
 
     def _side_rows(self) -> Iterator[tuple[str, ...]]:
         sides, show = [at for _, _, at in self.columns], self.words.show
@@ -436,7 +460,10 @@ class _Report:
         yield ("95 % interval", *(self.words.span(dp, kind, ends) for dp, ends in totals))
         allowed = [(at.dp, self.case.stream(side).dp_allowed) for side, _, at in columns]
         yield ("Allowed", *(inputs.NOT_STATED if most is None else self.words.typed(most) for _, most in allowed))
-        yield ("Used of the allowed", *(NONE if most is None else _percent(dp / most, 0) for dp, most in allowed))
+        yield (
+            "Used of the allowed",
+            *(NONE if most is None or np.isnan(dp) else _percent(dp / most, 0) for dp, most in allowed),
+        )
 
     # --- methods and relations ----------------------------------------------------------------------------------------
 

@@ -46,7 +46,9 @@ class Words:
         return units.show(float(value), quantity, self.system, digits)
 
     def best(self, value: float, quantity: str, ends: Ends) -> str:
-        """A figure with its unit, to as many digits as its interval allows."""
+        """A figure with its unit, to as many digits as its interval allows; a dash where there is none."""
+        if not math.isfinite(value):
+            return NONE
         return f"{self._of(value, quantity, self._last(value, quantity, ends))} {self.unit(quantity)}"
 
     def span(self, value: float, quantity: str, ends: Ends) -> str:
