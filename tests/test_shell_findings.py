@@ -2,11 +2,16 @@
 
 from __future__ import annotations
 
+from pathlib import Path
 from typing import Any
 
 import numpy as np
 import pytest
 
+from engine.casefile import parse_case, read_raw
+from engine.rating import rate
+from engine.stated import Side
+from tests.cases import changed
 from tests.test_findings import NOZZLES, STEEL, Look, bundle, figure, gas_bundle, long_spans
 
 # --- nozzles ----------------------------------------------------------------------------------------------------------
@@ -213,3 +218,64 @@ def test_the_first_standing_wave_lies_half_a_wave_across_the_shell():
     solidity = np.pi / 4 / (np.sqrt(0.75) * (25.4 / 19.05) ** 2)
     assert figure(because["speed of sound"]) == pytest.approx(sound, rel=0.01)
     assert figure(because["acoustic frequency"]) == pytest.approx(sound / np.sqrt(1 + solidity) / (2 * 0.591), rel=0.01)
+
+
+# --- what the samples teach -------------------------------------------------------------------------------------------
+
+SAMPLES = Path(__file__).parents[1] / "sample_cases"
+
+
+def sample(name: str, where: str = "", **changes: Any) -> Look:
+    return Look(rating=rate(parse_case(changed(read_raw(SAMPLES / f"{name}.json"), **changes))), where=where)
+
+
+def outlets(at: Look, side: Side) -> dict[str, float]:
+    """Clean and fouled, in °C."""
+    return {name: state.T_out[side] - 273.15 for name, state in at.rating.states.items()}
+
+
+def test_cleaning_restores_the_crude():
+    at = sample("crude-preheat")
+    crude = outlets(at, "inside")
+    assert 191 - crude["fouled"] == pytest.approx(3, abs=0.5)
+    assert crude["clean"] - 191 == pytest.approx(4, abs=0.5)
+    assert at.finding("required-duty-missed").do.startswith("Cleaning restores the duty")
+    assert sample("crude-preheat", "outside").verdict("mechanical-cleaning").outcome == "clear"
+
+
+def test_sealing_strips_are_worth_three_kelvin_of_oil():
+    at, without = sample("lube-oil-cooler"), sample("lube-oil-cooler", exchanger__sealing_strip_pairs=0)
+    oil, bypassed = outlets(at, "outside")["fouled"], outlets(without, "outside")["fouled"]
+    assert bypassed - oil == pytest.approx(3, abs=0.5)
+    assert oil < 48 < bypassed
+    assert at.rating.fouled.resistances["outside film"] * at.rating.fouled.U_dirty > 0.8
+
+
+def test_two_shells_cross_where_one_cannot():
+    at = sample("two-shells-crossing")
+    T_out = at.rating.fouled.T_out
+    assert (T_out["inside"] - T_out["outside"]) * 1.8 == pytest.approx(32, abs=1)
+    assert abs(at.rating.fouled.F - 0.87) < 0.005
+    assert at.verdict("required-duty-missed").outcome == "clear"
+    for length in ("16 ft", "32 ft", "160 ft"):
+        one = sample("two-shells-crossing", exchanger__shells_in_series=1, exchanger__tube_length=length)
+        assert one.verdict("requirement-impossible").outcome == "found"
+
+
+def test_the_long_spans_meet_their_duty_and_shake():
+    at = sample("long-spans")
+    assert at.rating.fouled.margin > 0.1
+    assert figure(at.finding("unsupported-span").because["longest span"]) == pytest.approx(1700)
+    assert "both sets" in at.finding("tube-vibration").says
+    for code in ("bundle-entrance", "baffle-spacing", "window-velocity", "vortex-resonance"):
+        assert at.verdict(code).outcome == "found"
+
+
+def test_the_water_side_of_a_gas_cooler_hardly_shows():
+    at = sample("air-intercooler")
+    assert at.rating.fouled.resistances["outside film"] * at.rating.fouled.U_dirty == pytest.approx(0.87, abs=0.01)
+    air = outlets(at, "outside")["fouled"]
+    fouled = outlets(sample("air-intercooler", inside__R_fouling="0.0004 m2K/W"), "outside")["fouled"]
+    watered = outlets(sample("air-intercooler", inside__flow="92 m3/h"), "outside")["fouled"]
+    assert fouled - air == pytest.approx(1, abs=0.5)
+    assert 0 < air - watered < 2

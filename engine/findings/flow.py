@@ -196,15 +196,15 @@ def over_velocity_limit(s: Subject, side: Side) -> Iterator[Finding]:
 def unusual_velocity(s: Subject, side: Side) -> Iterator[Finding]:
     if s.phase(side) == "condensing":
         return
-    service = _service(s, side)
-    usual: Usual = standard_sizes.VELOCITIES[service]
+    usual_for = service(s, side)
+    usual: Usual = standard_sizes.VELOCITIES[usual_for]
     v = s.fouled.sides[side].velocity
     if usual.low <= v <= usual.high:
         return
     slow = v < usual.low
     yield s.finding(
         "watch",
-        says=f"The {s.name(side)} flows at {s.velocity(v)}; usual for {service} is "
+        says=f"The {s.name(side)} flows at {s.velocity(v)}; usual for {usual_for} is "
         f"{span(s.velocity, usual.low, usual.high)}.",
         because={"velocity": s.velocity(v), "usual": span(s.velocity, usual.low, usual.high)},
         do="Expect deposits and a poor film; fewer pipes or tubes in parallel or more flow help."
@@ -214,7 +214,7 @@ def unusual_velocity(s: Subject, side: Side) -> Iterator[Finding]:
     )
 
 
-def _service(s: Subject, side: Side) -> str:
+def service(s: Subject, side: Side) -> str:
     """Which row of the usual velocities applies: an annulus is a pipe, and only a shell is a shell."""
     if s.phase(side) == "gas":
         p = s.case.p_in(side)

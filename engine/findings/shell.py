@@ -11,10 +11,10 @@ from engine.correlations import Source
 from engine.correlations import across_bundle as shell
 from engine.exchangers import standard_sizes, vibration
 from engine.exchangers.shell_and_tube import CLEAR_COUNT, ShellAndTube
-from engine.exchangers.standard_sizes import BAFFLE_SPACING, RHO_V2_LIMITS, Metal
+from engine.exchangers.standard_sizes import BAFFLE_SPACING, RHO_V2_LIMITS, VELOCITIES, Metal
 from engine.exchangers.vibration import CONNORS_SETS, Ends
 from engine.findings import COMMON_PRACTICE, Finding, Missing, Subject, percent, rule
-from engine.findings.flow import speed_of_sound
+from engine.findings.flow import service, speed_of_sound
 from engine.findings.thermal import FIXED_HEADS, NEAR_CEILING
 from engine.findings.validity import OWN, capacities
 from engine.stated import Side
@@ -27,8 +27,8 @@ WINDOW_RATIO = (0.7, 1.4)
 """Velocity in the window over that across the bundle."""
 LOW_LEAKAGE, LOW_BYPASS = 0.6, 0.7
 """Jl and Jb; 0.7 to 0.8 and 0.7 to 0.9 are usual."""
-CLIFF = 0.9
-"""Of the largest effectiveness of the arrangement."""
+CLIFF, STEEP = 0.9, 0.01
+"""Of the largest effectiveness of the arrangement; fall of F at 1 % more duty."""
 AHMAD_1988 = Source(
     key="Ahmad-1988",
     text="Ahmad, S., Linnhoff, B., Smith, R., Design of multipass heat exchangers: an alternative approach, J. Heat "
@@ -367,23 +367,29 @@ def erosion_velocity(s: Subject) -> Iterator[Finding]:
 
 @rule(
     "allowance-unused",
-    title=f"A fouling side uses under {percent(UNUSED_DROP)} of its allowed drop",
+    title=f"A slow, fouling side uses under {percent(UNUSED_DROP)} of its allowed drop",
     grades=("watch",),
     needs="a rated case, and the side's allowed drop",
-    source=COMMON_PRACTICE,
+    source=f"{COMMON_PRACTICE}; {standard_sizes.SINNOTT_PRACTICE}",
     by_side=True,
 )
 def allowance_unused(s: Subject, side: Side) -> Iterator[Finding]:
     if _exchanger(s) is None or s.phase(side) != "liquid" or not s.case.stream(side).R_fouling:
         return
     allowed, at = float(s.stated(f"{side}.dp_allowed")), s.fouled.sides[side]
-    if at.dp < UNUSED_DROP * allowed:
+    least = VELOCITIES[service(s, side)].low
+    if at.dp < UNUSED_DROP * allowed and at.velocity < least:
         yield s.finding(
             "watch",
             where=f"{side}.dp_allowed",
-            says=f"The {s.name(side)}, stated to foul, uses {percent(at.dp / allowed)} of its allowed drop: a higher "
-            "velocity was affordable and would foul less.",
-            because={"drop": s.dp(at.dp), "allowed": s.dp(allowed), "velocity": s.velocity(at.velocity)},
+            says=f"The {s.name(side)} is stated to foul and flows at {s.velocity(at.velocity)}, but uses "
+            f"{percent(at.dp / allowed)} of its allowed drop: a higher velocity was affordable and would foul less.",
+            because={
+                "drop": s.dp(at.dp),
+                "allowed": s.dp(allowed),
+                "velocity": s.velocity(at.velocity),
+                "least usual": s.velocity(least),
+            },
             do="More flow, or more passes or closer baffles at the next re-tubing, use what the pump can give.",
         )
 
@@ -600,6 +606,8 @@ def near_cliff(s: Subject) -> Iterator[Finding]:
         force = exchanger.driving_force(T_in, T_out)
         assert not isinstance(force, str)
         F.append(float(force[1][0]))
+    if F[0] - F[1] <= STEEP:
+        return
     then = f"would take F from {F[0]:.3f} to {F[1]:.3f}" if F[1] > 0 else "is out of its reach"
     yield s.finding(
         "watch",
