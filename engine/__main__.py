@@ -151,9 +151,9 @@ def _prove_arguments(parser: argparse.ArgumentParser) -> None:
 
 
 def _prove(options: argparse.Namespace) -> int:
-    from engine.proofs import table
+    from engine.proofs import proof_table
 
-    lines = table()
+    lines = proof_table()
     if options.json == "-":
         _say(_as_json(lines))
     else:

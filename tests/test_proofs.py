@@ -7,14 +7,13 @@ from importlib import import_module
 from itertools import groupby
 from pathlib import Path
 from pkgutil import iter_modules
-from typing import get_args
 
 import pytest
 
 import engine.proofs
 from engine import correlations
 from engine.correlations import REGISTER
-from engine.proofs import PARTS, Kind, Proof, rows, table
+from engine.proofs import PARTS, PROOF_KINDS, Proof, proof_table, rows
 from engine.proofs.double_pipe import oil_cooler
 
 for module in iter_modules(correlations.__path__):
@@ -24,7 +23,6 @@ ROWS = rows()
 BY_SUBJECT = {
     subject: list(held) for subject, held in groupby(sorted(ROWS, key=lambda r: r.subject), lambda r: r.subject)
 }
-KINDS: tuple[str, ...] = get_args(Kind)
 
 
 @pytest.mark.parametrize("subject", BY_SUBJECT)
@@ -51,7 +49,7 @@ def test_every_module_of_rows_is_read():
 
 def test_every_row_says_what_it_is_worth():
     for row in ROWS:
-        assert row.kind in KINDS
+        assert row.kind in PROOF_KINDS
         assert row.source
         assert row.reason
         assert row.tolerance > 0
@@ -73,12 +71,12 @@ def test_a_row_that_is_off_does_not_hold():
 def test_there_are_values_of_each_kind(capsys):
     counts = Counter(row.kind for row in ROWS)
     with capsys.disabled():
-        print(f"\n{len(ROWS)} values: " + ", ".join(f"{counts[kind]} {kind}" for kind in KINDS))
-    assert all(counts[kind] > 20 for kind in KINDS)
+        print(f"\n{len(ROWS)} values: " + ", ".join(f"{counts[kind]} {kind}" for kind in PROOF_KINDS))
+    assert all(counts[kind] > 20 for kind in PROOF_KINDS)
 
 
 def test_the_table_holds_every_row_with_plain_values():
-    held = table()
+    held = proof_table()
     assert len(held) == len(ROWS)
     assert all(type(line["ours"]) is float and type(line["holds"]) is bool for line in held)
     assert all(line["holds"] for line in held)

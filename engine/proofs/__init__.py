@@ -4,13 +4,19 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from importlib import import_module
 from typing import Any, Literal
 
 Kind = Literal["printed", "derived", "independent", "from memory"]
-
+PROOF_KINDS: Mapping[Kind, str] = {
+    "printed": "The value stands in a publication that was at hand.",
+    "derived": "The value was solved a second way, such as from the differential equations, in code of its own.",
+    "independent": "The value comes from a library that shares no code with this program.",
+    "from memory": "The value is known from a publication that was not at hand, so it may be misremembered.",
+}
+"""What a value of each kind is worth."""
 
 PARTS = (
     "inside_tubes",
@@ -23,6 +29,8 @@ PARTS = (
     "fluids",
     "effectiveness",
     "double_pipe",
+    "shell_and_tube",
+    "refinement",
 )
 """The modules that hold the rows, each in its `ROWS`; imported when rows are asked for."""
 
@@ -60,7 +68,7 @@ def rows() -> tuple[Proof, ...]:
     return tuple(row for part in PARTS for row in import_module(f"engine.proofs.{part}").ROWS)
 
 
-def table() -> list[dict[str, Any]]:
+def proof_table() -> list[dict[str, Any]]:
     """Every row computed, as plain values: what it is, theirs, ours, how far off, how far is allowed and why."""
     found = []
     for row in rows():

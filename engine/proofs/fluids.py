@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
 from functools import cache, partial
 
+import numpy as np
+from scipy.integrate import quad
 from scipy.optimize import brentq
 
-from engine.fluids import Pure, Solution, Table, TablePoint, fluid_at, saturation
+from engine.fluids import PROPERTIES, Interpolated, Pure, Solution, Table, TablePoint, fluid_at, saturation
 from engine.proofs import Kind, Proof
 
 WATER = Pure("water")
@@ -405,3 +408,59 @@ ROWS: tuple[Proof, ...] = (
         for name in ("rho", "cp", "mu", "k")
     ),
 )
+
+# --- the program against itself ---------------------------------------------------------------------------------------
+
+
+@dataclass(frozen=True, kw_only=True)
+class PropertyCheck:
+    """A largest relative difference between two ways of this program to the same property."""
+
+    fluid: str
+    what: str
+    found: float
+    allowed: float
+
+    @property
+    def holds(self) -> bool:
+        return self.found <= self.allowed
+
+
+CHECKED = (
+    (WATER, 4e5, 290.0, 350.0),
+    (Pure("toluene"), 4e5, 290.0, 370.0),
+    (Solution("ethylene glycol", 0.3), 4e5, 275.0, 350.0),
+    (AIR, 4e5, 280.0, 400.0),
+    (ENGINE_OIL, 4e5, 293.15, 353.15),
+)
+"""(fluid, pressure, lowest and highest temperature)"""
+PLACES = np.linspace(0.0137, 0.9863, 97)
+"""Shares of a span at which it is looked at; none of them a node of an interpolant."""
+
+
+def property_checks() -> tuple[PropertyCheck, ...]:
+    """Fluids as a rating uses them: interpolant, window over a rating's span, enthalpy against the integral of cp."""
+    return tuple(_property_checks())
+
+
+def _property_checks() -> Iterator[PropertyCheck]:
+    for specification, p, low, high in CHECKED:
+        fluid = fluid_at(specification, p, low)
+        T = low + (high - low) * PLACES
+        if isinstance(fluid, Interpolated):
+            worst = max(piece.error for piece in fluid.pieces if piece.low < high and piece.high > low)
+            yield PropertyCheck(
+                fluid=fluid.name, what="interpolant against the property library", found=worst, allowed=1e-6
+            )
+        window = fluid.within(low, high)
+        if window is not fluid:
+            pairs = zip(fluid.values(T, *PROPERTIES), window.values(T, *PROPERTIES), strict=True)
+            off = max(float(np.abs(b / a - 1).max()) for a, b in pairs)
+            yield PropertyCheck(
+                fluid=fluid.name, what="window of a rating against the interpolant", found=off, allowed=1e-6
+            )
+        heat, _ = quad(lambda T, fluid=fluid: float(fluid.values(T, "cp")[0]), low, high, epsrel=1e-10)
+        rise = float(np.diff(fluid.enthalpy([low, high]))[0])
+        yield PropertyCheck(
+            fluid=fluid.name, what="enthalpy against the integral of cp", found=abs(rise / heat - 1), allowed=1e-8
+        )
