@@ -196,6 +196,7 @@ class Equation:
             line=found,
             tolerance=tolerance,
             rounding=strict,
+            rounding_with_zeros=wide,
             fields=known,
         )
 
@@ -240,6 +241,9 @@ class Checked:
     remark: Remark = Remark()
     tolerance: float = 0.0
     rounding: float = 0.0
+    """What the rounding of the figures adds to the tolerance."""
+    rounding_with_zeros: float = 0.0
+    """The same where trailing zeros may be rounding too."""
     fields: tuple[str, ...] = ()
     """Paths of the figures that took part."""
     missing: str = ""

@@ -196,10 +196,11 @@ def _of_case(case: Case) -> Iterable[tuple[str, Any]]:
 # --- rounding ---------------------------------------------------------------------------------------------------------
 
 RESULTS = frozenset(
-    ("duty", "area", "area_per_shell", "lmtd", "mtd", "U_service", "U_dirty", "U_clean", "h", "dp", "velocity",
-     "weight_bundle", "weight_empty", "weight_full", "nozzle_rho_v2", "bundle_rho_v2")
+    ("duty", "area", "area_per_shell", "lmtd", "mtd", "U_service", "U_dirty", "U_clean", "h", "dp", "velocity", "p_out",
+     "weight_bundle", "weight_empty", "weight_full", "nozzle_rho_v2", "bundle_rho_v2", "latent_heat",
+     *(f"{name}{end}" for name in FLUID_PROPERTIES for end in ("", "_in", "_out")))
 )  # fmt: skip
-"""Figures that somebody computed and rounded; the others were prescribed."""
+"""Figures that somebody computed or looked up and rounded; the others were prescribed."""
 
 
 def half_width(path: str, value: Any) -> tuple[float, float]:
@@ -211,11 +212,11 @@ def half_width(path: str, value: Any) -> tuple[float, float]:
     if not isinstance(value, Figure):
         return 0.0, 0.0
     spread = 2 * (value.sd or 0.0)
-    if not value.digit:
+    if not value.digit or not value:  # the digit of a plain 0 says nothing
         return spread, spread
     strict = max(value.digit / 2, spread)
     number = re.match(r"[\d ]+(?![\d.,])", value.text)
-    if value.quantity == "temperature" or number is None or not value:
+    if value.quantity == "temperature" or number is None:
         return strict, strict
     digits = str(round(abs(value) / value.digit))
     zeros = len(digits) - len(digits.rstrip("0"))

@@ -38,10 +38,10 @@ class _Closure:
     def fails(self) -> bool:
         return self.ended.outcome == "found"
 
-    def miss(self, changed: Mapping[str, float]) -> float:
+    def miss(self, changed: Mapping[str, float], *, as_slip: bool = False) -> float:
         """The misfit in tolerances with some figures changed; infinite where it cannot be computed.
 
-        The share of rounding in the tolerance goes with the size of the figures.
+        The share of rounding goes with the size of the figures. A slip must close better than a wide allowance asks.
         """
         try:
             found = self.equation.reread(changed)
@@ -49,14 +49,21 @@ class _Closure:
             return math.inf
         if not isinstance(found, Line):
             return 2.0 if found.says else 0.0
-        line = self.ended.line
-        tolerance = self.equation.allowance(found)
-        if line is not None:
-            size = max(abs(line.sheet), abs(line.recomputed))
-            new = max(abs(found.sheet), abs(found.recomputed))
-            scale = new / size if size and line.quantity != "temperature" else 1.0
-            tolerance = max(tolerance, 1e-9 * new) + self.ended.rounding * scale
+        before, size = self.ended.line, _size(found)
+        rounding = 0.0
+        if before is not None:
+            rounding = self.ended.rounding_with_zeros if as_slip else self.ended.rounding
+            if found.quantity != "temperature" and _size(before):
+                rounding *= size / _size(before)
+        allowance = self.equation.allowance(found)
+        if as_slip:
+            allowance = max(MATCH * size, allowance / 2)
+        tolerance = max(allowance + rounding, 1e-9 * size)
         return abs(found.misfit) / tolerance if tolerance else (0.0 if not found.misfit else math.inf)
+
+
+def _size(line: Line) -> float:
+    return max(abs(line.sheet), abs(line.recomputed))
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -84,8 +91,10 @@ def repairs_of(subject: Subject, ended: Iterable[Checked]) -> Found:
         for c in ended
         if c.outcome != "not possible"
     ]
-    failed = [c for c in closures if c.fails and _counts(c)]
-    if not any(c.ended.check.closes and c.ended.grade != "note" for c in failed):
+    failed = [c for c in closures if c.fails and c.ended.grade != "note"]
+    if not any(c.ended.check.closes for c in failed):
+        failed = [c for c in closures if c.fails and c.ended.line is not None]
+    if not any(c.ended.check.closes for c in failed):
         return Found()
     search = _Search(subject, closures, {})
     singles = search.ranked(failed)
@@ -101,11 +110,6 @@ def repairs_of(subject: Subject, ended: Iterable[Checked]) -> Found:
         repairs=tuple(trial.as_repair(subject, len(failed)) for trial in singles),
         pairs=tuple(pairs),
     )
-
-
-def _counts(c: _Closure) -> bool:
-    """Whether a failure counts: every one but notes about what is not stated."""
-    return c.ended.line is not None or c.ended.grade != "note"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -158,7 +162,7 @@ class _Search:
         """The best trial of each field that takes part in a failure that closes, those that gain first."""
         found = []
         for path in self._fields(failed):
-            trials = [self._trial(path, to, failed, slip) for to, slip in self._values(path, failed)]
+            trials = [self._trial(path, to, failed, slip) for to, slip in self._values(path)]
             if trials:
                 best = min(trials, key=lambda trial: trial.order)
                 if best.net > 0:
@@ -168,7 +172,7 @@ class _Search:
     def slips(self, failed: Sequence[_Closure]) -> Iterator[_Trial]:
         """The first slip of each field that a root of its failures matches and that gains most."""
         for path in self._fields(failed):
-            trials = [self._trial(path, to, failed, slip) for to, slip in self._values(path, failed) if slip]
+            trials = [self._trial(path, to, failed, slip) for to, slip in self._values(path) if slip]
             if trials:
                 most = max(trial.net for trial in trials)
                 yield next(trial for trial in trials if trial.net == most)
@@ -181,28 +185,24 @@ class _Search:
             if path in entering and path not in self.changed and not isinstance(self.subject.sheet_values[path], str)
         ]
 
-    def _values(self, path: str, failed: Sequence[_Closure]) -> Iterator[tuple[float, Candidate | None]]:
-        """Values worth trying: where a failure closes, and the slips near one of those."""
+    def _values(self, path: str) -> Iterator[tuple[float, Candidate | None]]:
+        """Values worth trying: where a failure closes, and without a slip that would explain one."""
         if path in FEW:
             yield from ((float(n), None) for n in SMALL_COUNTS if n != self.subject.sheet_values[path])
             return
-        roots = []
-        for c in failed:
-            if c.ended.check.closes and path in c.fields and c.ended.line is not None:
-                root = self._root(c, path)
-                if root is not None:
-                    roots.append(root)
-        whole = not isinstance(self.subject.sheet_values[path], Figure)
+        failed = [
+            c
+            for c in self.closures
+            if c.fails and c.ended.check.closes and path in c.fields and c.ended.line is not None
+        ]
         for slip in candidates(self.subject, path):
-            if any(self._matches(slip, root, width) for root, width in roots):
+            if any(c.miss({**self.changed, path: slip.to}, as_slip=True) <= 1.0 for c in failed):
                 yield slip.to, slip
-        for root, _ in roots:
-            yield (float(round(root)) if whole else root), None
-
-    def _matches(self, slip: Candidate, root: float, width: float) -> bool:
-        if slip.factor == 1.0:
-            return abs(slip.to - root) <= MATCH * abs(slip.to - root) + width + 0.5
-        return root > 0 and slip.to > 0 and abs(math.log(slip.to / root)) <= MATCH + width / root
+        whole = not isinstance(self.subject.sheet_values[path], Figure)
+        for c in failed:
+            root = self._root(c, path)
+            if root is not None:
+                yield (float(round(root)) if whole else root), None
 
     def _trial(self, path: str, to: float, failed: Sequence[_Closure], slip: Candidate | None) -> _Trial:
         """What a value does to the checks that the field enters; a note that remains counts as not cleared."""
@@ -224,43 +224,37 @@ class _Search:
                 breaks += 1
         return _Trial(field=path, to=to, clears=clears, breaks=breaks, left=left, slip=slip)
 
-    def _root(self, c: _Closure, path: str) -> tuple[float, float] | None:
-        """The value of a field at which a failed check closes, and how far rounding may shift it; None without one."""
-        start = float(self.subject.sheet_values[path])
+    def _root(self, c: _Closure, path: str) -> float | None:
+        """The value of a field at which a failed check closes; None without one."""
         value = self.subject.sheet_values[path]
-        additive = isinstance(value, Figure) and (value.quantity == "temperature" or value.quantity in PRESSURES)
-        if not additive and start <= 0:
+        start = float(value)
+        quantity = value.quantity if isinstance(value, Figure) else ""
+        steps = ADDITIVE.get(quantity) if start or quantity != "fouling_resistance" else (1e-5, 1e-2)
+        if steps is None and start <= 0:
             return None
 
         def at(u: float) -> float:
-            return start + u if additive else start * math.exp(u)
+            return start + u if steps else start * math.exp(u)
 
         def misfit(u: float) -> float:
             try:
                 found = c.equation.reread({**self.changed, path: at(u)})
-            except (Missing, OverflowError):
+            except Missing:
                 return math.nan
             return found.misfit if isinstance(found, Line) else math.nan
 
-        step = 1.0 if additive else 0.01
-        limit = 400.0 if additive else math.log(LOOKED)
-        if additive and isinstance(value, Figure) and value.quantity in PRESSURES:
-            step, limit = 1e3, 1e7
-        u = _solved(misfit, step, limit, self._scale(c))
-        if u is None:
-            return None
-        x = at(u)
-        nearby = at(u + 1e-3 * step)
-        slope = (misfit(u + 1e-3 * step) - misfit(u)) / (nearby - x) if nearby != x else 0.0
-        width = abs(c.ended.rounding / slope) if slope and math.isfinite(slope) else 0.0
-        return x, width
-
-    @staticmethod
-    def _scale(c: _Closure) -> float:
-        return c.ended.tolerance or 1e-12
+        step, limit = steps or (0.01, math.log(LOOKED))
+        u = _solved(misfit, step, limit, c.ended.tolerance or 1e-12)
+        return None if u is None else at(u)
 
 
-PRESSURES = ("pressure_absolute", "pressure_gauge")
+ADDITIVE = {
+    "temperature": (1.0, 400.0),
+    "pressure_absolute": (1e3, 1e7),
+    "pressure_gauge": (1e3, 1e7),
+    "fraction": (0.01, 5.0),
+}
+"""Quantities that are off by a difference rather than by a factor: first step and limit of a search."""
 
 
 def _solved(misfit: Callable[[float], float], step: float, limit: float, tolerance: float) -> float | None:

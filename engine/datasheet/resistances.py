@@ -29,6 +29,8 @@ CLEANLINESS = (0.75, 0.90)
 FOULING_USUAL = (1e-4, 1e-3)
 DOMINATES = 0.5
 OWN_FILMS = 2.0
+COPIED = 1.03
+"""By how much more U the films would give than is printed, for a copied figure to be told."""
 TUBE_FILM, TRANSITIONAL_FILM, SHELL_FILM = 0.15, 0.30, 0.25
 
 
@@ -97,7 +99,7 @@ def excess(v: Figures, where: str) -> Line | Remark:
         return Line(
             sheet=1 + float(v["excess_area"]), recomputed=ratio, quantity="dimensionless", of="excess_area", share=0.02
         )
-    if U_dirty == U_service and "U_clean" in v:
+    if U_dirty == U_service and 1 / (1 / float(v["U_clean"]) + fouling(v)) > COPIED * U_dirty:
         return Remark(
             says="Dirty and service transfer rate are the same to the last digit: one seems to be copied.",
             ask="Is the dirty transfer rate computed from films and fouling, or is it duty over surface and mean "

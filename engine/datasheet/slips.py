@@ -83,9 +83,8 @@ def candidates(subject: Subject, path: str) -> Iterator[Candidate]:
         return
     if quantity in ("pressure_absolute", "pressure_gauge"):
         atmosphere = units.from_unit(1.0, "pressure_difference", "atm")
-        gauge = quantity == "pressure_gauge"
-        words = "an absolute pressure printed as gauge" if gauge else "a gauge pressure printed as absolute"
-        yield Candidate(name=words, factor=1.0, to=x - atmosphere if gauge else x + atmosphere)
+        yield Candidate(name="an absolute pressure taken for a gauge one", factor=1.0, to=x - atmosphere)
+        yield Candidate(name="a gauge pressure taken for an absolute one", factor=1.0, to=x + atmosphere)
     if quantity == "temperature_difference":
         to = x - units.from_unit(32.0, "temperature_difference", "°F")
         if to > 0:
