@@ -329,16 +329,22 @@ class _Step:
     films: Mapping[Side, Film]
     r: Mapping[str, Array]
     found: march.Temperatures
-    mean: Mapping[Side, Array]
-    """Of a condensing side, alike in all cells: where its chest would settle with these films."""
     surface: Mapping[Side, Array]
     lossy: NDArray[np.bool_]
     condensed: Condensed | None
 
+    settles: tuple[Array, Array] | None
+    """(P,) inlet of the cold fluid, and by how much all differences to it are smaller or larger where the chest would
+    settle with these films; None where nothing condenses."""
+
     def guess(self) -> Array:
-        return np.stack(
-            [self.mean["inside"], self.mean["outside"], self.surface["inside"], self.surface["outside"]], axis=1
+        new = np.stack(
+            [self.found.inside_mean, self.found.outside_mean, self.surface["inside"], self.surface["outside"]], axis=1
         )
+        if self.settles is None:
+            return new
+        T_cold, ratio = (x[:, None, None] for x in self.settles)
+        return np.asarray(T_cold + ratio * (new - T_cold))
 
 
 def _step(on: _Setting, points: Points, guess: Array, settled: _Settled, heat: Array) -> _Step:
@@ -387,26 +393,25 @@ def _step(on: _Setting, points: Points, guess: Array, settled: _Settled, heat: A
         T_in["inside"],
         T_in["outside"],
     )
-    mean: dict[Side, Array] = {"inside": found.inside_mean, "outside": found.outside_mean}
     flux = U * (found.inside_mean - found.outside_mean)
     surface: dict[Side, Array] = {
         "inside": found.inside_mean - flux * r["inside film"],
         "outside": found.outside_mean + flux * r["outside film"],
     }
+    settles = None
     if condensed is not None:
-        side = condensed.steam.side
-        T = _chest(points, condensed, T_in[opposite(side)], np.abs(found.heat.sum(axis=1)))
-        mean[side] = np.broadcast_to(T[:, None], U.shape)
+        T_cold = T_in[opposite(condensed.steam.side)]
+        settles = T_cold, _settling(points, condensed, T_cold, np.abs(found.heat.sum(axis=1)))
     return _Step(
         settled=settled,
         flowing=flowing,
         films=films,
         r=r,
         found=found,
-        mean=mean,
         surface=surface,
         lossy=lossy,
         condensed=condensed,
+        settles=settles,
     )
 
 
@@ -449,15 +454,14 @@ def _flooded(
     )
 
 
-def _chest(points: Points, condensed: Condensed, T_cold: Array, passed: Array) -> Array:
-    """Saturation temperature at which the chest settles when `passed` [W] by the condensing area follows its difference
-    to the cold fluid: as supplied, or where the steam that comes is all condensed."""
+def _settling(points: Points, condensed: Condensed, T_cold: Array, passed: Array) -> Array:
+    """By how much the difference of chest to cold inlet changes so that the steam that comes is all condensed; 1 where
+    the chest stands as supplied. `passed` [W] is what the condensing area passes now; it follows that difference."""
     steam, T_supply = condensed.steam, points.T_in[condensed.steam.side]
-    heat = steam.heat(T_supply, condensed.T_sat)
-    most = np.minimum(points.flow[steam.side] * heat - steam.loss, points.duty_most)
+    most = np.minimum(points.flow[steam.side] * steam.heat(T_supply, condensed.T_sat) - steam.loss, points.duty_most)
     if condensed.flooded is not None:
         most = most * passed / (passed + condensed.flooded.heat)
-    return np.minimum(T_supply, T_cold + most * (condensed.T_sat - T_cold) / passed)
+    return np.minimum((T_supply - T_cold) / (condensed.T_sat - T_cold), most / passed)
 
 
 def _settle(on: _Setting, step: _Step, *, roughly: bool) -> _Settled:

@@ -10,7 +10,7 @@ there it cools in counterflow, by the greater of free convection and the film of
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from functools import cached_property
 
 import numpy as np
@@ -29,8 +29,8 @@ LEAST_DT = 1e-3
 """From saturation to the surface [K]: below it a film is so good that its resistance is of no account."""
 MOST_FLOODED = 0.9
 """Of the area."""
-ROUNDS = 3
-"""For the surface under condensate, whose film hardly depends on it."""
+ROUNDS = 2
+"""For the surface under condensate, on which free convection depends weakly."""
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -140,14 +140,13 @@ class Steam:
         ends = (T_sat - T_cold - rise, T_sat - self.subcooling - T_cold)
         mtd = log_mean(*(np.maximum(end, 1e-6) for end in ends))
         T, T_other = at.T[:, 0], T_cold + 0.5 * rise
+        forced, surface = self.single_phase(cells, at), at.T_wall[:, 0]
         name = f"{self.side} film"
         ratio = self.case.exchanger.area_ratio if self.side == "inside" else 1.0
         r = dict(r)
         for _ in range(ROUNDS):
-            forced = self.single_phase(cells, at)
-            r[name] = ratio / np.maximum(forced, self._free(T, at.T_wall[:, 0]))
+            r[name] = ratio / np.maximum(forced, self._free(T, surface))
             surface = T - (T - T_other) * r[name] / sum(r.values())
-            at = replace(at, T_wall=surface[:, None])
         share = heat * sum(r.values()) / (area * mtd)
         return Flooded(share=np.minimum(share, MOST_FLOODED), heat=heat, r=r, mtd=mtd, rise=rise)
 
