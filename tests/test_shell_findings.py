@@ -9,6 +9,7 @@ import numpy as np
 import pytest
 
 from engine.casefile import parse_case, read_raw
+from engine.exchangers.tube_field import tube_field
 from engine.rating import rate
 from engine.stated import Side
 from tests.cases import changed
@@ -70,6 +71,13 @@ def test_u_tubes_counted_once_are_found():
     finding = bundle(exchanger__tema="BEU", exchanger__tubes=160).finding("tube-count")
     assert "two for each" in finding.do
     assert bundle(exchanger__tema="BEU", exchanger__tubes=320).verdict("tube-count").outcome == "clear"
+
+
+def test_tubes_without_a_place_are_counted_as_in_the_drawing():
+    at = bundle(exchanger__tema="AET", exchanger__tube_passes=4, exchanger__tubes=330)
+    places = tube_field(at.rating.case.exchanger).capacity
+    assert places < 0.95 * 330
+    assert f"places for {places} of the 330 tubes" in at.finding("tube-count").says
 
 
 def test_all_spacings_that_are_too_close_stand_in_one_finding():

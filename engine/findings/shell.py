@@ -12,6 +12,7 @@ from engine.correlations import across_bundle as shell
 from engine.exchangers import standard_sizes, vibration
 from engine.exchangers.shell_and_tube import CLEAR_COUNT, ShellAndTube
 from engine.exchangers.standard_sizes import BAFFLE_SPACING, RHO_V2_LIMITS, VELOCITIES, Metal
+from engine.exchangers.tube_field import tube_field
 from engine.exchangers.vibration import CONNORS_SETS, Ends
 from engine.findings import COMMON_PRACTICE, Finding, Missing, Subject, percent, rule
 from engine.findings.flow import service, speed_of_sound
@@ -19,8 +20,8 @@ from engine.findings.thermal import FIXED_HEADS, NEAR_CEILING
 from engine.findings.validity import OWN, capacities
 from engine.stated import Side
 
-EMPTY_COUNT = 0.75
-"""Of the least published tube count, below which a bundle does not fill its shell."""
+SHORT_OF_PLACES, EMPTY_COUNT = 0.05, 0.75
+"""Of the tubes, without a place in the layout; of the least published count, below which a shell is not filled."""
 LEAST_SPACING = 0.051
 """Between baffles [m]; TEMA, RCB-4.51."""
 WINDOW_RATIO = (0.7, 1.4)
@@ -111,6 +112,15 @@ def tube_count(s: Subject) -> Iterator[Finding]:
             because=because,
             do="Compare tubes, pitch, bore and passes with the drawing; the area and both velocities hang on them.",
             source=source,
+        )
+    elif (places := tube_field(exchanger).capacity) < (1 - SHORT_OF_PLACES) * tubes:
+        yield s.finding(
+            "watch",
+            where="exchanger.tubes",
+            says=f"A layout of the stated figures has places for {places} of the {tubes} tubes.",
+            because={**because, "places": str(places), "bundle diameter": _length(s, exchanger.outer_tube_limit)},
+            do="Compare tubes, pitch, layout angle, pass lanes and bundle diameter with the drawing.",
+            source="places a pitch apart within the outer tube limit, lanes of the pass partitions left free",
         )
     elif tubes < EMPTY_COUNT * usual.low and exchanger.bundle_diameter is None:
         legs = " U-tubes are counted by their legs, two for each." if exchanger.u_tubes else ""
@@ -290,7 +300,7 @@ def bundle_entrance(s: Subject) -> Iterator[Finding]:
         free = np.pi * bore * (exchanger.shell_id - exchanger.outer_tube_limit) / 2
         free += np.pi / 4 * bore**2 * gaps / shell.tube_layout(exchanger.angle).gap
         places[f"ρv² from nozzle to bundle, {end}"] = through_nozzle * float(np.pi / 4 * bore**2 / free) ** 2
-        if exchanger.shell_letter != "X":
+        if exchanger.shell_letter != "X" and s.phase("outside") != "condensing":
             rho, v = _across(s)
             at = s.fouled.sides["outside"]
             rho_end = (at.properties_in if end == "inlet" else at.properties_out)["rho"]
@@ -646,7 +656,8 @@ def _across(s: Subject) -> tuple[float, float]:
 def _mass(s: Subject, exchanger: ShellAndTube, metal: Metal, rho_outside: float) -> float:
     """Of a tube with its content and the fluid that it moves [kg/m]."""
     at = s.fouled.sides["inside"]
-    rho_inside = (at.properties_in["rho"] + at.properties_out["rho"]) / 2
+    ends = [at.properties_in["rho"], at.properties_out["rho"]]
+    rho_inside = min(ends) if s.phase("inside") == "condensing" else sum(ends) / 2
     od, C_m = float(exchanger.tube_od), _added_mass(exchanger)
     return float(vibration.mass_per_length(od, exchanger.tube_id, metal.density, rho_inside, rho_outside, C_m))
 

@@ -97,11 +97,14 @@ class ShellScheme:
 
 @dataclass(frozen=True, kw_only=True)
 class Bundle:
-    """The cross-section of a bundle to scale; `legend` tells the figures that it was drawn from."""
+    """The cross-section of a bundle to scale, and what to know of it, line by line."""
 
     field: TubeField
     legend: tuple[str, ...]
-    alt: str
+
+    @property
+    def alt(self) -> str:
+        return f"{'. '.join(self.legend)}."
 
 
 Figure = Chart | DoublePipeScheme | ShellScheme | Bundle

@@ -75,39 +75,23 @@ def stated_bundle(given: Mapping[str, Any], system: str = "si") -> Bundle | None
 
 def bundle(exchanger: ShellAndTube, words: Words) -> Bundle:
     """The cross-section of one shell, in figures of a system of units."""
-    field = tube_field(exchanger)
+    field, passes, pairs = tube_field(exchanger), exchanger.tube_passes, exchanger.sealing_strip_pairs
     bore, od, pitch = (words.typed(value) for value in (exchanger.shell_id, exchanger.tube_od, exchanger.tube_pitch))
-    limit = words.show(2 * field.bundle_radius, "length")
-    passes = _counted(exchanger.tube_passes, "pass", "passes")
-    tubes = f"{exchanger.tubes} tubes of {od} at {exchanger.layout_angle}, pitch {pitch}"
-    short = field.capacity < field.tubes
-    room = (
-        f"only {field.capacity} of {field.tubes} tubes find a place"
-        if short
-        else f"places for {field.capacity}, tie rods and impingement plates not counted"
-    )
-    cut = "no baffles" if exchanger.shell_letter == "X" else "baffle cut not stated"
-    if field.cut_y is not None:
-        cut = f"baffle cut {words.typed(exchanger.baffle_cut)}"
-    pairs = exchanger.sealing_strip_pairs
-    strips = _counted(pairs, "pair of sealing strips", "pairs of sealing strips") if pairs else "no sealing strips"
     legend = [
-        f"shell bore {bore}",
-        f"outer tube limit {limit}",
-        tubes,
-        passes + ", the even ones grey" * (exchanger.tube_passes > 1),
-        room,
-        cut,
+        "Cross-section of one shell, to scale; the shell-side fluid crosses it upright",
+        f"Shell bore {bore}, outer tube limit {words.show(2 * field.bundle_radius, 'length')}",
+        f"{exchanger.tubes} tubes of {od} at {exchanger.layout_angle}, pitch {pitch}",
+        _counted(passes, "tube pass", "tube passes") + ", the even ones grey" * (passes > 1),
+        f"Only {field.capacity} of {field.tubes} tubes find a place: check bore, pitch, layout and count"
+        if field.capacity < field.tubes
+        else f"Places for {field.capacity}, tie rods and impingement plates not counted",
     ]
     if field.cut_y is not None:
-        legend.append("full and broken line: edges of the baffles, in turn")
-    return Bundle(
-        field=field,
-        legend=(*map(capital, legend), capital(strips)),
-        alt=f"Cross-section of one shell to scale, flow across the bundle upright: bore {bore}, outer tube limit "
-        f"{limit}; {tubes}, in {passes}; {room}. {capital(cut)}, {strips}. Laid out from the stated figures, not "
-        f"from the drawing of what was built.{' Check bore, pitch, layout and count.' if short else ''}",
-    )
+        legend.append(f"Baffle cut {words.typed(exchanger.baffle_cut)}; full and broken line: their edges, in turn")
+    if pairs:
+        legend.append(_counted(pairs, "pair of sealing strips", "pairs of sealing strips"))
+    legend.append("Laid out from the stated figures, not from the drawing of what was built")
+    return Bundle(field=field, legend=tuple(legend))
 
 
 def _counted(n: int, one: str, many: str) -> str:

@@ -20,7 +20,7 @@ from reportlab.platypus import Table as Grid
 from engine import __version__
 from engine.findings import Verdict
 from engine.rating import Rating
-from engine.report.blocks import Block, Section, Table
+from engine.report.blocks import Block, Bundle, Section, Table
 from engine.report.drawings import BOLD, HAIR, INK, PALE, REGULAR, drawn, fitted
 from engine.report.sections import sections
 from engine.uncertainty import Intervals
@@ -148,6 +148,8 @@ def _block(block: Block) -> list[Flowable]:
     if isinstance(block, Table):
         title = [Paragraph(_markup(block.title), TABLE_TITLE)] if block.title else []
         return [*title, _grid(block), Spacer(0, 4)]
+    if isinstance(block, Bundle):  # its legend is drawn beside it
+        return [drawn(block, WIDTH), Spacer(0, 4)]
     return [drawn(block, WIDTH), Paragraph(_markup(block.alt), CAPTION)]
 
 
