@@ -6,10 +6,12 @@ Dashes, markers and hatches tell apart what colours tell apart; every colour is 
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
 import plotly.graph_objects as go
+from plotly.subplots import make_subplots
 
 HOT, COLD, WALL = "#d1603d", "#3d8fc4", "#8b9196"
 PALETTE = (HOT, WALL, "#a9afb3", COLD)
@@ -191,4 +193,106 @@ def bundle(data: Any) -> go.Figure:
     figure.update_traces(hoverinfo="skip", showlegend=False)
     frame = {**_frame(270), "margin": dict.fromkeys("lrtb", 2)}
     figure.update_layout(xaxis=hidden, yaxis={**hidden, "scaleanchor": "x"}, **frame)
+    return figure
+
+
+@dataclass(frozen=True)
+class Swept:
+    """One line of a sweep, and how it is told from the others."""
+
+    name: str
+    y: Sequence[float]
+    colour: str
+    dash: str = "solid"
+
+
+@dataclass(frozen=True)
+class Panel:
+    """Lines of one quantity over a sweep, and the limits that they must keep: name, value and colour."""
+
+    label: str
+    lines: Sequence[Swept]
+    limits: Sequence[tuple[str, float, str]]
+
+
+def sweep(
+    x: Sequence[float],
+    label: str,
+    panels: Sequence[Panel],
+    marks: Mapping[str, float],
+    passed: Sequence[tuple[float, float]],
+) -> go.Figure:
+    """Panels over one input: dotted lines are limits, upright ones are named values, and grey is where a limit is
+    passed."""
+    figure = make_subplots(rows=len(panels), cols=1, shared_xaxes=True, vertical_spacing=0.06)
+    named: set[str] = set()
+    for row, panel in enumerate(panels, 1):
+        at = {"row": row, "col": 1}
+        for line in panel.lines:
+            figure.add_scatter(
+                x=list(x),
+                y=list(line.y),
+                name=line.name,
+                mode="lines",
+                line={"color": line.colour, "width": 2.2, "dash": line.dash},
+                showlegend=line.name not in named,
+                hovertemplate="%{y:.4g}",
+                **at,
+            )
+            named.add(line.name)
+        for i, value in enumerate(sorted({value for _, value, _ in panel.limits})):
+            here = [(name, colour) for name, at_value, colour in panel.limits if at_value == value]
+            figure.add_hline(
+                y=value,
+                line={"color": here[0][1] if len(here) == 1 else WALL, "width": 1.6, "dash": "dot"},
+                annotation={"text": "; ".join(name for name, _ in here), "font": {"size": 11}},
+                annotation_position=("top left", "top right")[i % 2],
+                **at,
+            )
+        figure.update_yaxes(title_text=panel.label, **at)
+    for start, end in passed:
+        figure.add_vrect(x0=start, x1=end, fillcolor=GROUND, line_width=0, layer="below")
+    for i, (name, value) in enumerate(marks.items()):
+        figure.add_vline(x=value, line={"color": WALL, "width": 1.4, "dash": "dash" if i else "solid"})
+        figure.add_annotation(
+            x=value, y=1, yref="paper", yanchor="bottom", yshift=14 * i, text=name, showarrow=False, font={"size": 12}
+        )
+    figure.update_xaxes(title_text=label, row=len(panels), col=1)
+    figure.update_layout(hovermode="x unified", **_frame(120 + 190 * len(panels)))
+    figure.update_layout(legend={"y": -58 / (190 * len(panels)), "yanchor": "top"}, margin={"t": 14 * len(marks) + 8})
+    return figure
+
+
+def ranges(
+    names: Sequence[str], ours: Sequence[tuple[float, float, float]], band: tuple[float, float], said: str, unit: str
+) -> go.Figure:
+    """Figures with their intervals, one line each, over a band in which they should lie."""
+    low, at, high = (list(values) for values in zip(*ours, strict=True))
+    figure = go.Figure(
+        go.Scatter(
+            x=at,
+            y=list(names),
+            mode="markers",
+            marker={"color": HOT, "size": 11, "symbol": "diamond"},
+            error_x={
+                "type": "data",
+                "symmetric": False,
+                "array": [end - x for end, x in zip(high, at, strict=True)],
+                "arrayminus": [x - end for end, x in zip(low, at, strict=True)],
+                "color": WALL,
+                "thickness": 2,
+                "width": 9,
+            },
+            hovertemplate=f"%{{y}}: %{{x:.4g}} {unit}<extra></extra>",
+        )
+    )
+    figure.add_vrect(x0=band[0], x1=band[1], fillcolor=COLD, opacity=0.3, line={"color": COLD, "width": 1})
+    figure.add_annotation(
+        x=sum(band) / 2, y=1, yref="paper", yanchor="bottom", text=said, showarrow=False, font={"size": 12}
+    )
+    figure.update_layout(
+        xaxis={"title": unit, "zeroline": False},
+        yaxis={"autorange": "reversed", "range": [-0.6, len(names) - 0.4]},
+        **{**_frame(90 + 60 * len(names)), "margin": {"l": 8, "r": 26, "t": 28, "b": 8}},
+    )
     return figure

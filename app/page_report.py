@@ -42,6 +42,6 @@ def show() -> None:
             icon=":material/download:",
         )
     with st.container(key="present" if present else "former"):
-        for section in session.sections(text, system):
+        for section in session.report(text, system):
             st.subheader(plain(section.title), anchor=False)
             blocks(section.blocks, section.key)

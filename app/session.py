@@ -234,6 +234,18 @@ def trial(raw: dict[str, Any]) -> dict[str, Any]:
     return raw
 
 
+# --- choices on pages -------------------------------------------------------------------------------------------------
+
+
+def chosen(what: str) -> Any:
+    """What was last picked under a name; None where nothing was."""
+    return st.session_state.document.get("chosen", {}).get(what)
+
+
+def choose(what: str, pick: Any) -> None:
+    _keep(chosen={**st.session_state.document.get("chosen", {}), what: pick})
+
+
 # --- the engine -------------------------------------------------------------------------------------------------------
 
 
@@ -291,12 +303,48 @@ def sections(text: str, system: str) -> tuple[Any, ...]:
     return () if found is None else tuple(engine.sections(found.rating, found.intervals, judged(text, system), system))
 
 
+@st.cache_data(max_entries=64, show_spinner="Looking for the limits …")
+def studied(text: str, system: str) -> tuple[Any, ...]:
+    found = rated(text)
+    return () if found is None else tuple(engine.studied(found.case, system))
+
+
+@st.cache_data(max_entries=32, show_spinner=False)
+def report(text: str, system: str) -> tuple[Any, ...]:
+    """All sections that are handed over."""
+    found, studies = rated(text), studied(text, system)
+    if found is None:
+        return ()
+    return tuple(engine.sections(found.rating, found.intervals, judged(text, system), system, studies))
+
+
 @st.cache_data(max_entries=32, show_spinner=False)
 def pdf(text: str, system: str) -> bytes:
+    found, studies = rated(text), studied(text, system)
+    if found is None:
+        return b""
+    return bytes(engine.report_pdf(found.rating, found.intervals, judged(text, system), system, studies))
+
+
+@st.cache_data(max_entries=256, show_spinner="Looking for the limit …")
+def answered(text: str, question: engine.Question) -> Any:
     found = rated(text)
-    return (
-        b"" if found is None else bytes(engine.report_pdf(found.rating, found.intervals, judged(text, system), system))
-    )
+    return None if found is None else engine.answer(found.case, question)
+
+
+@st.cache_data(max_entries=256, show_spinner=False)
+def swept(text: str, path: str, value: float | None) -> Any:
+    """A sweep around the stated value that shows another value too."""
+    found = rated(text)
+    if found is None:
+        return None
+    return engine.sweep(found.case, path, engine.around(engine.variables(found.case)[path], value))
+
+
+@st.cache_data(max_entries=256, show_spinner=False)
+def conditions(text: str) -> Any:
+    found = rated(text)
+    return None if found is None else engine.operating_table(found.case)
 
 
 def current() -> tuple[dict[str, Any] | None, bool]:

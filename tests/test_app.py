@@ -367,7 +367,9 @@ def test_the_report_page_offers_both_files_and_previews_every_section() -> None:
     case = engine.parse_case(OIL_COOLER)
     rating = engine.rate(case)
     intervals = engine.propagate(case, rating)
-    written = engine.sections(rating, intervals, engine.judge(rating, intervals, system="si"), "si")
+    written = engine.sections(
+        rating, intervals, engine.judge(rating, intervals, system="si"), "si", engine.studied(case)
+    )
     assert [h.value for h in app.subheader] == [plain(section.title) for section in written]
 
 

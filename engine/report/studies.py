@@ -4,13 +4,15 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 
+import numpy as np
+
 from engine.case import Case
 from engine.report.blocks import Block, Section, Table
 from engine.report.words import NONE, Words, capital, listed
 from engine.stated import SIDES
-from engine.studies import Answer, Conditions, answer, asked, operating_table, questions, told
+from engine.studies import Answer, Conditions, Variable, answer, asked, operating_table, questions, told
 
-MOST_COLUMNS = 5
+MOST_COLUMNS = 6
 """Conditions in one table; further ones go on in the next."""
 
 
@@ -49,6 +51,36 @@ def reach(case: Case, answers: Sequence[Answer], words: Words) -> Iterator[Block
         header=("Question", "Answer"),
         rows=tuple((asked(case, found.question), told(found, words.system)) for found in answers),
         widths=(1.6, 4),
+    )
+
+
+def swept(case: Case, variable: Variable, conditions: Conditions, system: str = "si", most: int = 11) -> Table:
+    """A sweep as a table: at most so many of its rows, its ends and the stated value among them."""
+    words, frame, count = Words(system), conditions.frame, len(conditions.frame)
+    today = int(np.abs(np.asarray(frame.index, dtype=float) - variable.today).argmin())
+    rows = sorted({today, *(int(i) for i in np.linspace(0, count - 1, min(most, count)))})
+    names = case.exchanger.side_names
+
+    def cell(row: int, column: str, quantity: str, digits: int) -> str:
+        return words.show(float(frame[column].iloc[row]), quantity, digits)
+
+    return Table(
+        header=(
+            capital(variable.name.removeprefix("the ")),
+            "Duty",
+            *(f"{names[side]}, {what}" for what in ("outlet", "drop") for side in SIDES),
+            "First limit",
+        ),
+        rows=tuple(
+            (
+                f"{variable.shown(float(frame.index[row]), system)}{', today' if row == today else ''}",
+                cell(row, "duty", "heat_flow", 4),
+                *(cell(row, f"{side}.T_out", "temperature", 4) for side in SIDES),
+                *(cell(row, f"{side}.dp", "pressure_difference", 3) for side in SIDES),
+                str(frame["problem"].iloc[row]) or _first_limit(conditions, row, words),
+            )
+            for row in rows
+        ),
     )
 
 
