@@ -19,6 +19,7 @@ HATCHES = {"laminar": "", "transitional": "/", "turbulent": "x", "condensing": "
 PART_HATCHES = ("", "/", "x", "-", ".", "\\", "+")
 PART_COLOURS = ("#4f8a8b", "#b08d57", "#7d6b91", "#8b9196", "#a65e5e", "#5f8d4e", "#5b7db1")
 GROUND = "rgba(128,136,140,0.30)"
+STRIP = "rgba(128,136,140,0.12)"
 MARKERS = {"full circle": "circle", "open square": "square-open"}
 
 
@@ -47,9 +48,9 @@ def chart(data: Any) -> go.Figure:
                 yaxis="y2",
                 width=0.82,
                 marker={
-                    "color": GROUND,
+                    "color": STRIP,
                     "line": {"color": WALL, "width": 1},
-                    "pattern": {"shape": HATCHES.get(what, ""), "fgcolor": WALL, "size": 9, "solidity": 0.08},
+                    "pattern": {"shape": HATCHES.get(what, ""), "fgcolor": WALL, "size": 12, "solidity": 0.05},
                 },
                 showlegend=False,
                 hovertemplate=f"{strip.name}: {what}<extra></extra>",
