@@ -66,7 +66,8 @@ def _rate(options: argparse.Namespace) -> int:
         else:
             _write(options.json, text.encode())
     if options.pdf:
-        _write(options.pdf, engine.report_pdf(rating, intervals, verdicts, options.units))
+        studies = engine.studied(case, options.units)
+        _write(options.pdf, engine.report_pdf(rating, intervals, verdicts, options.units, studies))
     if options.json != "-":
         from engine.report import report_text
 
