@@ -63,18 +63,19 @@ class Proof:
         return abs(self.difference(ours)) <= self.tolerance
 
 
-def rows() -> tuple[Proof, ...]:
-    """Every row, part by part."""
-    return tuple(row for part in PARTS for row in import_module(f"engine.proofs.{part}").ROWS)
+def rows(*parts: str) -> tuple[Proof, ...]:
+    """Every row of some parts, or of all."""
+    return tuple(row for part in parts or PARTS for row in import_module(f"engine.proofs.{part}").ROWS)
 
 
 def proof_table() -> list[dict[str, Any]]:
     """Every row computed, as plain values: what it is, theirs, ours, how far off, how far is allowed and why."""
     found = []
-    for row in rows():
+    for part, row in ((name, row) for name in PARTS for row in rows(name)):
         ours = float(row.ours())
         found.append(
             {
+                "part": part,
                 "subject": row.subject,
                 "what": row.what,
                 "value": row.value,

@@ -102,7 +102,7 @@ def measured_exchanger() -> Measured:
     U = 1 / sum(kern.values())
     spread = math.exp(NORMAL_95 * U * math.hypot(math.sqrt(max(rest, 0.0)), film["kern_film"]))
     return Measured(
-        what="overall coefficient of the MSRE's primary heat exchanger",
+        what="overall coefficient of the primary exchanger of the Molten-Salt Reactor Experiment (MSRE)",
         quantity="heat_transfer_coefficient",
         low=BTU_U * min(U_MEASURED.values()),
         high=BTU_U * max(U_MEASURED.values()),
