@@ -297,38 +297,3 @@ def ranges(
         **{**_frame(90 + 60 * len(names)), "margin": {"l": 8, "r": 26, "t": 28, "b": 8}},
     )
     return figure
-
-
-def ranges(
-    names: Sequence[str], ours: Sequence[tuple[float, float, float]], band: tuple[float, float], said: str, unit: str
-) -> go.Figure:
-    """Figures with their intervals, one line each, over a band in which they should lie."""
-    low, at, high = (list(values) for values in zip(*ours, strict=True))
-    figure = go.Figure(
-        go.Scatter(
-            x=at,
-            y=list(names),
-            mode="markers",
-            marker={"color": HOT, "size": 11, "symbol": "diamond"},
-            error_x={
-                "type": "data",
-                "symmetric": False,
-                "array": [end - x for end, x in zip(high, at, strict=True)],
-                "arrayminus": [x - end for end, x in zip(low, at, strict=True)],
-                "color": WALL,
-                "thickness": 2,
-                "width": 9,
-            },
-            hovertemplate=f"%{{y}}: %{{x:.4g}} {unit}<extra></extra>",
-        )
-    )
-    figure.add_vrect(x0=band[0], x1=band[1], fillcolor=COLD, opacity=0.3, line={"color": COLD, "width": 1})
-    figure.add_annotation(
-        x=sum(band) / 2, y=1, yref="paper", yanchor="bottom", text=said, showarrow=False, font={"size": 12}
-    )
-    figure.update_layout(
-        xaxis={"title": unit, "zeroline": False},
-        yaxis={"autorange": "reversed", "range": [-0.6, len(names) - 0.4]},
-        **{**_frame(90 + 60 * len(names)), "margin": {"l": 8, "r": 26, "t": 28, "b": 8}},
-    )
-    return figure
