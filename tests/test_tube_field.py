@@ -18,6 +18,7 @@ from engine.report.drawings import draw_bundle
 from engine.report.inputs import bundle, stated_bundle
 from engine.report.pdf import _fonts
 from engine.report.words import Words
+from tests.test_app import kept, page, words
 
 PITCH, OD, BORE = 0.0254, 0.01905, 0.59055
 STATED: dict[str, Any] = {
@@ -166,3 +167,17 @@ def test_an_exchanger_still_without_baffles_is_drawn():
     found = stated_bundle({key: value for key, value in STATED.items() if not key.startswith("baffle")})
     assert found is not None
     assert "Baffle cut" not in found.alt
+
+
+def test_the_page_draws_the_bundle_while_the_case_is_still_incomplete(tmp_path, monkeypatch):
+    monkeypatch.setenv("COUNTERCHECK_DATA", str(tmp_path))
+    raw = {"format": "countercheck-case", "version": 1, "exchanger": STATED}
+    app = page("case", kept(raw))
+    assert "missing" in words(app)
+    assert "260 tubes of 19.05 mm at 30 deg" in words(app)
+    before = [chart.proto.spec for chart in app.get("plotly_chart")]
+    next(box for box in app.selectbox if box.label == "Layout angle").set_value("45 deg")
+    app.run()
+    assert "260 tubes of 19.05 mm at 45 deg" in words(app)
+    assert [chart.proto.spec for chart in app.get("plotly_chart")] != before
+    assert len(before) == 1
