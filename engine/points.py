@@ -53,6 +53,8 @@ class Points:
     tubes_plugged: Array
     duty_most: Array
     """Heat at which a valve throttles the condensing steam [W]; infinite where none does."""
+    chest_most: Array
+    """Up to which the chest may settle, by saturation temperature [K]; infinite where that is as supplied."""
     factors: Mapping[str, Array] = field(default_factory=dict)
     """"side:relation" or "side:property" (rho, cp, mu, k) or "wall" to multipliers: how doubt is propagated."""
 
@@ -66,8 +68,13 @@ class Points:
             R_fouling={side: x[rows] for side, x in self.R_fouling.items()},
             tubes_plugged=self.tubes_plugged[rows],
             duty_most=self.duty_most[rows],
+            chest_most=self.chest_most[rows],
             factors={name: x[rows] for name, x in self.factors.items()},
         )
+
+    def hottest_chest(self, side: Side) -> Array:
+        """(P,) highest saturation temperature on a condensing side."""
+        return np.where(np.isinf(self.chest_most), self.T_in[side], self.chest_most)
 
 
 def in_series(r: Mapping[str, Array]) -> Array:
@@ -185,6 +192,7 @@ def points_of(case: Case, frame: pd.DataFrame | None = None) -> tuple[Points, Te
         R_fouling={side: column(f"{side}.R_fouling", float(case.stream(side).R_fouling)) for side in SIDES},
         tubes_plugged=column("tubes_plugged", float(getattr(case.exchanger, "tubes_plugged", 0))),
         duty_most=np.full(n, np.inf),
+        chest_most=np.full(n, np.inf),
     )
     return points, _row_problems(case, points, steam)
 
@@ -243,6 +251,8 @@ def solve(case: Case, points: Points, *, fineness: int = 1) -> Iterator[tuple[ND
     steam = steam_of(case)
     # No temperature leaves the span between the inlets by more than a heat loss can pull it.
     ends = np.concatenate([points.T_in[side] for side in SIDES])
+    if steam is not None:
+        ends = np.append(ends, points.hottest_chest(steam.side))
     room = 2.0 + (0.5 * np.ptp(ends) if case.exchanger.heat_loss else 0.0)
     on = _Setting(
         case=case,
@@ -381,7 +391,7 @@ def _step(on: _Setting, points: Points, guess: Array, settled: _Settled, heat: A
     U = in_series(r)
     area = exchanger.area_at(points.tubes_plugged)
     if condensed is not None and condensed.steam.subcooling:
-        condensed = replace(condensed, flooded=_flooded(on, points, condensed, guess, capacity, r, heat, area))
+        condensed = replace(condensed, flooded=_flooded(on, points, condensed, guess, flowing, capacity, r, heat, area))
         assert condensed.flooded is not None
         cold = opposite(condensed.steam.side)
         area, T_in[cold] = area * (1 - condensed.flooded.share), T_in[cold] + condensed.flooded.rise
@@ -417,9 +427,8 @@ def _step(on: _Setting, points: Points, guess: Array, settled: _Settled, heat: A
 
 def _condensed(steam: Steam, points: Points, T_guess: Array, heat: Array) -> Condensed:
     """The chest at a guess of its temperature, and the condensate of the heat passed."""
-    T_supply = points.T_in[steam.side]
-    T_sat = np.minimum(T_guess, T_supply)
-    parts = steam.parts(T_supply, T_sat)
+    T_sat = np.minimum(T_guess, points.hottest_chest(steam.side))
+    parts = steam.parts(points.T_in[steam.side], T_sat)
     flow = (np.abs(heat.sum(axis=1)) + steam.loss) / (parts["desuperheating"] + parts["condensing"])
     return Condensed(steam=steam, T_sat=T_sat, flow=flow, flooded=None)
 
@@ -429,6 +438,7 @@ def _flooded(
     points: Points,
     condensed: Condensed,
     guess: Array,
+    flowing: Mapping[Side, Flowing],
     capacity: Mapping[Side, Array],
     r: Mapping[str, Array],
     heat: Array,
@@ -438,30 +448,38 @@ def _flooded(
     steam, cold = condensed.steam, opposite(condensed.steam.side)
     coldest = guess[:, SIDES.index(cold)].argmin(axis=1)
     rows = np.arange(len(points))
+
+    def there(x: Array) -> Array:
+        return np.asarray(np.broadcast_to(x, heat.shape)[rows, coldest])
+
     T = condensed.T_sat - 0.5 * steam.subcooling
     drained = replace(points, flow={**points.flow, steam.side: condensed.flow})
     at = flowing_side(steam.condensate, steam.side, drained, T[:, None], 0.5 * (T + points.T_in[cold])[:, None])
+    T_supply, T_cold, C_cold = points.T_in[steam.side], points.T_in[cold], there(capacity[cold])
+    passed = steam.subcooled(T_supply, condensed.T_sat, np.abs(heat.sum(axis=1)))
+    # The cell's own specific heat is not quite that of the inlet.
+    cp = on.fluids[cold].mean_cp(T_cold, T_cold + passed / C_cold)
     return steam.flooded(
         on.whole,
         at,
-        T_supply=points.T_in[steam.side],
+        heat=passed,
         T_sat=condensed.T_sat,
-        T_cold=points.T_in[cold],
-        C_cold=np.broadcast_to(capacity[cold], heat.shape)[rows, coldest],
-        passed=np.abs(heat.sum(axis=1)),
+        T_cold=T_cold,
+        C_cold=C_cold * cp / there(flowing[cold].bulk.cp),
         area=area,
-        r={name: np.broadcast_to(x, heat.shape)[rows, coldest] for name, x in r.items()},
+        r={name: there(x) for name, x in r.items()},
     )
 
 
 def _settling(points: Points, condensed: Condensed, T_cold: Array, passed: Array) -> Array:
     """By how much the difference of chest to cold inlet changes so that the steam that comes is all condensed; 1 where
     the chest stands as supplied. `passed` [W] is what the condensing area passes now; it follows that difference."""
-    steam, T_supply = condensed.steam, points.T_in[condensed.steam.side]
-    most = np.minimum(points.flow[steam.side] * steam.heat(T_supply, condensed.T_sat) - steam.loss, points.duty_most)
+    steam, side = condensed.steam, condensed.steam.side
+    heat = steam.heat(points.T_in[side], condensed.T_sat)
+    most = np.minimum(points.flow[side] * heat - steam.loss, points.duty_most)
     if condensed.flooded is not None:
         most = most * passed / (passed + condensed.flooded.heat)
-    return np.minimum((T_supply - T_cold) / (condensed.T_sat - T_cold), most / passed)
+    return np.minimum((points.hottest_chest(side) - T_cold) / (condensed.T_sat - T_cold), most / passed)
 
 
 def _settle(on: _Setting, step: _Step, *, roughly: bool) -> _Settled:
@@ -547,16 +565,12 @@ def resistances(
 
 def _march(on: _Setting, points: Points, most: int) -> Solution:
     n, P = on.cells.layout.n_cells, len(points)
-    T_in = dict(points.T_in)
-    if on.steam is not None:
-        # A point that is asked at what pressure its duty is met may have any supply above it.
-        T_in[on.steam.side] = np.minimum(T_in[on.steam.side], on.steam.T_sat)
-    T_i, T_o = T_in["inside"][:, None], T_in["outside"][:, None]
+    T_i, T_o = points.T_in["inside"][:, None], points.T_in["outside"][:, None]
     span = np.abs(T_i - T_o)[:, 0]
     # A quarter of the way from each inlet to the other is near enough to start from; steam stays where it is.
     start = {"inside": 0.75 * T_i + 0.25 * T_o, "outside": 0.25 * T_i + 0.75 * T_o}
     if on.steam is not None:
-        start[on.steam.side] = T_in[on.steam.side][:, None]
+        start[on.steam.side] = points.T_in[on.steam.side][:, None]
     guess = np.stack([start["inside"], start["outside"], 0.5 * (T_i + T_o), 0.5 * (T_i + T_o)], axis=1)
     guess = np.broadcast_to(guess, (P, 4, n))
     heat = np.broadcast_to(T_i - T_o, (P, n)) * 1e12
@@ -712,8 +726,8 @@ def _mark_steam(problem: Texts, points: Points, condensed: Condensed) -> None:
             problem,
             condensed.flooded.share >= MOST_FLOODED,
             lambda i: (
-                f"{side}.fluid.steam.subcooling: {steam.subcooling:.3g} K would flood over {MOST_FLOODED:.0%} of the "
-                "area with condensate"
+                f"{side}.fluid.steam.subcooling: {steam.subcooling:.3g} K would flood over {100 * MOST_FLOODED:.0f} % "
+                "of the area with condensate"
             ),
         )
 
@@ -753,5 +767,6 @@ def joined(parts: list[Points]) -> Points:
         R_fouling=merge([p.R_fouling for p in parts]),
         tubes_plugged=np.concatenate([p.tubes_plugged for p in parts]),
         duty_most=np.concatenate([p.duty_most for p in parts]),
+        chest_most=np.concatenate([p.chest_most for p in parts]),
         factors=merge([p.factors for p in parts]),
     )

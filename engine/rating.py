@@ -646,18 +646,17 @@ def _with_pressures(case: Case, both: Points, states: Mapping[str, State], finen
         return dict(states)
     side, names = steam.side, list(states)
 
-    def supplied(T: float, duty_most: float) -> Points:
+    def asked_for(T: float, duty_most: float) -> Points:
         P = len(both)
-        T_in = {**both.T_in, side: np.full(P, T)}
         flow = {**both.flow, side: np.full(P, np.inf)}
-        return replace(both, T_in=T_in, flow=flow, duty_most=np.full(P, duty_most))
+        return replace(both, flow=flow, chest_most=np.full(P, T), duty_most=np.full(P, duty_most))
 
-    asked = [supplied(steam.line.T_high, duty)]
+    asked = [asked_for(steam.line.T_high, duty)]
     back = case.p_back(side)
     coldest = case.T_in(opposite(side)) + steam.subcooling
     T_back = None if back is None else float(steam.line.T(back))
     if T_back is not None and T_back > coldest:
-        asked.append(supplied(T_back, np.inf))
+        asked.append(asked_for(T_back, np.inf))
     [(_, solved)] = list(solve(case, joined(asked), fineness=fineness))
     condensed = solved.condensed
     assert condensed is not None

@@ -83,17 +83,23 @@ class Steam:
         return saturated + self._superheat_over_cp * self.line.vapour(T_supply).cp if self.superheat else saturated
 
     def heat(self, T_supply: Array, T_sat: Array) -> Array:
-        """What a kilogram gives [J/kg] that comes saturated at T_supply and leaves a chest at T_sat."""
-        return self.enthalpy(T_supply) - self.line.enthalpy(T_sat - self.subcooling, "liquid")
+        """What a kilogram gives [J/kg] that comes saturated at T_supply, or at T_sat where that is more, and leaves a
+        chest at T_sat."""
+        return sum(self.parts(T_supply, T_sat).values(), np.zeros_like(T_sat))
 
     def parts(self, T_supply: Array, T_sat: Array) -> dict[str, Array]:
         """The same by zone: what is above saturation in the chest, the latent heat, what is below."""
         vapour, liquid = self.line.enthalpy(T_sat, "vapour"), self.line.enthalpy(T_sat, "liquid")
         return {
-            "desuperheating": self.enthalpy(T_supply) - vapour,
+            "desuperheating": self.enthalpy(np.maximum(T_supply, T_sat)) - vapour,
             "condensing": vapour - liquid,
             "subcooling": liquid - self.line.enthalpy(T_sat - self.subcooling, "liquid"),
         }
+
+    def subcooled(self, T_supply: Array, T_sat: Array, passed: Array) -> Array:
+        """Heat [W] that the condensate still gives where the area above it passes `passed`."""
+        parts = self.parts(T_supply, T_sat)
+        return np.asarray((passed + self.loss) * parts["subcooling"] / (parts["desuperheating"] + parts["condensing"]))
 
     def at(
         self, T_sat: Array, T_surface: Array, flow: Array, tubes_plugged: Array, factors: Mapping[str, Array]
@@ -121,21 +127,18 @@ class Steam:
         cells: Cells,
         at: Flowing,
         *,
-        T_supply: Array,
+        heat: Array,
         T_sat: Array,
         T_cold: Array,
         C_cold: Array,
-        passed: Array,
         area: Array,
         r: Mapping[str, Array],
     ) -> Flooded:
-        """The flooded share for the heat `passed` [W] by the rest of the area; arrays (P,).
+        """The share that passes `heat` [W] on its way down from T_sat; arrays (P,).
 
         `at`: the condensate as a liquid on its way through `cells`, (P, 1). T_cold [K] and C_cold [W/K]: of the cold
         fluid as it enters; r: the resistances there, in which the condensing film is replaced.
         """
-        parts = self.parts(T_supply, T_sat)
-        heat = (passed + self.loss) * parts["subcooling"] / (parts["desuperheating"] + parts["condensing"])
         rise = heat / C_cold
         ends = (T_sat - T_cold - rise, T_sat - self.subcooling - T_cold)
         mtd = log_mean(*(np.maximum(end, 1e-6) for end in ends))
