@@ -86,6 +86,52 @@ def _refuse_overwriting(case: Path, outputs: Sequence[Path]) -> None:
         raise Refused(f"{outputs[0]}: is named for both --json and --pdf; write to two files")
 
 
+# --- check ------------------------------------------------------------------------------------------------------------
+
+
+def _check_arguments(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("case", metavar="CASE", help="case file with a sheet (JSON), or a sheet alone (CSV, XLSX)")
+    parser.add_argument("--sheet", metavar="FILE", help="check this sheet (CSV, XLSX) beside the case")
+    parser.add_argument("--json", metavar="FILE", help="write the check file; - for standard output and nothing else")
+    parser.add_argument("--csv", metavar="FILE", help="write one line a check, for a spreadsheet")
+    parser.add_argument("--units", choices=SYSTEMS, default="si", help="units of the text and the CSV (si)")
+
+
+def _check(options: argparse.Namespace) -> int:
+    outputs = [Path(name) for name in (options.json, options.csv) if name and name != "-"]
+    for read in (options.case, options.sheet):
+        if read:
+            _refuse_overwriting(Path(read), outputs)
+    if options.csv == "-":
+        raise Refused("--csv: needs a file name; only --json can go to standard output")
+
+    import engine
+
+    alone = Path(options.case).suffix.lower() in (".csv", ".xlsx")
+    if alone and options.sheet:
+        raise Refused(f"--sheet: {options.case} is a sheet itself; name a case file beside it")
+    audit = engine.check_datasheet(
+        engine.load_sheet(options.case)
+        if alone
+        else engine.load_case(options.case).model_copy(update={"sheet": engine.load_sheet(options.sheet)})
+        if options.sheet
+        else engine.load_case(options.case)
+    )
+    if options.json:
+        text = _as_json(engine.check_json(audit))
+        if options.json == "-":
+            _say(text)
+        else:
+            _write(options.json, text.encode())
+    if options.csv:
+        _write(options.csv, engine.check_csv(audit, options.units))
+    if options.json != "-":
+        from engine.report import report_text
+
+        _say(report_text(engine.sheet_sections(audit, options.units)))
+    return STOP if audit.stopped else DONE
+
+
 # --- what is known here -----------------------------------------------------------------------------------------------
 
 
@@ -190,6 +236,7 @@ class Command:
 
 COMMANDS: dict[str, Command] = {
     "rate": Command("rate a case, clean and fouled, with intervals and findings", _rate, _rate_arguments),
+    "check": Command("check a vendor's datasheet line by line", _check, _check_arguments),
     "methods": Command("list the correlations with their limits, scatter and source", _methods),
     "fluids": Command("list the fluids that can be named", _fluids),
     "prove": Command(

@@ -19,7 +19,7 @@ from engine.case import Case
 from engine.casefile import parse_case
 from engine.exchangers.shell_and_tube import ShellAndTube
 from engine.rating import Rating, rate
-from engine.sheet import Sheet, declared_fields
+from engine.sheet import Sheet, sheet_fields
 from engine.stated import SIDES, CaseError, Count, Stated
 
 Random = np.random.Generator
@@ -153,7 +153,7 @@ PRESCRIBED = ("flow", "p_in", "R_fouling", "dp_allowed")
 
 
 def _printed(path: str, value: Any, system: str, coarse: int, rng: Random) -> Any:
-    declared = declared_fields()[path]
+    declared = sheet_fields()[path]
     if isinstance(declared, Count):
         return round(value)
     if not isinstance(declared, Stated):

@@ -230,6 +230,14 @@ class Equation:
         return self.check.grade
 
 
+DIFFERENCES = {
+    "temperature": "temperature_difference",
+    "pressure_absolute": "pressure_difference",
+    "pressure_gauge": "pressure_difference",
+}
+"""Quantities whose differences are another quantity."""
+
+
 @dataclass(frozen=True, kw_only=True)
 class Checked:
     """How one check ended at one place."""
@@ -297,6 +305,12 @@ class Checked:
     def shown(self, value: float, system: str = "si", digits: int = 4) -> str:
         assert self.line is not None
         return units.show(value, self.line.quantity, system, digits)
+
+    def shown_difference(self, value: float, system: str = "si", digits: int = 2) -> str:
+        """A difference or a tolerance of the line's quantity."""
+        assert self.line is not None
+        quantity = DIFFERENCES.get(self.line.quantity, self.line.quantity)
+        return units.show(value, quantity, system, digits)
 
     def says(self, system: str = "si") -> str:
         """What was found, in one sentence; empty where nothing was."""
@@ -373,15 +387,15 @@ class Repair:
     quantity: str = ""
     slip: str = ""
 
-    def says(self, subject: Subject, system: str = "si") -> str:
+    def change(self, subject: Subject, system: str = "si") -> str:
         before, to = (
-            f"{x:.4g}" if not self.quantity else units.show(x, self.quantity, system) for x in (self.before, self.to)
+            units.show(x, self.quantity, system) if self.quantity else f"{x:.4g}" for x in (self.before, self.to)
         )
+        return f"{subject.label(self.field)} from {before} to {to}"
+
+    def says(self, subject: Subject, system: str = "si") -> str:
         new = f", {self.breaks} new" if self.breaks else ""
-        return (
-            f"Change {subject.label(self.field)} from {before} to {to} and {self.clears} of {self.of} failures "
-            f"vanish{new}."
-        )
+        return f"Change {self.change(subject, system)} and {self.clears} of {self.of} failures vanish{new}."
 
 
 @dataclass(frozen=True, kw_only=True)

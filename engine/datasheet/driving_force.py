@@ -29,8 +29,8 @@ VARIES = 0.25
 def _temperatures(v: Figures) -> tuple[float, float, float, float]:
     """Hot in, hot out, cold in, cold out [K]."""
     hot, cold = sides(v)
-    T = tuple(float(v[f"{side}.{end}"]) for side in (hot, cold) for end in ("T_in", "T_out"))
-    return T[0], T[1], T[2], T[3]
+    hot_in, hot_out, cold_in, cold_out = (float(v[f"{s}.{end}"]) for s in (hot, cold) for end in ("T_in", "T_out"))
+    return hot_in, hot_out, cold_in, cold_out
 
 
 def _one_zone(v: Figures) -> None:
@@ -41,9 +41,11 @@ def _one_zone(v: Figures) -> None:
 
 
 def _cocurrent(v: Figures) -> bool:
-    if v.get("arrangement") != "co-current":
-        return False
-    return v.subject.double_pipe or v.get("tube_passes") == 1
+    """Missing where nothing says which way the fluids run."""
+    stated = v.get("arrangement")
+    if stated is None and (v.subject.double_pipe or ("tube_passes" not in v and "tema" not in v)):
+        raise Missing("arrangement")
+    return stated == "co-current" and (v.subject.double_pipe or v.get("tube_passes") == 1)
 
 
 def _lmtd(v: Figures) -> float:

@@ -18,7 +18,7 @@ from engine.exchangers import standard_sizes
 from engine.exchangers.double_pipe import DoublePipe
 from engine.exchangers.shell_and_tube import ShellAndTube
 from engine.rating import Rating, rate
-from engine.sheet import PARTS, Sheet, declared_fields
+from engine.sheet import PARTS, Sheet, sheet_fields
 from engine.stated import SIDES, Figure, Side, Stated
 
 DOUBLE_PIPE, SHELL_AND_TUBE = "double-pipe", "shell-and-tube"
@@ -102,13 +102,13 @@ class Subject:
         return names.get(side, "")
 
     def label(self, path: str) -> str:
-        """A field as the trade calls it: "specific heat, mean, tube side"."""
+        """A field as the trade calls it: "specific heat, mean (tube side)"."""
         side, _, name = path.rpartition(".")
-        declared = declared_fields().get(path)
+        declared = sheet_fields().get(path)
         words = declared.name if declared else (name or path).replace("_", " ")
         words = words[:1].lower() + words[1:] if words[1:2].islower() else words
         where = self.side_name(side) if side in SIDES else side.replace("_", " ")
-        return f"{words}, {where}" if where else words
+        return f"{words} ({where})" if where else words
 
     def fluid(self, side: Side) -> fluids.Fluid:
         """The side's fluid as the property library or the case's table knows it. Missing where neither does."""
@@ -176,12 +176,13 @@ def _of_case(case: Case) -> Iterable[tuple[str, Any]]:
             if value is not None:
                 yield f"{side}.{name}", value
     exchanger = case.exchanger
-    known = declared_fields()
+    known = sheet_fields()
     for name in type(exchanger).model_fields:
         value = getattr(exchanger, name)
-        if name in known and value is not None and not isinstance(known[name], type(None)):
+        if name in known and value is not None:
             yield name, value
     if isinstance(exchanger, ShellAndTube):
+        yield "arrangement", exchanger.arrangement
         nozzles = {"inside": exchanger.tube_nozzle_id, "outside": exchanger.shell_nozzle_id}
     else:
         nozzles = {"inside": exchanger.inside_nozzle_id, "outside": exchanger.outside_nozzle_id}
@@ -510,7 +511,7 @@ def fouling(v: Figures, on_own_surface: bool = True) -> float:
 
 def is_field(path: str) -> bool:
     """Whether a path is a figure of the sheet that can be off."""
-    return isinstance(declared_fields().get(path), Stated)
+    return isinstance(sheet_fields().get(path), Stated)
 
 
 __all__ = ["PARTS", "Figures", "Impossible", "Missing", "Subject"]

@@ -16,7 +16,7 @@ from engine.datasheet.figures import (
     property_of,
     single_phase,
 )
-from engine.sheet import declared_fields
+from engine.sheet import sheet_fields
 from engine.stated import SIDES, Side, Words
 
 TEST_RATIO = (1.25, 1.55)
@@ -169,7 +169,7 @@ def self_description(v: Figures, _: str) -> Remark:
 
 
 def _stated_twice(subject: Subject) -> tuple[str, ...]:
-    fields = declared_fields()
+    fields = sheet_fields()
     both = (path for path in subject.sheet_values if path in subject.case_values)
     return tuple(path for path in both if not isinstance(fields[path], Words) and not path.endswith("R_fouling"))
 

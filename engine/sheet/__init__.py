@@ -272,7 +272,7 @@ def _stated(part: Input) -> Iterator[tuple[str, Any]]:
             yield name, value
 
 
-def declared_fields() -> Mapping[str, Declaration]:
+def sheet_fields() -> Mapping[str, Declaration]:
     """Every field of a sheet by path, in the order of the form, with its declaration."""
     found: dict[str, Declaration] = {}
     own = Sheet.declared()
@@ -284,4 +284,4 @@ def declared_fields() -> Mapping[str, Declaration]:
     return found
 
 
-__all__ = ["PARTED", "PARTS", "Sheet", "SheetSide", "declared_fields"]
+__all__ = ["PARTED", "PARTS", "Sheet", "SheetSide", "sheet_fields"]
