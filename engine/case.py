@@ -287,6 +287,11 @@ class Stream(Input):
     def problems(self) -> Iterator[Problem]:
         for problem in self.fluid.problems():
             yield problem.under("fluid")
+        if isinstance(R := self.R_fouling, Figure) and R.sd and not R:
+            says = (
+                f'"{R.text}" lays a ± about no fouling; allowed is a resistance above zero with its ±, or zero without'
+            )
+            yield Problem(path="R_fouling", says=says)
         if self.condenses:
             for name in ("T_in", "p_in", "T_out"):
                 if getattr(self, name) is not None:

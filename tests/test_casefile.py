@@ -108,6 +108,7 @@ ONE_REASON = [
     ("inside.p_in", "0 bara", '"0 bara" is no pressure; allowed is above a perfect vacuum'),
     ("inside.p_in", "-2 barg", "is out of bounds; allowed is from -1.013 barg"),
     ("inside.R_fouling", "-0.0001 m2K/W", "is out of bounds; allowed is from 0 m²K/W to 0.1000 m²K/W"),
+    ("inside.R_fouling", "0 m2K/W ± 0.0001 m2K/W", "lays a ± about no fouling; allowed is a resistance above zero"),
     ("atmosphere", "0 barg", "is a gauge pressure; allowed is an absolute pressure"),
     # counts
     ("exchanger.legs_in_series", 8.0, "8.0 is not a whole number without a point; write 8"),
