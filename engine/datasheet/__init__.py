@@ -19,7 +19,7 @@ from engine import effectiveness as exact
 from engine import units
 from engine.case import Case
 from engine.datasheet.figures import Figures, Impossible, Missing, Subject, half_width
-from engine.sheet import Sheet
+from engine.sheet import Sheet, sheet_fields
 from engine.stated import SIDES, CaseError, Figure, Problem
 
 Grade = Literal["stop", "act", "watch", "note"]
@@ -36,12 +36,15 @@ NOTED, STOPPED = 2.0, 10.0
 NOTED_ALLOWANCES = 3.0
 
 
+Bound = Literal["", "at least", "at most", "within"]
+
+
 @dataclass(frozen=True, kw_only=True)
 class Line:
     """What the sheet prints and what other figures give in its place, in SI.
 
-    `bound` says that the recomputed figure is a limit, "at least" or "at most"; inside it the two agree. `share` and
-    `absolute` replace the allowance of the check's row.
+    A figure that should lie in a range has a `bound`: the recomputed one is then the limit that it passes, or itself
+    where it is within. `share` and `absolute` replace the allowance of the check's row.
     """
 
     sheet: float
@@ -49,7 +52,11 @@ class Line:
     quantity: str
     of: str = ""
     """Path of the printed figure, where it is one."""
-    bound: Literal["", "at least", "at most"] = ""
+    name: str = ""
+    """What the figure is, where it is none of the sheet's own."""
+    bound: Bound = ""
+    low: float = -math.inf
+    high: float = math.inf
     share: float | None = None
     absolute: float | None = None
     noted: float = 0.0
@@ -131,15 +138,11 @@ def checks() -> tuple[Check, ...]:
     return tuple(_REGISTER[id] for id in order)
 
 
-def within(
-    value: float, quantity: str, *, low: float = -math.inf, high: float = math.inf, of: str = "", **more: Any
-) -> Line:
+def within(value: float, quantity: str, *, low: float = -math.inf, high: float = math.inf, **more: Any) -> Line:
     """The line of a figure that should lie in a range."""
-    if value < low:
-        return Line(sheet=value, recomputed=low, quantity=quantity, of=of, bound="at least", **more)
-    if value > high:
-        return Line(sheet=value, recomputed=high, quantity=quantity, of=of, bound="at most", **more)
-    return Line(sheet=value, recomputed=value, quantity=quantity, of=of, **more)
+    bound: Bound = "at least" if value < low else "at most" if value > high else "within"
+    recomputed = {"at least": low, "at most": high, "within": value}[bound]
+    return Line(sheet=value, recomputed=recomputed, quantity=quantity, bound=bound, low=low, high=high, **more)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -293,6 +296,8 @@ class Checked:
         if not self.where:
             return ""
         side, _, rest = self.where.partition(".")
+        if self.where in sheet_fields():
+            return self.subject.label(self.where)
         if side in SIDES:
             name = self.subject.side_name(side)
             return f"{name}, {rest}" if rest else name
@@ -300,10 +305,12 @@ class Checked:
 
     def title(self) -> str:
         place = self.place()
-        return f"{self.check.title} ({place})" if place else self.check.title
+        return f"{self.check.title}: {place}" if place else self.check.title
 
     def shown(self, value: float, system: str = "si", digits: int = 4) -> str:
         assert self.line is not None
+        if self.line.quantity == "dimensionless" and isinstance(self.subject.values.get(self.line.of), int):
+            return f"{value:.0f}"
         return units.show(value, self.line.quantity, system, digits)
 
     def shown_difference(self, value: float, system: str = "si", digits: int = 2) -> str:
@@ -312,18 +319,26 @@ class Checked:
         quantity = DIFFERENCES.get(self.line.quantity, self.line.quantity)
         return units.show(value, quantity, system, digits)
 
+    def expected(self, system: str = "si") -> str:
+        """The recomputed figure, or the range that the printed one should lie in."""
+        assert self.line is not None
+        line = self.line
+        if line.bound != "within":
+            return f"{line.bound} {self.shown(line.recomputed, system)}".strip()
+        ends = [self.shown(x, system) for x in (line.low, line.high) if math.isfinite(x)]
+        if len(ends) == 2:
+            return " to ".join(ends)
+        return f"at {'least' if math.isfinite(line.low) else 'most'} {ends[0]}" if ends else "anything"
+
     def says(self, system: str = "si") -> str:
         """What was found, in one sentence; empty where nothing was."""
         if self.outcome != "found":
             return ""
         if self.line is None:
             return self.remark.says
-        sheet, recomputed = (self.shown(x, system) for x in (self.line.sheet, self.line.recomputed))
-        name = self.subject.label(self.line.of) if self.line.of else "this"
-        if self.line.bound:
-            text = f"{name} is {sheet}, where {self.line.bound} {recomputed} is expected"
-        else:
-            text = f"{name} is {sheet}, where the other figures give {recomputed}"
+        name = self.subject.label(self.line.of) if self.line.of else self.line.name
+        verb = "is expected" if self.line.bound else "follows from the other figures"
+        text = f"{name} is {self.shown(self.line.sheet, system)}, where {self.expected(system)} {verb}"
         return text[:1].upper() + text[1:] + (f"; {self.slip}" if self.slip else "") + "."
 
     def evidence(self) -> str:
@@ -341,11 +356,8 @@ class Checked:
             return ""
         if self.line is None:
             return self.remark.ask or self.check.ask
-        text = self.check.ask.format(
-            sheet=self.shown(self.line.sheet, system),
-            recomputed=self.shown(self.line.recomputed, system),
-            where=self.place(),
-        )
+        shown = {name: self.shown(getattr(self.line, name), system) for name in ("sheet", "recomputed")}
+        text = self.check.ask.format(**shown, where=self.place())
         if self.slip:
             text += f" It would fit {self.slip}."
         return f"{text} (As stated: {self.evidence()}.)"
@@ -458,7 +470,11 @@ def _slip_test(ended: Checked, slips: tuple[Slip, ...]) -> Checked:
     if ended.outcome == "not possible" or not slips:
         return ended
     names = "; ".join(f"{ended.subject.label(slip.field)}: {slip.name}" for slip in slips)
-    return replace(ended, outcome="found", grade=ended.check.grade, remark=Remark(says=f"A slip would fit: {names}."))
+    remark = Remark(
+        says=f"A slip would fit: {names}.",
+        ask=f"Please confirm unit and meaning of these figures; a slip would explain them: {names}.",
+    )
+    return replace(ended, outcome="found", grade=ended.check.grade, remark=remark)
 
 
 def check_json(audit: Audit) -> dict[str, Any]:
@@ -488,7 +504,9 @@ def _check_json(c: Checked) -> dict[str, Any]:
         "field": line.of if line and line.of else None,
         "quantity": line.quantity if line else None,
         "sheet": _number(line.sheet) if line else None,
-        "recomputed": _number(line.recomputed) if line else None,
+        "recomputed": _number(line.recomputed) if line and line.bound != "within" else None,
+        "low": _number(line.low) if line else None,
+        "high": _number(line.high) if line else None,
         "difference": _number(c.difference),
         "tolerance": _number(c.tolerance) if line else None,
         "rounding_share": _number(c.rounding_share),

@@ -80,7 +80,7 @@ def phases_sum(v: Figures, where: str) -> Line:
 )
 def mass_balance(v: Figures, where: str) -> Line:
     side = _side(where)
-    return Line(sheet=_parts(v, side, "in"), recomputed=_parts(v, side, "out"), quantity="mass_flow")
+    return Line(sheet=_parts(v, side, "in"), recomputed=_parts(v, side, "out"), quantity="mass_flow", name="flow in")
 
 
 @check(
@@ -96,7 +96,7 @@ def mass_balance(v: Figures, where: str) -> Line:
 )
 def noncondensables(v: Figures, where: str) -> Line:
     ends = (float(v[f"{where}.noncondensables_{end}"]) for end in ("in", "out"))
-    return Line(sheet=next(ends), recomputed=next(ends), quantity="mass_flow")
+    return Line(sheet=next(ends), recomputed=next(ends), quantity="mass_flow", name="noncondensables in")
 
 
 # --- heat -------------------------------------------------------------------------------------------------------------
@@ -165,7 +165,9 @@ def balance(v: Figures, _: str) -> Line:
         share = sum(GAS_DUTY if gas(v, side) else LIQUID_DUTY for side in SIDES)
     if "duty" in v:
         heats.append(float(v["duty"]))
-    return Line(sheet=max(heats), recomputed=min(heats), quantity="heat_flow", share=share)
+    return Line(
+        sheet=max(heats), recomputed=min(heats), quantity="heat_flow", name="the largest of the heats", share=share
+    )
 
 
 @check(
@@ -323,7 +325,7 @@ def prandtl(v: Figures, where: str) -> Line:
     name = str(v.get(f"{side}.fluid") or "").lower()
     kind = "gas" if gas(v, side) else "water" if name in WATERS else "liquid"
     low, high = PRANDTL[kind]
-    return within(Pr, "dimensionless", low=low, high=high)
+    return within(Pr, "dimensionless", low=low, high=high, name="Prandtl number")
 
 
 @check(
@@ -344,14 +346,14 @@ def keeps_phase(v: Figures, where: str) -> Line:
     if limit == "freezing":
         if fluid.phase == "gas" or fluid.freezing_temperature is None:
             raise Missing(f"{name}.fluid with a known freezing point")
-        return within(min(T), "temperature", low=fluid.freezing_temperature + PHASE_MARGIN)
+        return within(min(T), "temperature", low=fluid.freezing_temperature + PHASE_MARGIN, name="the coldest")
     p = pressure(v, f"{side}.p_in") - float(v.get(f"{side}.dp") or 0.0)
     saturated = fluid.saturation_temperature(p) if p > 0 else None
     if saturated is None:
         raise Missing(f"{name}.fluid with a known boiling point at its outlet pressure")
     if fluid.phase == "gas":
-        return within(min(T), "temperature", low=saturated + PHASE_MARGIN)
-    return within(max(T), "temperature", high=saturated - PHASE_MARGIN)
+        return within(min(T), "temperature", low=saturated + PHASE_MARGIN, name="the coldest")
+    return within(max(T), "temperature", high=saturated - PHASE_MARGIN, name="the hottest")
 
 
 @check(

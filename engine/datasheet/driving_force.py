@@ -48,7 +48,7 @@ def _cocurrent(v: Figures) -> bool:
     return stated == "co-current" and (v.subject.double_pipe or v.get("tube_passes") == 1)
 
 
-def _lmtd(v: Figures) -> float:
+def log_mean_difference(v: Figures) -> float:
     """Counter-current at the terminal temperatures, its own for a co-current exchanger [K]."""
     hot_in, hot_out, cold_in, cold_out = _temperatures(v)
     ends = (hot_in - cold_in, hot_out - cold_out) if _cocurrent(v) else (hot_in - cold_out, hot_out - cold_in)
@@ -85,11 +85,11 @@ def _ratios(v: Figures) -> tuple[float, float]:
     return float(P), float(R)
 
 
-def _factor(v: Figures) -> float:
-    """F of the arrangement at the printed temperatures; 0 where no area reaches them."""
-    _lmtd(v)
-    shells = _shells(v)
-    return float(exact.correction_factor(*_ratios(v), shells)) if shells else 1.0
+def factor(v: Figures, shells: int | None = None) -> float:
+    """F at the printed temperatures, or with another number of shells; 0 where no area reaches them."""
+    log_mean_difference(v)
+    own = _shells(v)
+    return float(exact.correction_factor(*_ratios(v), shells or own)) if own else 1.0
 
 
 # --- the second law ---------------------------------------------------------------------------------------------------
@@ -135,7 +135,9 @@ def lmtd(v: Figures, _: str) -> Line:
     else:
         _one_zone(v)
         stated, of = float(v["mtd"]) / float(v["F"]), ""
-    return Line(sheet=stated, recomputed=_lmtd(v), quantity="temperature_difference", of=of)
+    return Line(
+        sheet=stated, recomputed=log_mean_difference(v), quantity="temperature_difference", of=of, name="MTD over F"
+    )
 
 
 @check(
@@ -155,8 +157,13 @@ def lmtd(v: Figures, _: str) -> Line:
 def corrected(v: Figures, where: str) -> Line:
     _one_zone(v)
     if where == "F":
-        return Line(sheet=float(v["F"]), recomputed=_factor(v), quantity="dimensionless", of="F", absolute=0.02)
-    return Line(sheet=float(v["mtd"]), recomputed=_factor(v) * _lmtd(v), quantity="temperature_difference", of="mtd")
+        return Line(sheet=float(v["F"]), recomputed=factor(v), quantity="dimensionless", of="F", absolute=0.02)
+    return Line(
+        sheet=float(v["mtd"]),
+        recomputed=factor(v) * log_mean_difference(v),
+        quantity="temperature_difference",
+        of="mtd",
+    )
 
 
 @check(
@@ -175,9 +182,15 @@ def steepness(v: Figures, where: str) -> Line:
     if not shells:
         raise Missing("tube passes against each other; this exchanger is pure counter- or co-current flow")
     if where == "F":
-        return within(_factor(v), "dimensionless", low=F_USUAL, noted=F_USUAL - F_LEAST)
+        return within(factor(v), "dimensionless", low=F_USUAL, name="F", noted=F_USUAL - F_LEAST)
     P, R = _ratios(v)
-    return within(P / float(exact.largest_P(R, shells)), "dimensionless", high=ON_THE_CLIFF, absolute=0.01)
+    return within(
+        P / float(exact.largest_P(R, shells)),
+        "dimensionless",
+        high=ON_THE_CLIFF,
+        name="P over its limit",
+        absolute=0.01,
+    )
 
 
 @check(
@@ -190,7 +203,7 @@ def steepness(v: Figures, where: str) -> Line:
 )
 def claims_counterflow(v: Figures, _: str) -> Remark:
     F = float(v["F"])
-    exactly = _factor(v)
+    exactly = factor(v)
     if F >= 0.995 and exactly < 0.98:
         return Remark(says=f"F is printed as {F:.3g}; this arrangement has {exactly:.3f} at these temperatures.")
     return Remark()
@@ -210,8 +223,8 @@ def claims_counterflow(v: Figures, _: str) -> Remark:
 def cross(v: Figures, _: str) -> Line:
     if _shells(v) != 1:
         raise Missing("one shell with passes either way")
-    _, hot_out, _, cold_out = _temperatures(v)
-    return within(cold_out, "temperature", high=hot_out)
+    hot_out, cold_out = _temperatures(v)[1::2]
+    return within(cold_out, "temperature", high=hot_out, name="cold outlet")
 
 
 # --- closure ----------------------------------------------------------------------------------------------------------

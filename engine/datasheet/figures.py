@@ -204,6 +204,10 @@ RESULTS = frozenset(
 """Figures that somebody computed or looked up and rounded; the others were prescribed."""
 
 
+AGREED = 0.15
+"""Of a fouling resistance, which is agreed and not computed: 0.0002 stands for 0.000176 m²K/W at the most."""
+
+
 def half_width(path: str, value: Any) -> tuple[float, float]:
     """By how much a typed figure may be off for its rounding: as its digits say, and with trailing zeros as rounding.
 
@@ -216,6 +220,8 @@ def half_width(path: str, value: Any) -> tuple[float, float]:
     if not value.digit or not value:  # the digit of a plain 0 says nothing
         return spread, spread
     strict = max(value.digit / 2, spread)
+    if value.quantity == "fouling_resistance":
+        strict = min(strict, AGREED * value)
     number = re.match(r"[\d ]+(?![\d.,])", value.text)
     if value.quantity == "temperature" or number is None:
         return strict, strict

@@ -302,7 +302,7 @@ def cut(v: Figures, where: str) -> Line | Remark:
         share = float(v["baffle_cut"])
         if v["baffle_cut_by"] == "area":
             return Remark(
-                says=f"The cut is by area: {100 * share:.3g} % of the area is {100 * _height(share):.3g} % of the "
+                says=f"The cut is by area: {100 * share:.3g} % of the area is {100 * height_of_segment(share):.3g} % of the "
                 "diameter, which is what the methods take.",
                 ask="Was the rating run with the cut by area or by diameter?",
             )
@@ -311,10 +311,17 @@ def cut(v: Figures, where: str) -> Line | Remark:
     if case is None or not isinstance(case.exchanger, ShellAndTube) or case.exchanger.shell_letter == "X":
         raise Missing("the case with a baffled shell")
     g = case.exchanger.geometry
-    return within(float(g.Sm / g.Sw), "dimensionless", low=WINDOW[0], high=WINDOW[1], share=0.02)
+    return within(
+        float(g.Sm / g.Sw),
+        "dimensionless",
+        low=WINDOW[0],
+        high=WINDOW[1],
+        name="window over cross-flow velocity",
+        share=0.02,
+    )
 
 
-def _height(share: float) -> float:
+def height_of_segment(share: float) -> float:
     """Height of a circle's segment over the diameter, from its share of the area."""
     low, high = 0.0, 1.0
     for _ in range(60):
@@ -411,7 +418,9 @@ def momentum(v: Figures, where: str) -> Line:
     name, _, what = where.partition(".")
     side = _side(name)
     if what == "bundle":
-        return within(float(v["outside.bundle_rho_v2"]), "momentum_flux", high=BUNDLE_ENTRANCE)
+        return within(
+            float(v["outside.bundle_rho_v2"]), "momentum_flux", high=BUNDLE_ENTRANCE, of="outside.bundle_rho_v2"
+        )
     if what == "printed":
         printed = float(v[f"{name}.nozzle_rho_v2"])
         return Line(
@@ -419,11 +428,14 @@ def momentum(v: Figures, where: str) -> Line:
         )
     _shell_and_tube(v)
     if v.get("impingement_protection") == "yes":
-        return within(0.0, "momentum_flux")
+        return within(0.0, "momentum_flux", name="ρv² without protection")
     rho_v2 = v.get("outside.nozzle_rho_v2")
     clean = not float(v.get("outside.R_fouling") or 0.0)
     return within(
-        _nozzle_rho_v2(v, side) if rho_v2 is None else float(rho_v2), "momentum_flux", high=IMPINGEMENT[clean]
+        _nozzle_rho_v2(v, side) if rho_v2 is None else float(rho_v2),
+        "momentum_flux",
+        high=IMPINGEMENT[clean],
+        name="ρv² at the shell inlet",
     )
 
 
@@ -482,4 +494,6 @@ def filling(v: Figures, _: str) -> Line:
     if volume <= 0:
         raise Impossible("a shell that holds its tubes")
     low, high = (share * WATER * volume for share in FILLED)
-    return within(float(v["weight_full"]) - float(v["weight_empty"]), "mass", low=low, high=high)
+    return within(
+        float(v["weight_full"]) - float(v["weight_empty"]), "mass", low=low, high=high, name="full less empty weight"
+    )

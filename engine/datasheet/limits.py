@@ -50,8 +50,8 @@ def design(v: Figures, where: str) -> Line:
     if not T:
         raise Missing(f"{name}.T_in or {name}.T_out")
     if what == "temperature":
-        return within(max(T), "temperature", high=limit)
-    return within(min(T), "temperature", low=limit)
+        return within(max(T), "temperature", high=limit, name="the hottest")
+    return within(min(T), "temperature", low=limit, name="the coldest")
 
 
 @check(
@@ -67,7 +67,7 @@ def design(v: Figures, where: str) -> Line:
 )
 def test_pressure(v: Figures, where: str) -> Line:
     ratio = float(v[f"{where}.test_pressure"]) / float(v[f"{where}.design_pressure"])
-    return within(ratio, "dimensionless", low=TEST_RATIO[0], high=TEST_RATIO[1])
+    return within(ratio, "dimensionless", low=TEST_RATIO[0], high=TEST_RATIO[1], name="test over design pressure")
 
 
 @check(
@@ -84,7 +84,7 @@ def tube_rupture(v: Figures, _: str) -> Line:
     design = {side: pressure(v, f"{side}.design_pressure") for side in SIDES}
     low, high = sorted(SIDES, key=lambda side: design[side])
     if f"{low}.test_pressure" in v and pressure(v, f"{low}.test_pressure") >= design[high]:
-        return within(design[low], "pressure_absolute")
+        return within(design[low], "pressure_absolute", of=f"{low}.design_pressure")
     return within(design[low], "pressure_absolute", low=TUBE_RUPTURE * design[high], of=f"{low}.design_pressure")
 
 
@@ -106,7 +106,13 @@ def expansion(v: Figures, where: str) -> Line:
     if where == "one side lost":
         # The tubes take the temperature of the side that is left.
         apart = max(abs(float(v["inside.T_in"]) - shell), abs(float(v["outside.T_in"]) - tubes))
-    return within(apart, "temperature_difference", high=EXPANSION_NOTE, noted=EXPANSION - EXPANSION_NOTE)
+    return within(
+        apart,
+        "temperature_difference",
+        high=EXPANSION_NOTE,
+        name="shell and tubes apart",
+        noted=EXPANSION - EXPANSION_NOTE,
+    )
 
 
 @check(

@@ -80,7 +80,7 @@ class Found:
             return ""
         for slip in self.slips:
             if slip.field in ended.fields:
-                return f"if {ended.subject.label(slip.field)} is {slip.name}"
+                return f"if {ended.subject.label(slip.field)} is a slip: {slip.name}"
         return ""
 
 

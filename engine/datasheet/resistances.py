@@ -31,6 +31,8 @@ DOMINATES = 0.5
 OWN_FILMS = 2.0
 COPIED = 1.03
 """By how much more U the films would give than is printed, for a copied figure to be told."""
+RATIO = "dirty over service transfer rate"
+ROOM = "what clean U leaves for the films"
 TUBE_FILM, TRANSITIONAL_FILM, SHELL_FILM = 0.15, 0.30, 0.25
 
 
@@ -92,12 +94,16 @@ def excess(v: Figures, where: str) -> Line | Remark:
     U_dirty, U_service = float(v["U_dirty"]), float(v["U_service"])
     ratio = U_dirty / U_service
     if where == "sign":
-        return within(ratio, "dimensionless", low=1.0)
+        return within(ratio, "dimensionless", low=1.0, name=RATIO)
     if where == "size":
-        return within(ratio, "dimensionless", high=1 + EXCESS_USUAL, grade="watch")
+        return within(ratio, "dimensionless", high=1 + EXCESS_USUAL, name=RATIO, grade="watch")
     if where == "as printed":
         return Line(
-            sheet=1 + float(v["excess_area"]), recomputed=ratio, quantity="dimensionless", of="excess_area", share=0.02
+            sheet=1 + float(v["excess_area"]),
+            recomputed=ratio,
+            quantity="dimensionless",
+            name="one and the excess area",
+            share=0.02,
         )
     if U_dirty == U_service and 1 / (1 / float(v["U_clean"]) + fouling(v)) > COPIED * U_dirty:
         return Remark(
@@ -121,7 +127,13 @@ def excess(v: Figures, where: str) -> Line | Remark:
 )
 def cleanliness(v: Figures, _: str) -> Line:
     low, high = CLEANLINESS
-    return within(float(v["U_dirty"]) / float(v["U_clean"]), "dimensionless", low=low, high=high)
+    return within(
+        float(v["U_dirty"]) / float(v["U_clean"]),
+        "dimensionless",
+        low=low,
+        high=high,
+        name="dirty over clean transfer rate",
+    )
 
 
 # --- films ------------------------------------------------------------------------------------------------------------
@@ -149,13 +161,13 @@ def film_sum(v: Figures, where: str) -> Line:
     left = _films_left(v)
     if where == "wall":
         # Below nothing at all there is no tolerance but rounding.
-        return within(left, "fouling_resistance", low=0.0, share=0.0)
+        return within(left, "fouling_resistance", low=0.0, name=ROOM, share=0.0)
     if where == "films":
         films = 1 / float(v["outside.h"]) + outside_diameter(v) / bore(v) / float(v["inside.h"])
-        return Line(sheet=left, recomputed=films, quantity="fouling_resistance")
+        return Line(sheet=left, recomputed=films, quantity="fouling_resistance", name=ROOM)
     R = v.subject.rating.clean.resistances
     own = R["outside film"] + R["inside film"]
-    return within(left, "fouling_resistance", low=own / OWN_FILMS, high=own * OWN_FILMS, grade="watch")
+    return within(left, "fouling_resistance", low=own / OWN_FILMS, high=own * OWN_FILMS, name=ROOM, grade="watch")
 
 
 def _inside_film(v: Figures) -> tuple[float, float]:
@@ -195,7 +207,9 @@ def inside_film(v: Figures, where: str) -> Line:
     if left <= 0:
         raise Impossible("a clean U that leaves room for films")
     # No outside film, however good, brings the sum of both below the inside one.
-    return within(ratio / left, "heat_transfer_coefficient", high=h, share=band)
+    return within(
+        ratio / left, "heat_transfer_coefficient", high=h, name="the least inside film for this clean U", share=band
+    )
 
 
 @check(
@@ -224,6 +238,7 @@ def outside_film(v: Figures, _: str) -> Line:
         recomputed=own,
         quantity="heat_transfer_coefficient",
         of="outside.h" if "outside.h" in v else "",
+        name="the outside film left by clean U",
     )
 
 
@@ -290,7 +305,7 @@ def fouling_range(v: Figures, where: str) -> Line:
     share=0.02,
 )
 def dominance(v: Figures, _: str) -> Line:
-    return within(fouling(v) * float(v["U_clean"]), "dimensionless", high=DOMINATES)
+    return within(fouling(v) * float(v["U_clean"]), "dimensionless", high=DOMINATES, name="fouling times clean U")
 
 
 @check(
@@ -314,5 +329,5 @@ def wall_temperature(v: Figures, where: str) -> Line:
         raise Missing(f"limits.{name}_wall_T_{kind}")
     T = np.array([state.sides[_side(name)].surface_T for state in v.subject.rating.states.values()])
     if end == "highest":
-        return within(float(T.max()), "temperature", high=float(limit))
-    return within(float(T.min()), "temperature", low=float(limit))
+        return within(float(T.max()), "temperature", high=float(limit), name="the hottest wall")
+    return within(float(T.min()), "temperature", low=float(limit), name="the coldest wall")

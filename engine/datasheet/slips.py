@@ -10,6 +10,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 
 from engine import units
+from engine.datasheet.driving_force import factor, log_mean_difference
 from engine.datasheet.figures import Figures, Missing, Subject, bore, outside_diameter, property_of
 from engine.stated import Figure, Side
 
@@ -73,8 +74,10 @@ def candidates(subject: Subject, path: str) -> Iterator[Candidate]:
         return
     x = float(value)
     name = path.rpartition(".")[2]
-    for words, factor in _of_parts(subject, path, name):
-        yield Candidate(name=words, factor=factor, to=x / factor)
+    for words, share in _of_parts(subject, path, name):
+        yield Candidate(name=words, factor=share, to=x / share)
+    if path in ("F", "mtd"):
+        yield from _of_shells(subject, path, x)
     if not isinstance(value, Figure):
         return
     quantity = value.quantity
@@ -131,6 +134,21 @@ def _of_parts(subject: Subject, path: str, name: str) -> Iterator[tuple[str, flo
         except Missing:
             return
         yield "an inside resistance already on the outside surface", ratio
+
+
+def _of_shells(subject: Subject, path: str, x: float) -> Iterator[Candidate]:
+    """F of another number of shells, and the mean difference that it or no F at all gives."""
+    v = Figures(subject.values, subject)
+    try:
+        lmtd = log_mean_difference(v) if path == "mtd" else 1.0
+        true = factor(v) * lmtd
+        others = {n: factor(v, shells=n) * lmtd for n in (1, 2, 3, 4, 6)}
+    except (Missing, ValueError):
+        return
+    words = "the uncorrected LMTD" if path == "mtd" else "left at one"
+    for name, wrong in ((words, lmtd), *((f"F of {n} shells in series", F) for n, F in others.items())):
+        if true > 0 and wrong > 0 and abs(wrong / true - 1) > 2 * MATCH and abs(x / wrong - 1) < MATCH / 2:
+            yield Candidate(name=name, factor=wrong / true, to=true)
 
 
 def _of_temperature(x: float) -> Iterator[Candidate]:

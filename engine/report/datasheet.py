@@ -84,9 +84,9 @@ def _found(audit: Audit, system: str) -> Iterator[Block]:
 def _figures(c: Checked, system: str) -> tuple[str, str, str]:
     if c.line is None:
         return NONE, NONE, NONE
-    recomputed = f"{c.line.bound} {c.shown(c.line.recomputed, system)}".strip()
     tolerance = f"{c.shown_difference(c.tolerance, system)} ({100 * (c.rounding_share or 0.0):.0f} %)"
-    return c.shown(c.line.sheet, system), recomputed, tolerance
+    least = 1e-6 * abs(c.line.sheet)
+    return c.shown(c.line.sheet, system), c.expected(system), tolerance if c.tolerance > least else NONE
 
 
 def _repairs(audit: Audit, system: str) -> Iterator[Block]:
