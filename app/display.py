@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import re
 from collections import Counter
 from collections.abc import Iterable
@@ -11,6 +12,7 @@ from typing import Any
 import engine
 
 AS_TYPED = "typed"
+NONE = "–"
 CHOICES = {AS_TYPED: "As typed", **engine.SYSTEMS}
 _MARKUP = re.compile(r"([\\`*_{}\[\]<>#$|~:!&])")
 
@@ -28,6 +30,9 @@ class Display:
     system: str
 
     def show(self, value: float, quantity: str, digits: int = 4) -> str:
+        """The figure with its unit; a dash where there is none."""
+        if not math.isfinite(value):
+            return NONE
         return engine.show(float(value), quantity, self.system, digits)
 
     def unit(self, quantity: str) -> str:

@@ -22,8 +22,6 @@ KINDS = {
     "steam": "Condensing steam",
 }
 """What a user calls the kinds of fluid; exchangers carry their own title."""
-LATER = ("steam",)
-"""Kinds that a file may state and no rating takes yet: offered only where they are stated already."""
 NOT_STATED = "not stated"
 NOZZLES, DETAILS = "Nozzles", "Further details"
 
@@ -121,7 +119,7 @@ class Form:
     def kinds(self, part: Part, path: Path) -> None:
         """A choice between kinds of group, and the fields of the chosen one."""
         model = fields.kind_stated(part.models, self.stated(path))
-        kinds = {fields.kind_of(m): m for m in part.models if m is model or fields.kind_of(m) not in LATER}
+        kinds = {fields.kind_of(m): m for m in part.models}
         widget = self.key((*path, "kind"))
         st.selectbox(
             "Type" if "type" in model.model_fields else f"{part.title} given as",

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from typing import Any
 
@@ -100,6 +101,8 @@ def key_figures(found: session.Rated) -> None:
     units = session.display()
     with st.container(horizontal=True):
         for label, key, value, quantity, digits in figures_:
+            if not math.isfinite(value):
+                continue
             span = units.span(doubt.of[key], quantity, digits) if doubt and key in doubt.of else None
             st.metric(
                 f"{label}, {units.unit(quantity)}",
@@ -184,19 +187,21 @@ def where_resistance_lies(found: session.Rated, written: Mapping[str, Any]) -> N
 def where_pressure_goes(found: session.Rated, written: Mapping[str, Any]) -> None:
     st.subheader("Where the pressure goes", anchor=False)
     units, names, sides = session.display(), found.case.exchanger.side_names, found.rating.fouled.sides
-    kinds = list(dict.fromkeys(kind for side in engine.SIDES for kind in sides[side].drops))
+    # Condensing steam has no rated drop.
+    drawn = [side for side in engine.SIDES if math.isfinite(sides[side].dp)]
+    kinds = list(dict.fromkeys(kind for side in drawn for kind in sides[side].drops))
     shown = {
         kind.replace("_", " and ").capitalize(): [
-            float(units.values(sides[side].drops.get(kind, 0.0), "pressure_difference")) for side in engine.SIDES
+            float(units.values(sides[side].drops.get(kind, 0.0), "pressure_difference")) for side in drawn
         ]
         for kind in kinds
-        if any(sides[side].drops.get(kind) for side in engine.SIDES)
+        if any(sides[side].drops.get(kind) for side in drawn)
     }
-    stated = [found.case.stream(side).dp_allowed for side in engine.SIDES]
+    stated = [found.case.stream(side).dp_allowed for side in drawn]
     allowed = [None if a is None else float(units.values(float(a), "pressure_difference")) for a in stated]
     unit = units.unit("pressure_difference")
-    told = "; ".join(f"{names[s]} {units.show(sides[s].dp, 'pressure_difference', 3)}" for s in engine.SIDES)
-    bars = figures.stacked([names[side] for side in engine.SIDES], shown, allowed, unit)
+    told = "; ".join(f"{names[s]} {units.show(sides[s].dp, 'pressure_difference', 3)}" for s in drawn)
+    bars = figures.stacked([names[side] for side in drawn], shown, allowed, unit)
     plot(bars, f"Pressure drops by part. In all: {told}.", "drops")
     with st.expander("In figures"):
         blocks(written["drops"].blocks, "drops")

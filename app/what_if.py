@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import Any
@@ -10,7 +11,7 @@ import streamlit as st
 
 import engine
 from app import session
-from app.display import AS_TYPED, plain
+from app.display import AS_TYPED, NONE, plain
 from app.fields import Path
 from app.frame import listed, table
 
@@ -177,7 +178,8 @@ def compared(found: session.Rated, tried: session.Rated) -> None:
 
 def _row(name: str, quantity: str, values: list[float], digits: int = 4) -> list[str]:
     shown = [session.display().show(value, quantity, digits) for value in values]
-    return [name, *shown, f"{100 * (values[1] / values[0] - 1):+.1f} %"]
+    change = 100 * (values[1] / values[0] - 1) if values[0] else math.nan
+    return [name, *shown, f"{change:+.1f} %" if math.isfinite(change) else NONE]
 
 
 def _signed(text: str) -> str:

@@ -168,7 +168,7 @@ def test_an_emptied_optional_group_leaves_the_case() -> None:
 
 def test_every_kind_of_fluid_and_every_type_of_exchanger_has_a_form() -> None:
     app = page("case", kept())
-    for kind in ("solution", "table", "constant", "pure"):
+    for kind in ("solution", "table", "constant", "steam", "pure"):
         generation = app.session_state["generation"]
         app.selectbox(key=f"inside.fluid.kind@typed#{generation}").set_value(kind).run()
         assert not app.exception
@@ -302,6 +302,20 @@ def test_every_sample_case_is_complete_and_shown_on_every_page(path: Path) -> No
         assert "went wrong" not in words(app)
         assert not app.warning
     assert "✓ Complete" in words(page("case", token))
+
+
+def test_steam_asks_for_no_temperatures_and_its_pressure_can_be_tried() -> None:
+    raw = {**OIL_COOLER, "outside": {"fluid": {"steam": {"p": "3 barg"}}}}
+    app = page("case", kept(raw))
+    assert "✓ Complete" in words(app)
+    assert "outside.T_in@typed#0" not in [box.key for box in app.text_input]
+    rating = page("rating", token_of(app))
+    before = metric(rating, "Duty")
+    rating.text_input(key="try outside.fluid.steam.p@typed#0").set_value("5 barg").run()
+    assert "went wrong" not in words(rating)
+    next(b for b in rating.button if b.label == "Adopt this in the case").click().run()
+    assert draft_of(rating)["case"]["outside"]["fluid"]["steam"]["p"] == "5 barg"
+    assert float(metric(rating, "Duty")) > float(before)
 
 
 def test_a_file_that_is_no_case_is_refused_and_the_case_stays() -> None:
