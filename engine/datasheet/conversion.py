@@ -197,13 +197,15 @@ DIGITS: Mapping[str, int] = {"temperature": 5, "temperature_difference": 4}
 def sheet_of_rating(rating: Rating, system: str = "si") -> dict[str, Any]:
     """The keys of a sheet with what a rating found in the fouled state, printed in a system of units.
 
-    Raises ValueError where the rating has no answer.
+    Raises ValueError where the rating has no answer, or the exchanger what no sheet has a field for.
     """
     if not rating.states:
         raise ValueError(f"there is no rating to print: {rating.problem}")
-    case, clean, fouled = rating.case, rating.clean, rating.fouled
+    case, fouled = rating.case, rating.fouled
+    if isinstance(case.exchanger, DoublePipe) and (case.exchanger.fins or case.exchanger.inner_pipes > 1):
+        raise ValueError("a datasheet has no fields for fins, nor for several inner pipes in one outer pipe")
     raw: dict[str, Any] = {}
-    for path, value, quantity in (*_sides(case, clean, fouled), *_whole(case, clean, fouled), *_exchanger(case)):
+    for path, value, quantity in (*_sides(case, fouled), *_whole(case, fouled), *_exchanger(case)):
         if value is None or (isinstance(value, float) and not np.isfinite(value)):
             continue
         group, _, name = path.rpartition(".")
@@ -216,7 +218,7 @@ Entry = tuple[str, Any, str]
 """Path, value, and the quantity to print it in; none where it stands as it is."""
 
 
-def _sides(case: Case, clean: State, fouled: State) -> Iterator[Entry]:
+def _sides(case: Case, fouled: State) -> Iterator[Entry]:
     for side in SIDES:
         stream, at = case.stream(side), fouled.sides[side]
         name = getattr(stream.fluid, "name", None) or getattr(stream.fluid, "solution", None)
@@ -232,6 +234,8 @@ def _sides(case: Case, clean: State, fouled: State) -> Iterator[Entry]:
             mean = case.fluid(side).at(np.asarray(T_mean))
             for key, quantity in FLUID_PROPERTIES.items():
                 yield f"{side}.{key}", float(getattr(mean, key)), quantity
+                yield f"{side}.{key}_in", at.properties_in[key], quantity
+                yield f"{side}.{key}_out", at.properties_out[key], quantity
             # Shell sides have no velocity that two methods mean alike.
             if side == "inside" or isinstance(case.exchanger, DoublePipe):
                 yield f"{side}.velocity", at.velocity, "velocity"
@@ -239,12 +243,12 @@ def _sides(case: Case, clean: State, fouled: State) -> Iterator[Entry]:
             yield f"{side}.dp_basis", "fouled", ""
         yield f"{side}.dp_allowed", stream.dp_allowed, ""
         yield f"{side}.R_fouling", at.R_fouling, "fouling_resistance"
-        yield f"{side}.h", clean.sides[side].h, "heat_transfer_coefficient"
+        yield f"{side}.h", at.h, "heat_transfer_coefficient"
         for limit in LIMITS:
             yield f"{side}.{limit}", getattr(case.limits, f"{side}_{limit}"), ""
 
 
-def _whole(case: Case, clean: State, fouled: State) -> Iterator[Entry]:
+def _whole(case: Case, fouled: State) -> Iterator[Entry]:
     yield "item", case.tag, ""
     yield "revision", case.revision, ""
     yield "status", "estimated", ""
