@@ -364,7 +364,7 @@ def state_of(case: Case, solved: Solution, i: int, name: str) -> State:
         T_out={side: float(solved.T_out[side][i]) for side in SIDES},
         area=area,
         mtd=mtd,
-        F=mtd / lmtd,
+        F=_correction(mtd, lmtd),
         effectiveness=duty / (C_min * abs(float((T_in["inside"] - T_in["outside"])[0]))),
         NTU=U * area / C_min,
         U_clean=float(solved.U_clean[i]),
@@ -494,6 +494,11 @@ def counter_lmtd(case: Case, T_in: Mapping[Side, Array], T_out: Mapping[Side, Ar
     outside_ends = (T_in["outside"], T_out["outside"]) if cocurrent else (T_out["outside"], T_in["outside"])
     ends = [np.abs(a - b) for a, b in zip(inside_ends, outside_ends, strict=True)]
     return float(exact.log_mean(ends[0], ends[1])[0])
+
+
+def _correction(mtd: float, lmtd: float) -> float:
+    """F; 1 where the fluids have met within the digits, so that no end difference is left to compare with."""
+    return mtd / lmtd if lmtd > 0 else 1.0
 
 
 def _profile(solved: Solution, i: int) -> Profile:
@@ -760,7 +765,7 @@ def mean_property_state(case: Case, point: Points, method: str, start: State, fi
         T_out={side: float(T_out[side][0]) for side in SIDES},
         area=exchanger.area,
         mtd=mtd,
-        F=mtd / counter_lmtd(case, T_in, T_out),
+        F=_correction(mtd, counter_lmtd(case, T_in, T_out)),
         effectiveness=duty / (C_min * span),
         NTU=NTU,
         U_clean=1.0 / (1.0 / U - R["outside fouling"] - R["inside fouling"]),
