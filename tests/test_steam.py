@@ -198,19 +198,10 @@ def gnielinski(Re: float, Pr: float, d_over_L: float) -> float:
 
 
 def by_hand(
-    *,
-    od: float,
-    id: float,
-    leg: float,
-    area: float,
-    flow: float,
-    passage: float,
-    rows: float,
-    p: float,
-    fall: float = 0.0,
+    *, od: float, id: float, leg: float, area: float, flow: float, passage: float, rows: float, p: float
 ) -> dict[str, float]:
-    """Steam of p [MPa] outside tubes, the constant cold fluid of 20 °C inside: a mean U, ε = 1 - exp(-NTU), Nusselt's
-    film at the mean surface with properties of IAPWS-IF97. With a `fall` the tubes stand, their films are laminar."""
+    """Steam of p [MPa] outside lying tubes, the constant cold fluid of 20 °C inside: a mean U, ε = 1 - exp(-NTU),
+    Nusselt's film at the mean surface with properties of IAPWS-IF97."""
     cold = {"rho": 990.0, "cp": 4100.0, "k": 0.62, "mu": 0.8e-3}
     Pr = cold["mu"] * cold["cp"] / cold["k"]
     Re = flow / passage * id / cold["mu"]
@@ -222,10 +213,7 @@ def by_hand(
         dT = sat.T - surface
         film = IAPWS97(T=sat.T - dT / 2, x=0)
         group = 9.80665 * film.rho * (film.rho - rho_v) * film.k**3 * (h_fg + 0.68 * 1e3 * film.cp * dT)
-        if fall:
-            h_o = 0.943 * (group / (film.mu * dT * fall)) ** 0.25
-        else:
-            h_o = 0.728 * (group / (film.mu * dT * od)) ** 0.25 * rows ** (-1 / 6)
+        h_o = 0.728 * (group / (film.mu * dT * od)) ** 0.25 * rows ** (-1 / 6)
         U = 1 / (1 / h_o + od * np.log(od / id) / 100.0 + od / id / h_i)
         NTU = U * area / (flow * cold["cp"])
         duty = (1 - np.exp(-NTU)) * flow * cold["cp"] * (sat.T - T_in)
