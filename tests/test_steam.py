@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 from dataclasses import replace
+from pathlib import Path
 from typing import Any
 
 import numpy as np
@@ -15,7 +16,8 @@ from iapws import IAPWS97
 from scipy.optimize import brentq
 
 from engine.case import Case
-from engine.casefile import parse_case
+from engine.casefile import load_case, parse_case
+from engine.findings import judge
 from engine.fluids import saturation, saturation_line
 from engine.points import points_of, solve
 from engine.rating import rate, rate_points
@@ -396,6 +398,9 @@ def test_a_cold_side_that_is_nearly_as_hot_is_rated(inlet):
 def test_a_vanishing_flow_leaves_at_the_condensing_temperature():
     state = rate(heater(inside__flow="0.002 kg/s")).fouled
     assert state.T_out["inside"] == pytest.approx(state.chest.T_sat, abs=0.5)
+    air = rate(heater(SHELL, inside__fluid="Air", inside__flow="0.002 kg/s")).fouled
+    assert air.T_out["inside"] == pytest.approx(air.chest.T_sat, abs=1e-9)
+    assert air.F == 1.0
 
 
 # --- steam that falls short -------------------------------------------------------------------------------------------
@@ -642,3 +647,21 @@ def test_steam_named_as_a_gas_that_would_condense_is_found():
         )
     )
     assert "condenses" in rating.problem
+
+
+# --- the sample -------------------------------------------------------------------------------------------------------
+
+
+def test_the_sample_stalls_clean_and_drains_fouled():
+    case = load_case(Path(__file__).parents[1] / "sample_cases" / "steam-heater-that-stalls.json")
+    rating = rate(case)
+    back = case.p_back("outside")
+    assert rating.clean.chest.p_required < back < rating.fouled.chest.p_required < rating.fouled.chest.p_supply
+    assert rating.fouled.margin > 0
+    intervals = propagate(case, rating)
+    verdicts = {verdict.rule.code: verdict for verdict in judge(rating, intervals)}
+    (stall,) = verdicts["steam-stall"].findings
+    assert stall.grade == "watch"
+    assert "(clean)" in stall.says
+    names = [contributor.doubt.name for contributor in intervals["fouled"].contributors]
+    assert names.index("shell side film (kern rows)") < names.index("tube side flow")
