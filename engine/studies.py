@@ -7,7 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
-from typing import Literal, TypeVar
+from typing import Literal, cast
 
 import numpy as np
 import pandas as pd
@@ -18,7 +18,7 @@ from engine import fluids, units
 from engine.case import Case, SolutionFluid
 from engine.correlations import Array, Excursion
 from engine.exchangers import REGIMES
-from engine.points import Points, Solution, points_of
+from engine.points import Points, Solution, joined, points_of
 from engine.rating import FIGURES, along, figures_of, mean_films, rate, tabulated
 from engine.stated import SIDES, CaseError, Figure, Input, Problem, Side, opposite
 from engine.uncertainty import NORMAL_95, doubts, each_way
@@ -33,11 +33,13 @@ MOST_VALUES = 2000
 """Of one sweep."""
 GRID = 81
 """Values tried in one round of a search."""
+COARSE_GRID = 17
+"""The same where every value is a solve of its own."""
 NARROWED = 2
 """Rounds after the first: they leave 1/6400 of one step of the first."""
 
-FLOW_SPAN = (1 / 20, 10.0)
-"""Of the stated flow: where its limits are looked for."""
+SPAN = (1 / 20, 10.0)
+"""Of a stated flow or steam pressure: where its limits are looked for."""
 TEMPERATURE_SPAN = 150.0
 """From the stated inlet temperature [K]."""
 APPROACH = 0.5
@@ -149,6 +151,8 @@ _OWN = (
     *(f"{side}.{name}" for name in ("velocity", "T_max", "surface_T_max", "surface_T_min", "regime") for side in SIDES),
     "metal_T_min",
 )
+_HIGHEST = tuple(f"{side}.{name}" for name in ("T_max", "surface_T_max") for side in SIDES)
+_LOWEST = (*(f"{side}.surface_T_min" for side in SIDES), "metal_T_min")
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -156,7 +160,8 @@ class Conditions:
     """Conditions of one case, one row each, in the fouled state that each of them states.
 
     Columns of `frame`, SI: the condition itself (`CONDITIONS`), the figures of `rate_points`, per side velocity [m/s],
-    highest bulk and highest and lowest surface temperature [K] and regime, the lowest metal temperature [K],
+    highest bulk and highest and lowest surface temperature [K] and regime, the lowest metal temperature [K] (these
+    extremes over the clean state too, in which every condition begins),
     `slack KEY` of each limit in its own unit (negative where it is passed), `limit`, the key of the limit that is
     passed the furthest, or empty, and `problem`. A row with a problem has NaN figures.
     """
@@ -201,7 +206,16 @@ def _own_figures(case: Case, solved: Solution) -> dict[str, Array]:
 
 def _solved(case: Case, frame: pd.DataFrame | None) -> pd.DataFrame:
     points, problem = points_of(case, frame)
-    found = tabulated(case, points, problem, (*FIGURES, *_OWN), _own_figures)
+    clean = replace(points, R_fouling={side: np.zeros(len(points)) for side in SIDES})
+    both = tabulated(case, joined([points, clean]), np.tile(problem, 2), (*FIGURES, *_OWN), _own_figures)
+    found, start = (both.iloc[rows].reset_index(drop=True) for rows in np.arange(len(both)).reshape(2, -1))
+    for column in _HIGHEST:
+        found[column] = np.maximum(found[column], start[column])
+    for column in _LOWEST:
+        found[column] = np.minimum(found[column], start[column])
+    only_clean = (found["problem"] == "") & (start["problem"] != "")
+    found.loc[only_clean, [*FIGURES, *_OWN]] = np.nan
+    found.loc[only_clean, "problem"] = "clean, " + start["problem"]
     names = np.array([*REGIMES, "mixed", ""], dtype=object)
     for side in SIDES:
         found[f"{side}.regime"] = names[found[f"{side}.regime"].fillna(MIXED + 1).astype(int)]
@@ -278,6 +292,8 @@ class Variable:
     """Mass for what is shown: a flow that was typed by volume is shown so."""
     of: float | None = None
     """What a count is a part of."""
+    tries: int = GRID
+    """In one round of a search."""
 
     def shown(self, value: float, system: str = "si") -> str:
         """A value in words, with its unit."""
@@ -287,14 +303,15 @@ class Variable:
         digits = 4 if self.quantity == "temperature" else 3
         return units.show(value / self.density, self.quantity, system, digits)
 
-    def between(self, start: float, end: float, count: int = GRID) -> Array:
+    def between(self, start: float, end: float) -> Array:
         """Values from start to end, both included, closer together where a limit is met early."""
-        if self.quantity in ("mass_flow", "volume_flow"):
-            values = np.geomspace(start, end, count)
-        elif self.quantity == "temperature":
-            values = np.linspace(start, end, count)
+        if self.quantity in ("mass_flow", "volume_flow", "pressure_absolute"):
+            values = np.geomspace(start, end, self.tries)
+        elif self.quantity in ("temperature", "fraction"):
+            values = np.linspace(start, end, self.tries)
         else:
-            values = _from(start, end, count)
+            steps = np.geomspace(1e-4, 1.0, self.tries - 1)
+            values = start + (end - start) * np.append(0.0, steps)
         return self.settled(values)
 
     def settled(self, values: Array) -> Array:
@@ -305,14 +322,9 @@ class Variable:
         return np.asarray(whole[np.append(True, np.diff(whole) != 0)])
 
 
-def _from(start: float, end: float, count: int) -> Array:
-    """From start to end by steps that grow with the distance."""
-    return np.concatenate([[start], start + (end - start) * np.geomspace(1e-4, 1.0, count - 1)])
-
-
 def variables(case: Case) -> dict[str, Variable]:
     """What can be varied in a case, by path: `inside.flow`, `outside.T_in`, `inside.R_fouling`, `tubes_plugged`,
-    `inside.mass_fraction` and the like."""
+    `inside.mass_fraction`, `outside.fluid.steam.p` and the like."""
     made: list[Variable] = []
     for side in SIDES:
         made += _variables_of(case, side)
@@ -344,11 +356,21 @@ def _variables_of(case: Case, side: Side) -> Iterable[Variable]:
             name=f"the flow of {fluid.name} ({where})",
             quantity="volume_flow" if by_volume else "mass_flow",
             today=flow,
-            low=FLOW_SPAN[0] * flow,
-            high=FLOW_SPAN[1] * flow,
+            low=SPAN[0] * flow,
+            high=SPAN[1] * flow,
             density=flow / float(stream.flow) if by_volume and stream.flow is not None else 1.0,
         )
-    if not stream.condenses:
+    if stream.condenses:
+        p = case.p_in(side)
+        yield Variable(
+            path=f"{side}.fluid.steam.p",
+            name=f"the steam pressure ({where})",
+            quantity="pressure_absolute",
+            today=p,
+            low=SPAN[0] * p,
+            high=SPAN[1] * p,
+        )
+    else:
         T, other = case.T_in(side), case.T_in(opposite(side))
         low, high = max(T - TEMPERATURE_SPAN, fluid.T_low), min(T + TEMPERATURE_SPAN, fluid.T_high)
         hot = side == case.hot
@@ -378,6 +400,7 @@ def _variables_of(case: Case, side: Side) -> Iterable[Variable]:
             today=float(stream.fluid.mass_fraction),
             low=offer.fraction_low or 0.0,
             high=1.0 if offer.fraction_high is None else offer.fraction_high,
+            tries=COARSE_GRID,
         )
 
 
@@ -391,22 +414,23 @@ def _variable(case: Case, path: str) -> Variable:
 
 def restated(case: Case, path: str, value: float) -> Case:
     """The case with another value at the path of a variable. Raises CaseError where the value cannot be stated."""
-    side, _, name = path.rpartition(".")
+    place = {"tubes_plugged": "exchanger.tubes_plugged"}.get(path, path).replace(
+        ".mass_fraction", ".fluid.mass_fraction"
+    )
+    stated: object = int(value) if path == "tubes_plugged" else float(value)
+    if path.endswith(".p"):
+        stated = Figure(value, quantity="pressure_absolute")
+
+    def put(part: Input, first: str, *rest: str) -> Input:
+        return _with(part, **{first: put(getattr(part, first), *rest) if rest else stated})
+
     try:
-        if path == "tubes_plugged":
-            return _with(case, exchanger=_with(case.exchanger, tubes_plugged=int(value)))
-        stream = getattr(case, side)
-        if name == "mass_fraction":
-            return _with(case, **{side: _with(stream, fluid=_with(stream.fluid, mass_fraction=float(value)))})
-        return _with(case, **{side: _with(stream, **{name: float(value)})})
+        return cast(Case, put(case, *place.split(".")))
     except ValidationError as error:
         raise CaseError([Problem(path=path, says=error.errors()[0]["msg"])]) from None
 
 
-_Part = TypeVar("_Part", bound=Input)
-
-
-def _with(part: _Part, **changes: object) -> _Part:
+def _with(part: Input, **changes: object) -> Input:
     """The part stated anew, so that nothing it has remembered of its former values goes with it."""
     return type(part)(**{**{name: getattr(part, name) for name in part.model_fields_set}, **changes})
 
@@ -440,21 +464,21 @@ def sweep(case: Case, path: str, values: ArrayLike) -> Conditions:
     return _conditions(case, frame, list(tried))
 
 
-def around(variable: Variable, value: float | None = None, count: int = 41) -> Array:
+def around(variable: Variable, value: float | None = None) -> Array:
     """Values to sweep that show today's and, where it is near enough to be of use, another one."""
     today = variable.today
     if variable.quantity == "temperature":
         low, high = today - 15.0, today + 15.0
     elif variable.quantity == "fouling_resistance":
         low, high = 0.0, max(2.5 * today, 0.0006)
-    elif variable.path.endswith(".flow"):
+    elif variable.path.endswith((".flow", ".p")):
         low, high = 0.4 * today, 2.0 * today
     else:
         low, high = variable.low, variable.high
     if value is not None:
         room = 0.25 * abs(value - today)
         low, high = min(low, value - room), max(high, value + room)
-    values = np.linspace(max(low, variable.low), min(high, variable.high), count)
+    values = np.linspace(max(low, variable.low), min(high, variable.high), min(41, variable.tries))
     return variable.settled(np.unique(np.append(values, today)))
 
 
@@ -527,6 +551,7 @@ def questions(case: Case) -> tuple[Question, ...]:
         other = opposite(side)
         asked += [
             Question(path=f"{other}.flow", way="least"),
+            Question(path=f"{other}.fluid.steam.p", way="least"),
             Question(path=f"{other}.T_in", way="most" if other == case.cold else "least"),
             Question(path=f"{side}.flow", way="most"),
             Question(path=f"{side}.T_in", way="most" if side == case.hot else "least"),
@@ -613,7 +638,7 @@ def _narrowed(
         near, far = float(values[turned[0] - 1]), float(values[turned[0]])
         if not left or (variable.whole and abs(far - near) <= 1):
             return near, far
-        values = variable.settled(np.linspace(near, far, GRID))
+        values = variable.settled(np.linspace(near, far, variable.tries))
     return None
 
 
@@ -631,7 +656,7 @@ def _with_doubt(case: Case, about: Answer, probe: Callable[[Array], Conditions])
         return about
     points = each_way(points_of(there)[0], doubts(there, rating))
     none = np.full(len(points), "", dtype=object)
-    figure = tabulated(there, points, none, (limit.column,), _own_figures)[limit.column].to_numpy()
+    figure = tabulated(there, points, none, (limit.column,), _own_figures)[limit.column].to_numpy(float)
     up, down = (np.where(np.isfinite(x), x, figure[0]) for x in (figure[1::2], figure[2::2]))
     doubt = NORMAL_95 * float(np.sqrt(np.sum(np.square((up - down) / 2))))
     if not doubt > 0:
@@ -642,7 +667,7 @@ def _with_doubt(case: Case, about: Answer, probe: Callable[[Array], Conditions])
 
     found: list[float | None] = []
     for upward, end in ((False, variable.low), (True, variable.high)):
-        values = variable.settled(_from(value, end, GRID))
+        values = variable.between(value, end)
         bracket = _narrowed(probe, variable, values, moved(doubt if upward == about.at_most else -doubt), rounds=1)
         found.append(None if bracket is None else bracket[0 if upward == about.at_most else 1])
     return replace(about, ends=(found[0], found[1]))

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
+from dataclasses import replace
 
 import numpy as np
 
@@ -24,7 +25,12 @@ def studied(case: Case, system: str = "si") -> tuple[Section, ...]:
     conditions = operating_table(case)
     if conditions.frame["problem"].iloc[0]:
         return ()
-    return study_sections(case, conditions, [answer(case, question) for question in questions(case)], system)
+    answers: list[Answer] = []
+    for question in questions(case):
+        # What mends a limit that is passed today answers for both ways.
+        if not any(a.question.path == question.path and a.outcome in ("mended", "not mended") for a in answers):
+            answers.append(answer(case, question))
+    return study_sections(case, conditions, answers, system)
 
 
 def study_sections(
@@ -49,9 +55,12 @@ def reach(case: Case, answers: Sequence[Answer], words: Words) -> Iterator[Block
     )
     yield Table(
         header=("Question", "Answer"),
-        rows=tuple((asked(case, found.question), told(found, words.system)) for found in answers),
+        rows=tuple((asked(case, found.question), told(replace(found, left_out=()), words.system)) for found in answers),
         widths=(1.6, 4),
     )
+    left_out = dict.fromkeys(limit.name for found in answers for limit in found.left_out)
+    if left_out:
+        yield f"Not counted, since it is of common practice only and exceeded already today: {listed(list(left_out))}."
 
 
 def swept(case: Case, variable: Variable, conditions: Conditions, system: str = "si", most: int = 11) -> Table:
