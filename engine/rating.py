@@ -73,6 +73,8 @@ class SideState:
     second_opinions: Mapping[str, float]
     surface_T: tuple[float, float]
     """Lowest and highest temperature of the surface that the fluid touches [K]."""
+    second_opinion_drops: Mapping[str, float] = field(default_factory=dict)
+    """By other published relations and coefficients, by name [Pa]."""
 
     @property
     def dp(self) -> float:
@@ -339,6 +341,9 @@ def state_of(case: Case, solved: Solution, i: int, name: str) -> State:
         )
         regimes = tuple(REGIMES[code] for code in np.unique(film.regime[i]))
         opinions = exchanger.second_opinions(side, whole, flowing[side])
+        drops = exchanger.second_opinion_drops(side, whole, flowing[side])
+        # As in the rating, a gas has its density at the mean pressure.
+        left = 1.0 - 0.5 * float(solved.drop(side)[i]) / case.p_in(side) if fluid.phase == "gas" else 1.0
         sides[side] = SideState(
             flow=float(one.flow[side][0]),
             T_in=float(T_in[side][0]),
@@ -356,6 +361,7 @@ def state_of(case: Case, solved: Solution, i: int, name: str) -> State:
             properties_out=_printed(fluid, float(T_out[side][0])),
             second_opinions={key: float(value[i]) for key, value in opinions.items()},
             surface_T=surfaces,
+            second_opinion_drops={key: float(value[i]) / left for key, value in drops.items()},
         )
     return State(
         method="march",

@@ -403,3 +403,13 @@ def test_solutions_report_whether_they_settled():
     point, _ = points_of(case)
     [(_, solved)] = list(solve(case, replace(point)))
     assert solved.residual[0] < 1e-8
+
+
+def test_another_friction_factor_gives_a_second_opinion_on_turbulent_drops_only():
+    water = rate(oil_cooler(**FIVE["water over water"])).fouled.sides
+    # Two fits of the same rough-tube data lie within a few per cent; the hydraulic diameter alone makes an annulus low.
+    (colebrook,) = water["inside"].second_opinion_drops.values()
+    assert colebrook == pytest.approx(water["inside"].dp, rel=0.04)
+    (by_d_h,) = water["outside"].second_opinion_drops.values()
+    assert 0.85 < by_d_h / water["outside"].dp < 0.99
+    assert rate(oil_cooler(**FIVE["laminar oil"])).fouled.sides["outside"].second_opinion_drops == {}

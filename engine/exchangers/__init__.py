@@ -142,6 +142,9 @@ class Exchanger(Protocol):
     def drop(self, side: Side, cells: Cells, at: Flowing, film: Film) -> dict[str, Array]:
         """Pressure drop by part, each (P,) [Pa]: between the stated nozzles or leg ends, without static head."""
 
+    def second_opinion_drops(self, side: Side, cells: Cells, at: Flowing) -> dict[str, Array]:
+        """Total drop by other published relations or coefficients, by name, at mean conditions (P,)."""
+
     def drop_relation(self, side: Side) -> Correlation:
         """The relation whose scatter the drop carries."""
 
@@ -160,4 +163,16 @@ class Exchanger(Protocol):
     def problems(self) -> Any: ...
 
 
-__all__ = ["REGIMES", "Cells", "entrance_nodes", "sliver", "Exchanger", "Film", "Flowing", "Layout", "Problem", "Properties", "Side"]
+__all__ = [
+    "REGIMES",
+    "Cells",
+    "Exchanger",
+    "Film",
+    "Flowing",
+    "Layout",
+    "Problem",
+    "Properties",
+    "Side",
+    "entrance_nodes",
+    "sliver",
+]

@@ -275,7 +275,7 @@ class DoublePipe(Input):
         x, weights = entrance_nodes(start, end, counter & (start + end > leg * (1 + 1e-9)), leg)
         begin, stop = sliver(x.ravel())
         begin_outside, stop_outside = sliver((leg - x if counter else x).ravel())
-        legs_of = {"inside": leg, "outside": leg}
+        legs_of: dict[Side, float] = {"inside": leg, "outside": leg}
         nodes = Cells(
             layout=order,
             start={"inside": begin, "outside": begin_outside},
@@ -366,12 +366,13 @@ class DoublePipe(Input):
             found[inside_tubes.hausen_laminar] = inside_tubes.hausen_laminar(Re, Pr, d_h / L)
             found[inside_tubes.sieder_tate_laminar] = inside_tubes.sieder_tate_laminar(Re, Pr, d_h / L, mu_ratio)
         if inside_tubes.RE_LAMINAR < highest < inside_tubes.RE_TURBULENT:
-            joined = {"wall": self._wall(at), "joined_by": inside_tubes.transition_2013}
+            joined_by, wall = inside_tubes.transition_2013, self._wall(at)
             if plain_annulus:
-                Nu = annulus.nusselt_annulus(Re, Pr, d_h, surface / self.shell_id, 0.0, L, **joined)[0]
+                ratio = surface / self.shell_id
+                Nu, _ = annulus.nusselt_annulus(Re, Pr, d_h, ratio, 0.0, L, wall=wall, joined_by=joined_by)
             else:
-                Nu = inside_tubes.nusselt_tube(Re, Pr, d_h, 0.0, L, **joined)[0]
-            found[inside_tubes.transition_2013] = Nu
+                Nu, _ = inside_tubes.nusselt_tube(Re, Pr, d_h, 0.0, L, wall=wall, joined_by=joined_by)
+            found[joined_by] = Nu
         to_h = at.bulk.k / d_h
         return {r.name: self._coefficient(side, Nu * to_h, surface).mean(axis=1) for r, Nu in found.items()}
 
@@ -403,7 +404,7 @@ class DoublePipe(Input):
 
     def wall_resistance(self, T_metal: Array) -> Array:
         k = self.metal_conductivity(T_metal)
-        return self.tube_od * np.log(self.tube_od / self.tube_id) / (2 * k)
+        return np.asarray(self.tube_od * np.log(self.tube_od / self.tube_id) / (2 * k))
 
     def metal_conductivity(self, T: Array) -> Array:
         if self.wall_conductivity is not None:
@@ -418,12 +419,23 @@ class DoublePipe(Input):
     # --- drops ------------------------------------------------------------------------------------------------------
 
     def drop(self, side: Side, cells: Cells, at: Flowing, film: Film) -> dict[str, Array]:
-        area, d_h, surface = self._passage(side, at)
-        roughness = float(self.inside_roughness if side == "inside" else self.outside_roughness) / d_h
+        parts = self._drop(side, at, film, self._friction(side, at, film.Re))
+        factor = at.factor_of(self.drop_relation(side))
+        return {name: part * factor for name, part in parts.items()}
+
+    def _roughness_ratio(self, side: Side, d_h: Array) -> Array:
+        return float(self.inside_roughness if side == "inside" else self.outside_roughness) / d_h
+
+    def _friction(self, side: Side, at: Flowing, Re: Array) -> Array:
+        _, d_h, surface = self._passage(side, at)
+        roughness, wall = self._roughness_ratio(side, d_h), self._wall(at)
         if side == "inside" or self.finned is not None:
-            f = losses.friction_tube(film.Re, roughness, wall=self._wall(at))
-        else:
-            f = annulus.friction_annulus(film.Re, surface / self.shell_id, roughness, wall=self._wall(at))
+            return losses.friction_tube(Re, roughness, wall=wall)
+        return annulus.friction_annulus(Re, surface / self.shell_id, roughness, wall=wall)
+
+    def _drop(self, side: Side, at: Flowing, film: Film, f: Array) -> dict[str, Array]:
+        """The parts of a drop with this friction factor, dp_factor included."""
+        area, d_h, _ = self._passage(side, at)
         head = at.bulk.rho * film.velocity**2 / 2
         per_metre = f / d_h * head
         legs = self.legs_on_path(side)
@@ -450,8 +462,17 @@ class DoublePipe(Input):
             v = at.flow / (at.bulk.rho.mean(axis=1) * np.pi / 4 * float(nozzle) ** 2)
             heads = losses.NOZZLE_IN.value + losses.NOZZLE_OUT.value
             parts["nozzles"] = heads * at.bulk.rho.mean(axis=1) * v**2 / 2
-        factor = getattr(self.dp_factor, side) * at.factor_of(self.drop_relation(side))
-        return {name: part * factor for name, part in parts.items()}
+        return {name: part * getattr(self.dp_factor, side) for name, part in parts.items()}
+
+    def second_opinion_drops(self, side: Side, cells: Cells, at: Flowing) -> dict[str, Array]:
+        film = self.film(side, cells, at)
+        plain_annulus = side == "outside" and self.finned is None
+        relation = losses.churchill if plain_annulus else losses.colebrook
+        if float(film.Re.min()) < losses.RE_FRICTION_TURBULENT:
+            return {}
+        _, d_h, _ = self._passage(side, at)
+        f = relation(film.Re, self._roughness_ratio(side, d_h)) * losses.friction_wall_factor(film.Re, self._wall(at))
+        return {relation.name: sum(self._drop(side, at, film, f).values(), np.zeros(len(at.flow)))}
 
     def drop_relation(self, side: Side) -> Correlation:
         return annulus.annulus_turbulent_friction if side == "outside" and self.finned is None else losses.churchill
@@ -462,7 +483,7 @@ class DoublePipe(Input):
         counter = self.arrangement == "counter"
         if self._both_split:
             return exact.effectiveness_counter(NTU, Cr) if counter else exact.effectiveness_cocurrent(NTU, Cr)
-        split_is_min = inside_is_min if self.branches("inside") > 1 else ~np.asarray(inside_is_min)
+        split_is_min = inside_is_min if self.branches("inside") > 1 else ~np.asarray(inside_is_min, dtype=bool)
         return exact.effectiveness_split_banks(NTU, Cr, self.banks, split_is_min=split_is_min, counter=counter)
 
     def driving_force(self, T_in: Mapping[Side, Array], T_out: Mapping[Side, Array]) -> tuple[Array, Array] | str:
