@@ -55,9 +55,9 @@ RECOMPUTED: Mapping[str, str] = {
     "D10": "{shell_id} / 5 and {shell_id}, or half of the longest unsupported span of {tube_od}",
     "D12": "our own rating of the case",
     "D13": "{side.dp_allowed}",
-    "D16 inside.printed": "({side.flow} / (π/4 × {side.nozzle_id}²))² / {side.rho}",
-    "D16 outside.printed": "({side.flow} / (π/4 × {side.nozzle_id}²))² / {side.rho}",
-    "D18": "1000 kg/m³ × π/4 × {tube_length} × ({shell_id}² − {tubes} × ({od}² − {bore}²)) × {shells}",
+    "D16 inside.printed": "({side.flow} / (π/4 × {side.nozzle_id²}))² / {side.rho}",
+    "D16 outside.printed": "({side.flow} / (π/4 × {side.nozzle_id²}))² / {side.rho}",
+    "D18": "1000 kg/m³ × π/4 × {tube_length} × ({shell_id²} − {tubes} × ({od²} − {bore²})) × {shells}",
     "E3": "10/13 × the design pressure of the high side",
     "E8": "the case",
 }
@@ -96,8 +96,8 @@ def arithmetic(c: Checked, system: str = "si") -> tuple[str, ...]:
     if c.check.id == "A5":
         return (*_balance(c, terms, system), _apart(c, line, system))
     sheet = f"The sheet: {_sheet(c, line, terms, system)}"
-    if line.sheet == line.recomputed:
-        return sheet, "It lies within what is expected."
+    if line.bound == "within":
+        return sheet, _expected(c, line, terms, system)
     return sheet, _expected(c, line, terms, system), _apart(c, line, system)
 
 
@@ -109,14 +109,14 @@ def _formula(c: Checked, formulas: Mapping[str, str], terms: Terms) -> str:
 def _sheet(c: Checked, line: Line, terms: Terms, system: str) -> str:
     if line.of in c.subject.values:
         return f"{c.subject.label(line.of)} {terms(line.of)}"
-    made = _formula(c, PRINTED, terms)
-    return f"{made} = {c.shown(line.sheet, system)}" if made else c.shown(line.sheet, system)
+    shown = " = ".join(part for part in (_formula(c, PRINTED, terms), c.shown(line.sheet, system)) if part)
+    return f"{line.name}: {shown}" if line.name else shown
 
 
 def _expected(c: Checked, line: Line, terms: Terms, system: str) -> str:
-    made, shown = _formula(c, RECOMPUTED, terms), c.shown(line.recomputed, system)
+    made, shown = _formula(c, RECOMPUTED, terms), c.expected(system)
     if line.bound:
-        return f"Expected: {line.bound} {shown}{f' ({made})' if made else ''}"
+        return f"Expected: {shown}{f' ({made})' if made else ''}"
     return f"Recomputed: {made} = {shown}" if made else f"Recomputed: {shown}"
 
 
@@ -189,9 +189,9 @@ def _terms(c: Checked, system: str) -> Terms:
 
     def passage() -> str:
         if subject.double_pipe:
-            return f"π/4 × {bore()}²" if at == "inside" else f"π/4 × ({length(figures.shell_bore)}² − {od()}²)"
+            return f"π/4 × {term('bore²')}" if at == "inside" else f"π/4 × ({term('shell bore²')} − {term('od²')})"
         trains = f" × {typed('shells_in_parallel')}" if "shells_in_parallel" in c.fields else ""
-        return f"π/4 × {bore()}² × {tubes()} / {typed('tube_passes')}{trains}"
+        return f"π/4 × {term('bore²')} × {tubes()} / {typed('tube_passes')}{trains}"
 
     def area_of_tubes() -> str:
         if subject.double_pipe:
@@ -259,12 +259,16 @@ def _terms(c: Checked, system: str) -> Terms:
     whole: Mapping[str, Callable[[], str]] = {
         "surface": surface, "bore": bore, "tubes": tubes, "passage": passage, "area of tubes": area_of_tubes, "od": od,
         "ends": ends, "ratios": ratios, "arrangement": arrangement,
+        "shell bore": lambda: length(figures.shell_bore),
         "shells": lambda: product("shells_in_series", "shells_in_parallel") or "1",
         "parts": lambda: parts(c.where.partition(".")[2]), "parts in": lambda: parts("in"),
         "parts out": lambda: parts("out"),
     }  # fmt: skip
 
     def term(name: str) -> str:
+        if name.endswith("²"):
+            inner = term(name[:-1])
+            return f"{inner}²" if inner.endswith(")") else f"({inner})²"
         if name in whole:
             return whole[name]()
         if name == "side.change":

@@ -302,8 +302,8 @@ def cut(v: Figures, where: str) -> Line | Remark:
         share = float(v["baffle_cut"])
         if v["baffle_cut_by"] == "area":
             return Remark(
-                says=f"The cut is by area: {100 * share:.3g} % of the area is {100 * height_of_segment(share):.3g} % of the "
-                "diameter, which is what the methods take.",
+                says=f"The cut is by area: {100 * share:.3g} % of the area is {100 * height_of_segment(share):.3g} % "
+                "of the diameter, which is what the methods take.",
                 ask="Was the rating run with the cut by area or by diameter?",
             )
         return Remark()

@@ -8,6 +8,7 @@ from collections.abc import Iterator
 
 from engine import units
 from engine.datasheet import GRADES, Audit, Checked
+from engine.datasheet.arithmetic import arithmetic
 from engine.report.blocks import Block, Section, Table
 from engine.report.words import NONE, capital
 from engine.sheet.table import neutral
@@ -34,6 +35,7 @@ def sheet_sections(audit: Audit, system: str = "si") -> tuple[Section, ...]:
     made = (
         ("sheet-answer", f"Datasheet of {audit.sheet.item or 'an exchanger'}", _answer(audit, system)),
         ("sheet-found", "Lines that do not close", _found(audit, system)),
+        ("sheet-arithmetic", "Their arithmetic", _arithmetic(audit, system)),
         ("sheet-repairs", "What would clear them", _repairs(audit, system)),
         ("sheet-questions", "Questions to the vendor", _questions(audit, system)),
         ("sheet-clear", "Lines that close", _clear(audit, system)),
@@ -79,6 +81,12 @@ def _found(audit: Audit, system: str) -> Iterator[Block]:
         ),
         widths=(2.2, 0.7, 1.2, 1.2, 1.4, 2.4),
     )
+
+
+def _arithmetic(audit: Audit, system: str) -> Iterator[Block]:
+    for c in audit.found:
+        if c.grade != "note" and (lines := arithmetic(c, system)):
+            yield "\n".join((f"{c.check.id} {c.title()}", *lines))
 
 
 def _figures(c: Checked, system: str) -> tuple[str, str, str]:

@@ -2,8 +2,11 @@
 
 from __future__ import annotations
 
+import hashlib
 import io
+import json
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from functools import cache
 from pathlib import Path
 from typing import Any
@@ -18,9 +21,11 @@ from reportlab.platypus import CondPageBreak, Flowable, KeepTogether, Paragraph,
 from reportlab.platypus import Table as Grid
 
 from engine import __version__
+from engine.datasheet import Audit
 from engine.findings import Verdict
 from engine.rating import Rating
 from engine.report.blocks import Block, Bundle, Section, Table
+from engine.report.datasheet import sheet_sections
 from engine.report.drawings import BOLD, HAIR, INK, PALE, REGULAR, drawn, fitted
 from engine.report.sections import sections
 from engine.uncertainty import Intervals
@@ -63,6 +68,18 @@ def report_pdf(
     name = f"{case.tag or 'No tag'}{', revision ' + case.revision if case.revision else ''}"
     _, pages = _laid_out(written, name, case.input_hash, 0)
     return _laid_out(written, name, case.input_hash, pages)[0]
+
+
+def sheet_pdf(audit: Audit, system: str = "si") -> bytes:
+    """The audit of a datasheet on A4, with the questions to send back. Raises ValueError for an unknown system."""
+    first, *rest = sheet_sections(audit, system)
+    written = (replace(first, key="identity"), *rest)
+    sheet = audit.sheet
+    name = f"{sheet.item or 'No item'}{', revision ' + sheet.revision if sheet.revision else ''}"
+    stated = sorted((path, getattr(value, "text", "") or str(value)) for path, value in sheet.stated().items())
+    input_hash = hashlib.sha256(json.dumps(stated).encode()).hexdigest()[:16]
+    _, pages = _laid_out(written, name, input_hash, 0)
+    return _laid_out(written, name, input_hash, pages)[0]
 
 
 @cache

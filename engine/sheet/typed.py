@@ -21,7 +21,7 @@ SIDE_WORDS: Mapping[str, Side] = {
 """What a column of a pasted table may be headed by."""
 
 
-def read_typed(raw: Mapping[str, Any]) -> tuple[Sheet, tuple[Problem, ...]]:
+def sheet_as_typed(raw: Mapping[str, Any]) -> tuple[Sheet, tuple[Problem, ...]]:
     """The sheet of what can be read, and a problem for each entry that cannot; those are left out of the sheet."""
     kept = copy.deepcopy(dict(raw))
     problems: dict[str, Problem] = {}
@@ -45,7 +45,7 @@ def _drop(keys: dict[str, Any], path: str) -> None:
         keys.pop(path if path in keys else group, None)
 
 
-def nested(raw: Mapping[str, Any]) -> dict[str, Any]:
+def nested_sheet(raw: Mapping[str, Any]) -> dict[str, Any]:
     """The same keys with "inside.T_out" under "inside"; a key given in both ways stays as it is."""
     found: dict[str, Any] = {key: copy.copy(value) for key, value in raw.items() if "." not in key}
     for key, value in raw.items():
@@ -162,4 +162,4 @@ def raw_sheet(sheet: Sheet) -> dict[str, Any]:
     return raw
 
 
-__all__ = ["nested", "pasted_sheet", "raw_sheet", "read_typed"]
+__all__ = ["nested_sheet", "pasted_sheet", "raw_sheet", "sheet_as_typed"]
