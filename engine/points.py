@@ -17,7 +17,7 @@ from numpy.typing import NDArray
 from engine import march
 from engine.case import Case
 from engine.correlations import Array
-from engine.exchangers import Cells, Film, Flowing
+from engine.exchangers import REGIMES, Cells, Film, Flowing
 from engine.fluids import Fluid, Properties, Tabulated
 from engine.stated import SIDES, CaseError, Problem, Side, opposite
 from engine.steam import MOST_FLOODED, Flooded, Steam, steam_of
@@ -28,7 +28,7 @@ TOLERANCE = 1e-8
 """Of the outer loop: largest change of a temperature between two iterations over the inlet difference."""
 SETTLED = 1e-6
 """Residual up to which a point counts as converged."""
-SETTLE_AT = (1e-2, 1e-6)
+SETTLE_AT = (1e-1, 1e-5)
 """Residuals at which a point's slowly changing parts are found: roughly, then for good."""
 PATIENCE = 14
 """Iterations after which a chunk goes on without the few points that settle slowly."""
@@ -509,26 +509,46 @@ def film_spread(
     With local values weighted by local U, as everywhere: r = ⟨U r⟩/⟨U⟩ over the nodes of the cell.
     """
     shape = np.broadcast_shapes(*(h_mean[side].shape for side in SIDES))
-    if cells.nodes is None or cells.weights is None:
+    nodes, weights = cells.nodes, cells.weights
+    if nodes is None or weights is None:
         return np.ones((shape[0], 2, shape[1]))
-    count = cells.weights.shape[1]
-    local: list[Array] = []
-    for side in SIDES:
-        h = np.broadcast_to(h_mean[side], shape)
-        if side in cells.nodes.start and side in flowing:
-            at = case.exchanger.film(side, cells.nodes, _repeated(flowing[side], count)).h
-            at = at.reshape(*at.shape[:-1], -1, count)
-            # The printed mean over the cell stands; the nodes only say how it is spread.
-            local.append(at * (h / (at * cells.weights).sum(axis=-1))[..., None])
-        else:
-            local.append(h[..., None])
-    ratio = (case.exchanger.area_ratio, 1.0)
-    films_r = [ratio[i] / h for i, h in enumerate(local)]
-    rest = r["wall"] + r["inside fouling"] + r["outside fouling"]
-    U = cells.weights / (films_r[0] + films_r[1] + rest[..., None])
+    count = weights.shape[1]
+    ratio: dict[Side, float] = {"inside": case.exchanger.area_ratio, "outside": 1.0}
+    rest = (r["wall"] + r["inside fouling"] + r["outside fouling"])[..., None]
+    local: dict[Side, Array] = {side: ratio[side] / np.broadcast_to(h_mean[side], shape)[..., None] for side in SIDES}
+    looked_at = {side: _repeated(at, count) for side, at in flowing.items() if side in nodes.start}
+    scale: dict[Side, Array] = {}
+    laminar = False
+    for side, at in looked_at.items():
+        film = case.exchanger.film(side, nodes, at)
+        h = film.h.reshape(*film.h.shape[:-1], -1, count)
+        # The printed mean over the cell stands; the nodes only say how it is spread.
+        scale[side] = (h_mean[side] / (h * weights).sum(axis=-1))[..., None]
+        local[side] = ratio[side] / (h * scale[side])
+        laminar = laminar or bool((film.regime < REGIMES.index("turbulent")).any())
+    if laminar:
+        # Where a film is thin more heat passes, and its surface moves away from the wall's: it changes with it.
+        U = 1.0 / (local["inside"] + local["outside"] + rest)
+        U_cell = in_series(r)
+        for side, at in looked_at.items():
+            way = U * local[side] / (U_cell * r[f"{side} film"])[..., None]
+            moved = _at_surface(at, way.reshape(*way.shape[:-2], -1))
+            h = case.exchanger.film(side, nodes, moved).h
+            local[side] = ratio[side] / (h.reshape(*h.shape[:-1], -1, count) * scale[side])
+    U = weights / (local["inside"] + local["outside"] + rest)
     total = U.sum(axis=-1)
-    means = [(U * film).sum(axis=-1) / total for film in films_r]
-    return np.stack([means[i] * h_mean[side] / ratio[i] for i, side in enumerate(SIDES)], axis=1)
+    means = {side: (U * local[side]).sum(axis=-1) / total for side in SIDES}
+    return np.stack([means[side] * h_mean[side] / ratio[side] for side in SIDES], axis=1)
+
+
+def _at_surface(at: Flowing, way: Array) -> Flowing:
+    """The same bulk with a surface `way` times as far from it in temperature; ln mu and ln Pr linear between."""
+    return replace(
+        at,
+        T_wall=at.T + way * (at.T_wall - at.T),
+        mu_wall=at.bulk.mu * (at.mu_wall / at.bulk.mu) ** way,
+        Pr_wall=at.bulk.Pr * (at.Pr_wall / at.bulk.Pr) ** way,
+    )
 
 
 def _repeated(at: Flowing, count: int) -> Flowing:
