@@ -485,7 +485,7 @@ class Case(Input):
             if plugged is not None and tubes is None:
                 says = f"is not stated for a {self.exchanger.type} exchanger: it has no tubes to plug"
                 yield Problem(path=f"{place}.tubes_plugged", says=says)
-            elif plugged is not None and plugged >= tubes:
+            elif plugged is not None and tubes is not None and plugged >= tubes:
                 says = f"{plugged} of {tubes} tubes leaves none open; allowed is up to {tubes - 1}"
                 yield Problem(path=f"{place}.tubes_plugged", says=says)
             for side in SIDES:
