@@ -58,7 +58,7 @@ def scales(case: Case, side: Side) -> bool:
 # --- limits -----------------------------------------------------------------------------------------------------------
 
 
-@dataclass(frozen=True, kw_only=True)
+@dataclass(frozen=True)
 class Limit:
     """One limit that a condition can hit."""
 
@@ -89,57 +89,36 @@ class Limit:
 
 def limits_of(case: Case) -> tuple[Limit, ...]:
     """The limits that a case states, and those of common practice that apply to it."""
-    found: list[Limit] = []
     span = abs(case.T_in("inside") - case.T_in("outside"))
+    found: list[Limit] = []
 
-    def add(key: str, name: str, column: str, quantity: str, value: float | None, upper: bool) -> None:
+    def add(
+        key: str, name: str, column: str, quantity: str, value: float | None, upper: bool = True, stated: bool = True
+    ) -> None:
         if value is not None:
             scale = span if quantity == "temperature" else float(value)
-            found.append(
-                Limit(
-                    key=key, name=name, column=column, quantity=quantity, value=float(value), upper=upper, scale=scale
-                )
-            )
+            found.append(Limit(key, name, column, quantity, float(value), upper, scale, stated))
 
     for side in SIDES:
-        stream, limits, of = case.stream(side), case.limits, f"of the {case.exchanger.side_names[side].lower()}"
-        hot = side == case.hot
-        add(f"{side}.T_out", f"the required outlet {of}", f"{side}.T_out", "temperature", stream.T_out, hot)
-        add(
-            f"{side}.dp_allowed",
-            f"the allowed drop {of}",
-            f"{side}.dp",
-            "pressure_difference",
-            stream.dp_allowed,
-            True,
-        )
-        for name, words, column, quantity, upper in (
-            ("velocity_max", "the highest velocity", "velocity", "velocity", True),
-            ("wall_T_max", "the highest wall temperature", "surface_T_max", "temperature", True),
-            ("wall_T_min", "the lowest wall temperature", "surface_T_min", "temperature", False),
-            ("design_temperature", "the design temperature", "T_max", "temperature", True),
+        stream, limits, place = case.stream(side), case.limits, case.exchanger.side_names[side].lower()
+        T, of = "temperature", f"of the {place}"
+        if not stream.condenses:
+            hot, dp, v = side == case.hot, stream.dp_allowed, getattr(limits, f"{side}_velocity_max")
+            add(f"{side}.T_out", f"the required outlet {of}", f"{side}.T_out", T, stream.T_out, hot)
+            add(f"{side}.dp_allowed", f"the allowed drop {of}", f"{side}.dp", "pressure_difference", dp)
+            add(f"limits.{side}_velocity_max", f"the highest velocity {of}", f"{side}.velocity", "velocity", v)
+        for name, words, column, upper in (
+            ("wall_T_max", "the highest wall temperature", "surface_T_max", True),
+            ("wall_T_min", "the lowest wall temperature", "surface_T_min", False),
+            ("design_temperature", "the design temperature", "T_max", True),
         ):
             value = getattr(limits, f"{side}_{name}")
-            add(f"limits.{side}_{name}", f"{words} {of}", f"{side}.{column}", quantity, value, upper)
+            add(f"limits.{side}_{name}", f"{words} {of}", f"{side}.{column}", T, value, upper)
         if scales(case, side):
-            add(
-                f"{side}.scaling",
-                f"the scaling temperature of cooling water, {case.exchanger.side_names[side].lower()}",
-                f"{side}.surface_T_max",
-                "temperature",
-                SCALING_SURFACE,
-                True,
-            )
-            found[-1] = replace(found[-1], stated=False)
+            words = f"the scaling temperature of cooling water, {place}"
+            add(f"{side}.scaling", words, f"{side}.surface_T_max", T, SCALING_SURFACE, stated=False)
     lowest = case.limits.minimum_metal_temperature
-    add(
-        "limits.minimum_metal_temperature",
-        "the minimum metal temperature",
-        "metal_T_min",
-        "temperature",
-        lowest,
-        False,
-    )
+    add("limits.minimum_metal_temperature", "the minimum metal temperature", "metal_T_min", T, lowest, upper=False)
     return tuple(found)
 
 
@@ -160,10 +139,10 @@ class Conditions:
     """Conditions of one case, one row each, in the fouled state that each of them states.
 
     Columns of `frame`, SI: the condition itself (`CONDITIONS`), the figures of `rate_points`, per side velocity [m/s],
-    highest bulk and highest and lowest surface temperature [K] and regime, the lowest metal temperature [K] (these
-    extremes over the clean state too, in which every condition begins),
+    highest bulk and highest and lowest surface temperature [K] and regime, the lowest metal temperature [K],
     `slack KEY` of each limit in its own unit (negative where it is passed), `limit`, the key of the limit that is
-    passed the furthest, or empty, and `problem`. A row with a problem has NaN figures.
+    passed the furthest, or empty, and `problem`. Extremes and problems are those of the clean state too, in which every
+    condition begins. A row with a problem has NaN figures.
     """
 
     frame: pd.DataFrame
@@ -233,12 +212,9 @@ def _conditions(case: Case, frame: pd.DataFrame, index: Sequence[float | str]) -
     limits = limits_of(case)
     for limit in limits:
         frame[f"slack {limit.key}"] = limit.slack(frame[limit.column])
-    relative = np.array([frame[f"slack {limit.key}"] / limit.scale for limit in limits]).reshape(
-        len(limits), len(frame)
-    )
+    relative = np.vstack([np.zeros(len(frame)), *(frame[f"slack {limit.key}"] / limit.scale for limit in limits)])
     keys = np.array(["", *(limit.key for limit in limits)], dtype=object)
-    passed = np.nan_to_num(relative, nan=0.0).min(axis=0, initial=0.0) < 0
-    frame["limit"] = keys[np.where(passed, 1 + relative.argmin(axis=0), 0) if limits else np.zeros(len(frame), int)]
+    frame["limit"] = keys[np.nan_to_num(relative).argmin(axis=0)]
     frame.index = pd.Index(index)
     return Conditions(frame=frame, limits=limits)
 
