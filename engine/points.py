@@ -28,7 +28,7 @@ TOLERANCE = 1e-8
 """Of the outer loop: largest change of a temperature between two iterations over the inlet difference."""
 SETTLED = 1e-6
 """Residual up to which a point counts as converged."""
-SETTLE_AT = (1e-1, 1e-5)
+SETTLE_AT = (1e-1, 1e-6)
 """Residuals at which a point's slowly changing parts are found: roughly, then for good."""
 PATIENCE = 14
 """Iterations after which a chunk goes on without the few points that settle slowly."""

@@ -250,8 +250,7 @@ class DoublePipe(Input):
     @property
     def _cells_a_leg(self) -> int:
         legs = self.legs_in_series * (1 if self._both_split else self.banks)
-        # In co-current flow both entrances crowd the same end, which needs one cell more.
-        return max(2 if self.arrangement == "counter" else 3, -(-12 // legs))
+        return max(2, -(-12 // legs))
 
     @property
     def _both_split(self) -> bool:
