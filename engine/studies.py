@@ -15,7 +15,7 @@ from numpy.typing import ArrayLike, NDArray
 from pydantic import ValidationError
 
 from engine import fluids, units
-from engine.case import Case, SolutionFluid
+from engine.case import R_FOULING, Case, SolutionFluid
 from engine.correlations import Array, Excursion
 from engine.exchangers import REGIMES
 from engine.points import Points, Solution, joined, points_of
@@ -364,18 +364,19 @@ def _variables_of(case: Case, side: Side) -> Iterable[Variable]:
         quantity="fouling_resistance",
         today=float(stream.R_fouling),
         low=0.0,
-        high=type(stream).declared()["R_fouling"].high,  # type: ignore[union-attr]
+        high=R_FOULING.high,
     )
     if isinstance(stream.fluid, SolutionFluid):
-        code = stream.fluid.solution.strip().lower()
-        offer = next(o for o in fluids.offered() if o.kind == "solution" and code in (o.name.lower(), o.code.lower()))
+        solute, code = stream.fluid.solution, stream.fluid.solution.strip().lower()
+        solutions = (offer for offer in fluids.offered() if offer.kind == "solution")
+        offer = next((o for o in solutions if code in (o.name.lower(), o.code.lower())), None)
         yield Variable(
             path=f"{side}.mass_fraction",
-            name=f"the mass fraction of {offer.name} ({where})",
+            name=f"the mass fraction of {offer.name if offer else solute} ({where})",
             quantity="fraction",
             today=float(stream.fluid.mass_fraction),
-            low=offer.fraction_low or 0.0,
-            high=1.0 if offer.fraction_high is None else offer.fraction_high,
+            low=offer.fraction_low or 0.0 if offer else 0.0,
+            high=offer.fraction_high or 1.0 if offer else 1.0,
             tries=COARSE_GRID,
         )
 
@@ -390,11 +391,12 @@ def _variable(case: Case, path: str) -> Variable:
 
 def restated(case: Case, path: str, value: float) -> Case:
     """The case with another value at the path of a variable. Raises CaseError where the value cannot be stated."""
-    place = {"tubes_plugged": "exchanger.tubes_plugged"}.get(path, path).replace(
-        ".mass_fraction", ".fluid.mass_fraction"
-    )
-    stated: object = int(value) if path == "tubes_plugged" else float(value)
-    if path.endswith(".p"):
+    place, stated = path, cast(object, float(value))
+    if path == "tubes_plugged":
+        place, stated = "exchanger.tubes_plugged", int(value)
+    elif path.endswith(".mass_fraction"):
+        place = path.replace(".", ".fluid.")
+    elif path.endswith(".p"):
         stated = Figure(value, quantity="pressure_absolute")
 
     def put(part: Input, first: str, *rest: str) -> Input:
