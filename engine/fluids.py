@@ -865,7 +865,7 @@ _NEGLIGIBLE = 1e-12
 _NARROWEST = 1e-3
 """Kelvin. CoolProp's transport properties have corners and steps; a piece this narrow holds one."""
 _LARGEST_STEP = 0.03
-_WINDOW_AGREES = (1e-8, 1e-8, 1e-7, 1e-7, 1e-7, 1e-11)
+_WINDOW_AGREES = (1e-8, 1e-8, 1e-7, 1e-7, 1e-7, 1e-13)
 """Relative size below which a term of a windowed polynomial is left out, by row."""
 _CHUNK = 2048
 

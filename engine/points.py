@@ -24,12 +24,13 @@ from engine.steam import MOST_FLOODED, Flooded, Steam, steam_of
 
 CHUNK = 512
 """Points solved at once: small enough for the work arrays to stay in the processor's cache."""
-TOLERANCE = 1e-8
+TOLERANCE = 2e-8
 """Of the outer loop: largest change of a temperature between two iterations over the inlet difference."""
 SETTLED = 1e-6
 """Residual up to which a point counts as converged."""
-SETTLE_AT = (1e-1, 1e-6)
-"""Residuals at which a point's slowly changing parts are found: roughly, then for good."""
+SETTLE_AT = (1e-1, 1e-5, 1e-8)
+"""Residuals at which a chunk's slowly changing parts are found: the films' spread roughly, both parts, and the balance
+for good."""
 PATIENCE = 14
 """Iterations after which a chunk goes on without the few points that settle slowly."""
 MOST_ITERATIONS = 80
@@ -482,11 +483,12 @@ def _settling(points: Points, condensed: Condensed, T_cold: Array, passed: Array
     return np.minimum((points.hottest_chest(side) - T_cold) / (condensed.T_sat - T_cold), most / passed)
 
 
-def _settle(on: _Setting, step: _Step, *, roughly: bool) -> _Settled:
-    found = step.found
-    h = {side: step.films[side].h for side in SIDES}
-    spread = film_spread(on.case, on.cells, step.flowing, h, step.r)
-    if roughly:
+def _settle(on: _Setting, step: _Step, level: int) -> _Settled:
+    found, spread = step.found, step.settled.spread
+    if level < len(SETTLE_AT):
+        h = {side: step.films[side].h for side in SIDES}
+        spread = film_spread(on.case, on.cells, step.flowing, h, step.r)
+    if level == 1:
         return replace(step.settled, spread=spread)
     met = (
         (found.inside_entry, found.inside_exit, found.inside_mean),
@@ -613,7 +615,7 @@ def _march(on: _Setting, points: Points, most: int) -> Solution:
         before = (new, change) if count > 1 else None
         if level < len(SETTLE_AT) and worst <= SETTLE_AT[level]:
             level += 1
-            settled = _settle(on, step, roughly=level < len(SETTLE_AT))
+            settled = _settle(on, step, level)
             before = None
     return _solution(on, points, step, np.full(P, count), residual)
 

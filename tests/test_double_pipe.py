@@ -204,7 +204,7 @@ def test_balance_closes_and_the_chain_sums(d):
     state = rate(case).fouled
     for side in SIDES:
         h = case.fluid(side).enthalpy(np.array([case.T_in(side), state.T_out[side]]))
-        assert case.flow(side) * abs(h[1] - h[0]) == pytest.approx(state.duty, rel=1e-8)
+        assert case.flow(side) * abs(h[1] - h[0]) == pytest.approx(state.duty, rel=1e-9)
     assert sum(state.resistances.values()) == pytest.approx(1 / state.U_dirty, rel=1e-12)
     assert state.duty == pytest.approx(state.U_dirty * state.area * state.mtd, rel=1e-12)
     assert sum(state.sides["inside"].drops.values()) == pytest.approx(state.sides["inside"].dp, rel=1e-12)
