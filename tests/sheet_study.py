@@ -109,16 +109,16 @@ def false_alarms(count: int, seed: int, with_case: bool = False) -> list[list[st
 
 
 def scores(count: int, seed: int, with_case: bool = False) -> list[Score]:
-    """One error in each of so many sheets, the kinds in turn."""
+    """One error in each of so many sheets, the kinds in turn; a sheet on which a kind cannot be made is passed over."""
     rng = np.random.default_rng(seed)
+    drawn = sheets(sys.maxsize, rng)
     kinds = list(ERRORS)
     found = []
-    for i, vendor in enumerate(sheets(count, rng)):
+    for i in range(count):
         injected = None
-        tried = 0
         while injected is None:
-            injected = ERRORS[kinds[(i + tried) % len(kinds)]](rng, vendor)
-            tried += 1
+            vendor = next(drawn)
+            injected = ERRORS[kinds[i % len(kinds)]](rng, vendor)
         found.append(score(injected, vendor, with_case))
     return found
 

@@ -367,6 +367,8 @@ def _forced_duty(rng: Random, vendor: Vendor) -> Injected:
 @_error("uncorrected MTD printed as corrected")
 def _uncorrected(rng: Random, vendor: Vendor) -> Injected | None:
     values = vendor.values
+    if values["F"] > 0.97:
+        return None
     changes = {"mtd": values["mtd"] / values["F"]}
     return Injected(kind="uncorrected MTD printed as corrected", vendor=vendor.having(changes), guilty=("mtd",))
 
@@ -379,6 +381,8 @@ def _two_shells(rng: Random, vendor: Vendor) -> Injected | None:
     C = {side: values[f"{side}.flow"] * values[f"{side}.cp"] for side in SIDES}
     P = values["duty"] / (min(C.values()) * abs(values["inside.T_in"] - values["outside.T_in"]))
     F = float(exact.correction_factor(P, min(C.values()) / max(C.values()), 2))
+    if F < 1.03 * values["F"]:
+        return None
     mtd = values["mtd"] / values["F"] * F
     changes = {"F": F, "mtd": mtd, "U_service": values["duty"] / (values["area"] * mtd)}
     return Injected(
@@ -511,6 +515,8 @@ def _inlet_viscosity(rng: Random, vendor: Vendor) -> Injected | None:
     fluid = vendor.case.fluid(side)
     T_in, T_out = (vendor.values[f"{side}.{end}"] for end in ("T_in", "T_out"))
     ratio = float(fluid.at(np.asarray(T_in)).mu / fluid.at(np.asarray(0.5 * (T_in + T_out))).mu)
+    if abs(ratio - 1) < 0.2:
+        return None
     changes = {f"{side}.mu": vendor.values[f"{side}.mu"] * ratio}
     return Injected(kind="viscosity at the inlet only", vendor=vendor.having(changes), guilty=(f"{side}.mu",))
 

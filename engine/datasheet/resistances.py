@@ -105,7 +105,8 @@ def excess(v: Figures, where: str) -> Line | Remark:
             name="one and the excess area",
             share=0.02,
         )
-    if U_dirty == U_service and 1 / (1 / float(v["U_clean"]) + fouling(v)) > COPIED * U_dirty:
+    by_films = 1 / (1 / float(v["U_clean"]) + fouling(v))
+    if U_dirty == U_service and by_films > COPIED * U_dirty:
         return Remark(
             says="Dirty and service transfer rate are the same to the last digit: one seems to be copied.",
             ask="Is the dirty transfer rate computed from films and fouling, or is it duty over surface and mean "
@@ -278,7 +279,6 @@ def wall(v: Figures, where: str) -> Line:
     "and from which enquiry is it?",
     over=SIDES,
     share=0.02,
-    closes=True,
 )
 def fouling_range(v: Figures, where: str) -> Line:
     path = f"{where}.R_fouling"

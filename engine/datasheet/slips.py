@@ -128,12 +128,15 @@ def _of_parts(subject: Subject, path: str, name: str) -> Iterator[tuple[str, flo
         yield "the unit for one shell", float(whole)
     if name == "flow" and n["shells_in_parallel"] > 1:
         yield "flow per shell for the total", 1 / n["shells_in_parallel"]
-    if name == "R_fouling" and path.startswith("inside"):
+    if path in ("inside.R_fouling", "inside.h"):
         try:
             ratio = outside_diameter(v) / bore(v)
         except Missing:
             return
-        yield "an inside resistance already on the outside surface", ratio
+        if name == "h":
+            yield "an inside film already on the outside surface", 1 / ratio
+        else:
+            yield "an inside resistance already on the outside surface", ratio
 
 
 def _of_shells(subject: Subject, path: str, x: float) -> Iterator[Candidate]:
