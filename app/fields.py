@@ -155,7 +155,7 @@ def words(model: type[engine.Input], raw: Any, path: Path) -> str:
             said.append(part.declared.name)
             continue
         if part.name in engine.SIDES:
-            exchanger = next(p for p in parts(model) if p.name == "exchanger")
+            exchanger = next(p for p in parts(engine.Case) if p.name == "exchanger")
             said.append(kind_stated(exchanger.models, get(raw, ("exchanger",))).side_names[part.name])
         elif part.shape != "rows":
             said.append(part.title)

@@ -8,9 +8,9 @@ import streamlit as st
 HERE = Path(__file__).resolve().parent
 sys.path[:0] = [str(HERE.parent)]
 
-from app import frame, page_case, page_rating, page_reach, page_report, page_trust  # noqa: E402
+from app import frame, page_case, page_rating, page_reach, page_report, page_sheet, page_trust  # noqa: E402
 
-PAGES = (page_case, page_rating, page_reach, page_report, page_trust)
+PAGES = (page_case, page_rating, page_reach, page_sheet, page_report, page_trust)
 
 st.set_page_config(page_title="Countercheck", page_icon=str(HERE / "icon.svg"), layout="wide")
 st.navigation(

@@ -125,9 +125,13 @@ def saving() -> None:
 
 
 def case_file() -> str:
+    """The case as it will be read again; what does not read, and a datasheet, as typed."""
     raw = session.case()
     case = session.checked(session.text_of(raw)).case
-    return engine.dump_case(case) if case is not None else json.dumps(raw, indent=1, ensure_ascii=False) + "\n"
+    if case is None:
+        return json.dumps(raw, indent=1, ensure_ascii=False) + "\n"
+    sheet = {"sheet": raw["sheet"]} if raw.get("sheet") else {}
+    return json.dumps({**engine.raw_case(case), **sheet}, indent=1, ensure_ascii=False) + "\n"
 
 
 def file_name(raw: dict[str, Any], ending: str) -> str:

@@ -275,8 +275,10 @@ def text_of(raw: dict[str, Any]) -> str:
 
 @st.cache_data(max_entries=512, show_spinner=False)
 def checked(text: str) -> Checked:
+    """A case without its datasheet, which no rating reads: what is wrong on it is said on the page of the sheet."""
+    raw = {name: value for name, value in json.loads(text).items() if name != "sheet"}
     try:
-        return Checked(engine.parse_case(fields.filled(engine.Case, json.loads(text))), ())
+        return Checked(engine.parse_case(fields.filled(engine.Case, raw)), ())
     except engine.CaseError as error:
         return Checked(None, error.problems)
 

@@ -107,12 +107,12 @@ def bids_side_by_side(audits: Mapping[str, Audit], case: Case | None = None, sys
 
 def _one_basis(bids: Mapping[str, Bid], case: Case | None, words: Words) -> Iterator[Block]:
     fouling: dict[Side, float] = {side: _common_fouling(bids.values(), case, side) for side in SIDES}
-    R = " and ".join(words.show(fouling[side], "fouling_resistance", 3) for side in SIDES)
+    R = [words.show(fouling[side], "fouling_resistance", 3) for side in SIDES]
     whose = "the enquiry" if case is not None else "the bid that states most"
     service = "the service of the enquiry" if case is not None else "the service that each sheet states"
     yield (
-        f"Whole unit, outside surface, fouling of {whose} for all (inside and outside, {R}), and our own rating of "
-        f"each exchanger in {service}."
+        f"Whole unit, outside surface, fouling of {whose} for all (inside {R[0]}, outside {R[1]}), and our own rating "
+        f"of each exchanger in {service}."
     )
     rows: list[tuple[str, ...]] = []
 
@@ -131,9 +131,13 @@ def _one_basis(bids: Mapping[str, Bid], case: Case | None, words: Words) -> Iter
     row("Our duty, fouled", [words.show(r.fouled.duty if r else None, "heat_flow") for r in known])
     row("Our U, fouled", [words.show(r.fouled.U_dirty if r else None, "heat_transfer_coefficient", 3) for r in known])
     row("Our margin of U", [_percent(r.fouled.margin if r else None) for r in known])
-    for side, name in zip(SIDES, ("inside", "outside"), strict=True):
+    about = each[0].audit.subject
+    for side in SIDES:
         drops = [r.fouled.sides[side].dp if r else None for r in known]
-        row(f"Our pressure drop, {name}", [words.show(drop, "pressure_difference", 3) for drop in drops])
+        row(
+            f"Our pressure drop ({about.side_name(side)})",
+            [words.show(drop, "pressure_difference", 3) for drop in drops],
+        )
     yield Table(header=("On one basis", *bids), rows=tuple(rows))
     for name, rating in zip(bids, ratings, strict=True):
         if isinstance(rating, str):
