@@ -12,7 +12,7 @@ import pytest
 
 import engine.proofs
 from engine import correlations
-from engine.correlations import REGISTER
+from engine.correlations import ARGUMENTS, REGISTER
 from engine.proofs import PARTS, PROOF_KINDS, Proof, proof_table, rows
 from engine.proofs.double_pipe import oil_cooler
 
@@ -39,6 +39,11 @@ def test_every_value_of_a_subject_is_reproduced(subject):
 @pytest.mark.parametrize("name", REGISTER)
 def test_every_registered_relation_has_a_value_that_is_not_its_own(name):
     assert name in BY_SUBJECT
+
+
+def test_every_argument_that_has_a_limit_has_its_plain_name():
+    assert {limit.argument for relation in REGISTER.values() for limit in relation.valid} == set(ARGUMENTS)
+    assert str(REGISTER["churchill"].valid[0]) == "roughness over diameter 0 to 0.05"
 
 
 def test_every_module_of_rows_is_read():

@@ -6,7 +6,7 @@ report, the uncertainty, and the test that each correlation has a check value.
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from typing import Any, Literal
 
@@ -30,6 +30,28 @@ class Source:
         return self.text if self.checked else f"{self.text} (printed page not checked)"
 
 
+ARGUMENTS: Mapping[str, str] = {
+    "Re": "Re",
+    "Re_film": "Re of the condensate film",
+    "Re_vapour": "Re of the vapour",
+    "Re_L": "Re of the whole flow as liquid",
+    "Ra": "Ra",
+    "Pr": "Pr",
+    "Pr_ratio": "Pr at the wall over that of the bulk",
+    "mu_ratio": "viscosity at the wall over that of the bulk",
+    "T_ratio": "kelvin temperature of the wall over that of the bulk",
+    "d_over_L": "diameter over length",
+    "d_h_over_L": "hydraulic diameter over length",
+    "a": "diameter ratio of the annulus",
+    "roughness_ratio": "roughness over diameter",
+    "pitch_ratio": "tube pitch over tube diameter",
+    "baffle_cut": "baffle cut over shell bore",
+    "p_reduced": "pressure over the critical one",
+    "x": "vapour quality",
+}
+"""Every argument that a limit is published for, in plain words."""
+
+
 @dataclass(frozen=True, kw_only=True)
 class Range:
     """The published span of one argument, both ends inside. NaN is outside."""
@@ -41,12 +63,20 @@ class Range:
     def outside(self, x: Array) -> NDArray[np.bool_]:
         return ~((x >= self.low) & (x <= self.high))
 
-    def __str__(self) -> str:
+    @property
+    def name(self) -> str:
+        """The argument in plain words."""
+        return ARGUMENTS[self.argument]
+
+    @property
+    def span(self) -> str:
+        low, high = (f"{x:.0f}" if abs(x) >= 1e4 else f"{x:.4g}" for x in (self.low, self.high))
         if np.isneginf(self.low):
-            return f"{self.argument} up to {self.high:g}"
-        if np.isposinf(self.high):
-            return f"{self.argument} from {self.low:g}"
-        return f"{self.argument} {self.low:g} to {self.high:g}"
+            return f"up to {high}"
+        return f"from {low}" if np.isposinf(self.high) else f"{low} to {high}"
+
+    def __str__(self) -> str:
+        return f"{self.name} {self.span}"
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -26,16 +26,6 @@ WIDE = 0.3
 
 STATE_IT = "State it where it is known."
 
-ARGUMENTS = {
-    "d_over_L": "diameter over length",
-    "d_h_over_L": "hydraulic diameter over length",
-    "a": "diameter ratio of the annulus",
-    "mu_ratio": "viscosity at the wall over that of the bulk",
-    "Pr_ratio": "Pr at the wall over that of the bulk",
-    "T_ratio": "kelvin temperature of the wall over that of the bulk",
-}
-"""Arguments of the relations whose names need words."""
-
 
 @rule("no-answer", title="The physics leaves no answer", grades=("stop",), needs="nothing", source=OWN)
 def no_answer(s: Subject) -> Iterator[Finding]:
@@ -91,11 +81,10 @@ def outside_published_range(s: Subject, side: Side) -> Iterator[Finding]:
         for e in s.states[name].sides[side].excursions
     }
     for e in excursions.values():
-        argument = ARGUMENTS.get(e.limit.argument, e.limit.argument)
+        argument, published = e.limit.name, e.limit.span
         relation = e.correlation.replace("_", " ")
         low, high = (s.show(x, "dimensionless") for x in (e.lowest, e.highest))
         ends = low if low == high else f"{low} to {high}"
-        published = str(e.limit).removeprefix(f"{e.limit.argument} ")
         yield s.finding(
             "act" if e.share > 0.5 else "watch",
             says=f"The {s.name(side)} runs at {argument} {ends}, outside the published {published} of the relation "

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import math
-import re
 from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any
@@ -12,7 +11,6 @@ from engine import units
 from engine.case import SolutionFluid, SteamFluid, Stream
 from engine.correlations import Correlation, Source
 from engine.correlations.sources import COMMON_PRACTICE
-from engine.findings.validity import ARGUMENTS
 from engine.stated import Figure, Stated
 
 NONE = "–"
@@ -112,11 +110,7 @@ def relation_name(relation: Correlation) -> str:
 
 def limits_of(relation: Correlation) -> str:
     """The published limits in words."""
-    said = [
-        str(limit).replace(limit.argument, ARGUMENTS.get(limit.argument, limit.argument.replace("_", " ")), 1)
-        for limit in relation.valid
-    ]
-    return re.sub(r"\S+e\+\d+", lambda found: f"{float(found[0]):.0f}", "; ".join(said)) or "no limit printed"
+    return "; ".join(str(limit) for limit in relation.valid) or "no limit printed"
 
 
 def page_of(source: Source) -> str:
