@@ -29,12 +29,10 @@ GRADES: tuple[Grade, ...] = ("stop", "act", "watch", "note")
 MODULES = ("balance", "driving_force", "resistances", "geometry", "limits")
 """The files of checks, groups A to E."""
 
-COMMON_PRACTICE = "common practice"
-DEFINITION = "definition"
 NOTED, STOPPED = 2.0, 10.0
 """Tolerances up to which a misfit is a note, and beyond which it stops."""
 NOTED_ALLOWANCES = 3.0
-
+"""Allowances up to which it is a note all the same."""
 
 Bound = Literal["", "at least", "at most", "within"]
 
@@ -61,6 +59,8 @@ class Line:
     absolute: float | None = None
     noted: float = 0.0
     """Misfit up to which it is a note at most, in SI."""
+    impossible: bool = False
+    """Whether a misfit beyond rounding cannot be at all, and stops."""
     grade: Grade | None = None
     """The gravest that this line can reach, where it is less than the check's."""
 
@@ -106,8 +106,6 @@ class Check:
     """What the misfit is a misfit of, for its consequence."""
     closes: bool = False
     """Whether its failure is a contradiction, which some figure's change can clear."""
-    impossible: bool = False
-    """Whether a misfit beyond rounding cannot be at all, and stops."""
 
     def places(self, subject: Subject) -> tuple[str, ...]:
         """For which it is made on a sheet; one nameless place where there is none, so that it ends not possible."""
@@ -153,19 +151,19 @@ class Equation:
     where: str
     subject: Subject
 
-    def read(self, **changed: float) -> Line | Remark:
-        """Raises Missing."""
-        return self._read(changed)[0]
-
     def reread(self, changed: Mapping[str, float]) -> Line | Remark:
+        """The check with some figures changed. Raises Missing."""
         return self._read(changed)[0]
 
     def _read(self, changed: Mapping[str, float]) -> tuple[Line | Remark, set[str]]:
         v = Figures({**self.subject.values, **changed} if changed else self.subject.values, self.subject)
         try:
-            return self.check.read(v, self.where), v.read
+            found = self.check.read(v, self.where)
         except (ValueError, ZeroDivisionError, OverflowError) as error:
             raise Impossible(f"figures between which this can be computed ({error})") from None
+        if isinstance(found, Line) and not math.isfinite(found.misfit):
+            raise Impossible("figures between which this can be computed (they are out of the range of numbers)")
+        return found, v.read
 
     def allowance(self, line: Line) -> float:
         share = self.check.share if line.share is None else line.share
@@ -189,9 +187,7 @@ class Equation:
         tolerance, misfit = strict + allowance, abs(found.misfit)
         # A misfit of nothing but the last bits of a float is none.
         tolerance = max(tolerance, 1e-9 * max(abs(found.sheet), abs(found.recomputed)))
-        grade = self._grade(misfit, tolerance, wide + allowance, max(NOTED_ALLOWANCES * allowance, found.noted))
-        if grade is not None and found.grade is not None:
-            grade = max(grade, found.grade, key=GRADES.index)
+        grade = self._grade(found, tolerance, wide + allowance, allowance) if misfit > tolerance else None
         return Checked(
             equation=self,
             outcome="clear" if grade is None else "found",
@@ -221,16 +217,15 @@ class Equation:
             return 0.0
         return abs(found.misfit - misfit) if isinstance(found, Line) else 0.0
 
-    def _grade(self, misfit: float, tolerance: float, wide: float, noted: float) -> Grade | None:
-        if misfit <= tolerance:
-            return None
-        if self.check.impossible and misfit > wide:
+    def _grade(self, line: Line, tolerance: float, wide: float, allowance: float) -> Grade:
+        """Of a misfit beyond its tolerance; `wide` is the tolerance with trailing zeros taken as rounding."""
+        misfit = abs(line.misfit)
+        if line.impossible and misfit > wide:
             return "stop"
-        if misfit <= max(NOTED * wide, noted):
+        if misfit <= max(NOTED * wide, NOTED_ALLOWANCES * allowance, line.noted):
             return "note"
-        if self.check.grade == "stop":
-            return "stop" if misfit > STOPPED * max(wide, tolerance) else "act"
-        return self.check.grade
+        gravest = line.grade or self.check.grade
+        return "act" if gravest == "stop" and misfit <= STOPPED * max(wide, tolerance) else gravest
 
 
 DIFFERENCES = {

@@ -105,12 +105,11 @@ def factor(v: Figures, shells: int | None = None) -> float:
     "({recomputed}). Are the columns swapped, or is a temperature misprinted?",
     over=("hot", "cold"),
     closes=True,
-    impossible=True,
 )
 def second_law(v: Figures, where: str) -> Line:
     side = sides(v)[0 if where == "hot" else 1]
     low, high = sorted(float(v[f"{s}.T_in"]) for s in SIDES)
-    return within(float(v[f"{side}.T_out"]), "temperature", low=low, high=high, of=f"{side}.T_out")
+    return within(float(v[f"{side}.T_out"]), "temperature", low=low, high=high, of=f"{side}.T_out", impossible=True)
 
 
 # --- mean temperature difference --------------------------------------------------------------------------------------

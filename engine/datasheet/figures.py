@@ -318,9 +318,10 @@ def mass_flow(v: Figures, side: Side) -> float:
 
 
 def specific_heat(v: Figures, side: Side) -> tuple[float, bool]:
-    """Mean over the side, and whether it is the sheet's own."""
+    """Mean over the side, and whether it is the sheet's own; what is printed for one end only is no mean."""
+    one_end = f"{side}.cp" not in v and (f"{side}.cp_in" in v) != (f"{side}.cp_out" in v)
     try:
-        return property_of(v, side, "cp"), True
+        return property_of(v, side, "cp"), not one_end
     except Missing:
         if not v.subject.library(side):
             raise
@@ -390,10 +391,10 @@ def surface(v: Figures) -> float:
 
 def bore(v: Figures) -> float:
     """Inside diameter of the tubes [m]."""
+    if v.subject.double_pipe and ("tube_id" not in v or _piped(v, "inner_pipe")):
+        return _pipe(v, "inner_pipe")[1]
     if "tube_id" in v:
         return float(v["tube_id"])
-    if v.subject.double_pipe:
-        return _pipe(v, "inner_pipe")[1]
     od = float(v["tube_od"])
     if "tube_wall" in v:
         wall = float(v["tube_wall"]) * (MINIMUM_WALL if v.get("tube_wall_is") == "minimum" else 1.0)
@@ -408,15 +409,20 @@ def bore(v: Figures) -> float:
 
 def outside_diameter(v: Figures) -> float:
     """Of the tubes or the inner pipe [m]."""
-    if v.subject.double_pipe and "tube_od" not in v:
+    if v.subject.double_pipe and ("tube_od" not in v or _piped(v, "inner_pipe")):
         return _pipe(v, "inner_pipe")[0]
     return float(v["tube_od"])
 
 
 def shell_bore(v: Figures) -> float:
-    if v.subject.double_pipe and "shell_id" not in v:
+    if v.subject.double_pipe and ("shell_id" not in v or _piped(v, "outer_pipe")):
         return _pipe(v, "outer_pipe")[1]
     return float(v["shell_id"])
+
+
+def _piped(v: Figures, which: str) -> bool:
+    """Whether the sheet states this pipe as a pipe, which stands before any diameter from elsewhere."""
+    return any(f"{which}.{name}" in v for name in ("nps", "od"))
 
 
 def _pipe(v: Figures, which: str) -> tuple[float, float]:

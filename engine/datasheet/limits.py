@@ -17,7 +17,7 @@ from engine.datasheet.figures import (
     single_phase,
 )
 from engine.sheet import sheet_fields
-from engine.stated import SIDES, Side, Words
+from engine.stated import SIDES, Figure, Side, Stated, Words
 
 TEST_RATIO = (1.25, 1.55)
 TUBE_RUPTURE = 10 / 13
@@ -201,6 +201,9 @@ def same_as_case(v: Figures, where: str) -> Line | Remark:
         return Remark(says=f"{label}: the sheet has {v[where]}, the case {asked}.") if v[where] != asked else Remark()
     if isinstance(asked, int):
         return Line(sheet=float(v[where]), recomputed=float(asked), quantity="dimensionless", of=where, share=0.0)
+    declared = sheet_fields()[where]
+    assert isinstance(declared, Stated)
+    quantity = asked.quantity if isinstance(asked, Figure) else declared.quantities[0]
     _, rounding = half_width(where, asked)
     case = v.subject.case
     assert case is not None
@@ -208,12 +211,12 @@ def same_as_case(v: Figures, where: str) -> Line | Remark:
         own = case.flow(_side(side))
         assert own is not None
         return Line(sheet=mass_flow(v, _side(side)), recomputed=own, quantity="mass_flow", of=where, share=0.01)
-    if asked.quantity == "temperature":
+    if quantity == "temperature":
         return Line(
             sheet=float(v[where]), recomputed=float(asked), quantity="temperature", of=where, share=0, absolute=rounding
         )
-    if asked.quantity.startswith("pressure_") and asked.quantity != "pressure_difference":
+    if quantity in ("pressure_absolute", "pressure_gauge"):
         own = absolute(asked, float(case.atmosphere))
         return Line(sheet=pressure(v, where), recomputed=own, quantity="pressure_absolute", of=where, absolute=rounding)
     share = 0.005 + rounding / abs(asked) if asked else 0.0
-    return Line(sheet=float(v[where]), recomputed=float(asked), quantity=asked.quantity, of=where, share=share)
+    return Line(sheet=float(v[where]), recomputed=float(asked), quantity=quantity, of=where, share=share)

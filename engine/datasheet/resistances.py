@@ -162,7 +162,7 @@ def film_sum(v: Figures, where: str) -> Line:
     left = _films_left(v)
     if where == "wall":
         # Below nothing at all there is no tolerance but rounding.
-        return within(left, "fouling_resistance", low=0.0, name=ROOM, share=0.0)
+        return within(left, "fouling_resistance", low=0.0, name=ROOM, share=0.0, impossible=True)
     if where == "films":
         films = 1 / float(v["outside.h"]) + outside_diameter(v) / bore(v) / float(v["inside.h"])
         return Line(sheet=left, recomputed=films, quantity="fouling_resistance", name=ROOM)
