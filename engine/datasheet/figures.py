@@ -30,6 +30,8 @@ FLUID_PROPERTIES: Mapping[str, str] = {
 }
 MINIMUM_WALL = 1.11
 """Average over minimum wall of drawn tubes, 10 to 12 % (common practice)."""
+SATURATED = 0.5
+"""Of the saturation temperature, within which a printed one is saturated [K]."""
 GAS_DENSITY = 150.0
 """Below it an unnamed fluid is taken as a gas [kg/m³]."""
 
@@ -130,6 +132,20 @@ class Subject:
             return fluids.fluid_at(fluids.Pure(str(name)), absolute(p, ATMOSPHERE), float(T))
         except fluids.FluidError as error:
             return f"{side}.fluid by a name of the property library ({error})"
+
+    def crosses_saturation(self, side: Side) -> bool:
+        """Whether a fluid of the library would boil or condense between the printed temperatures of its side."""
+        ends = [self.values.get(f"{side}.{end}") for end in ("T_in", "T_out")]
+        if None in ends or not self.library(side):
+            return False
+        saturated = self._once(f"saturation {side}", lambda: self._saturation(side))
+        return saturated is not None and min(ends) - SATURATED <= saturated <= max(ends) + SATURATED
+
+    def _saturation(self, side: Side) -> float | None:
+        p = self.values.get(f"{side}.p_in")
+        if self.case is not None:
+            return self.fluid(side).saturation_temperature(self.case.p_in(side))
+        return None if p is None else self.fluid(side).saturation_temperature(absolute(p, ATMOSPHERE))
 
     def library(self, side: Side) -> bool:
         """Whether the side's fluid is known by a name or a table."""
@@ -267,7 +283,7 @@ def changes_phase(v: Figures, side: Side) -> bool:
     case = v.subject.case
     if case is not None and case.stream(side).condenses:
         return True
-    if f"{side}.latent_heat" in v:
+    if f"{side}.latent_heat" in v or v.subject.crosses_saturation(side):
         return True
     return any(
         abs((v.get(f"{side}.{part}_in") or 0.0) - (v.get(f"{side}.{part}_out") or 0.0))
@@ -351,7 +367,7 @@ def condensed_heat(v: Figures, side: Side) -> float:
             raise Missing(f"{side}.vapour_in and {side}.vapour_out")
         changed = mass_flow(v, side)
     if not changes_phase(v, side):
-        raise Missing(f"{side}.latent_heat; the {v.subject.side_name(side)} keeps its phase")
+        raise Missing(f"a change of phase; the {v.subject.side_name(side)} keeps its phase")
     latent = v.get(f"{side}.latent_heat")
     if latent is None:
         latent = _steam_latent_heat(v, side)
@@ -363,7 +379,8 @@ def condensed_heat(v: Figures, side: Side) -> float:
 
 
 def _steam_latent_heat(v: Figures, side: Side) -> float:
-    if f"{side}.steam_in" not in v and f"{side}.steam_out" not in v:
+    named = str(v.get(f"{side}.fluid") or "").lower() in ("water", "steam")
+    if not named and f"{side}.steam_in" not in v and f"{side}.steam_out" not in v:
         raise Missing(f"{side}.latent_heat")
     p = pressure(v, f"{side}.p_in")
     try:
