@@ -24,13 +24,12 @@ from engine.steam import MOST_FLOODED, Flooded, Steam, steam_of
 
 CHUNK = 512
 """Points solved at once: small enough for the work arrays to stay in the processor's cache."""
-TOLERANCE = 2e-8
+TOLERANCE = 1e-8
 """Of the outer loop: largest change of a temperature between two iterations over the inlet difference."""
 SETTLED = 1e-6
 """Residual up to which a point counts as converged."""
-SETTLE_AT = (1e-1, 1e-5, 1e-8)
-"""Residuals at which a chunk's slowly changing parts are found: the films' spread roughly, both parts, and the balance
-for good."""
+SETTLE_AT = (1e-1, 1e-5)
+"""Residuals at which a chunk's slowly changing parts are found: the films' spread roughly, then all for good."""
 PATIENCE = 14
 """Iterations after which a chunk goes on without the few points that settle slowly."""
 MOST_ITERATIONS = 80
@@ -483,12 +482,11 @@ def _settling(points: Points, condensed: Condensed, T_cold: Array, passed: Array
     return np.minimum((points.hottest_chest(side) - T_cold) / (condensed.T_sat - T_cold), most / passed)
 
 
-def _settle(on: _Setting, step: _Step, level: int) -> _Settled:
-    found, spread = step.found, step.settled.spread
-    if level < len(SETTLE_AT):
-        h = {side: step.films[side].h for side in SIDES}
-        spread = film_spread(on.case, on.cells, step.flowing, h, step.r)
-    if level == 1:
+def _settle(on: _Setting, step: _Step, *, roughly: bool) -> _Settled:
+    found = step.found
+    h = {side: step.films[side].h for side in SIDES}
+    spread = film_spread(on.case, on.cells, step.flowing, h, step.r)
+    if roughly:
         return replace(step.settled, spread=spread)
     met = (
         (found.inside_entry, found.inside_exit, found.inside_mean),
@@ -615,7 +613,7 @@ def _march(on: _Setting, points: Points, most: int) -> Solution:
         before = (new, change) if count > 1 else None
         if level < len(SETTLE_AT) and worst <= SETTLE_AT[level]:
             level += 1
-            settled = _settle(on, step, level)
+            settled = _settle(on, step, roughly=level < len(SETTLE_AT))
             before = None
     return _solution(on, points, step, np.full(P, count), residual)
 
@@ -690,7 +688,11 @@ def _solution(on: _Setting, points: Points, step: _Step, iterations: NDArray[np.
     _mark(problem, step.lossy, lambda i: "exchanger.heat_loss is as large as the heat passed in some cells")
     duty = np.abs(found.heat.sum(axis=1))
     T_out: dict[Side, Array] = {"inside": found.inside_outlet, "outside": found.outside_outlet}
-    if condensed is not None:
+    if condensed is None:
+        passed = found.heat.sum(axis=1)
+        gained: dict[Side, Array] = {"inside": -passed, "outside": passed - float(case.exchanger.heat_loss)}
+        T_out = {side: _balanced(case.fluid(side), side, points, T, gained[side]) for side, T in T_out.items()}
+    else:
         side, steam, flooded = condensed.steam.side, condensed.steam, condensed.flooded
         duty = duty if flooded is None else duty + flooded.heat
         heat = steam.heat(points.T_in[side], condensed.T_sat)
@@ -716,6 +718,13 @@ def _solution(on: _Setting, points: Points, step: _Step, iterations: NDArray[np.
         problem=problem,
         condensed=condensed,
     )
+
+
+def _balanced(fluid: Fluid, side: Side, points: Points, T_out: Array, gained: Array) -> Array:
+    """The outlet with the last digits, which the iteration leaves open, set by the side's own enthalpy balance."""
+    scale = points.flow[side] * points.factors.get(f"{side}:cp", 1.0)
+    rise = fluid.enthalpy(T_out) - fluid.enthalpy(points.T_in[side])
+    return np.asarray(T_out + (gained / scale - rise) / fluid.values(T_out, "cp")[0])
 
 
 def _mark_steam(problem: Texts, points: Points, condensed: Condensed) -> None:
