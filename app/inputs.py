@@ -60,6 +60,7 @@ class Form:
         self.problems = problems
         self.display = session.display()
         self.view = session.view()
+        self.idle = engine.Case.idle(self.raw)
         self.tables: list[tuple[Part, Path]] = []
         """Tables met on the way: they are drawn across the page, by `rows`."""
 
@@ -74,7 +75,7 @@ class Form:
     def group(self, model: type[engine.Input], path: Path, columns: int = 1, within: Path | None = None) -> None:
         """All fields of a model: what is usually stated first, the rest in folds."""
         self.said(path, model)
-        boxes, folds = _arranged(model)
+        boxes, folds = _arranged([part for part in fields.parts(model) if self.counts(part, (*path, part.name))], model)
         self.boxes(boxes, path, columns, within)
         for part in fields.parts(model):
             if part.shape == "kinds":
@@ -94,6 +95,10 @@ class Form:
             if part.shape == "group" and not part.needed:
                 place = (*path, part.name)
                 self.fold(part.title, [place], lambda p=part, at=place: self.optional(p.models[0], at, columns))
+
+    def counts(self, part: Part, path: Path) -> bool:
+        """Whether a field decides something beside the others; what is stated or wrong is shown all the same."""
+        return engine.dotted(path) not in self.idle or self.stated(path) is not None or bool(self.problems.under(path))
 
     def optional(self, model: type[engine.Input], path: Path, columns: int) -> None:
         if model.__doc__:
@@ -276,9 +281,9 @@ def _kind_title(model: type[engine.Input]) -> str:
     return KINDS.get(kind) or str(getattr(model, "title", kind))
 
 
-def _arranged(model: type[engine.Input]) -> tuple[list[Part], dict[str, list[Part]]]:
+def _arranged(parts: Sequence[Part], model: type[engine.Input]) -> tuple[list[Part], dict[str, list[Part]]]:
     """Boxes in the open, and those in folds by title: nozzles, and what is assumed where it is not stated."""
-    boxes = [part for part in fields.parts(model) if part.shape == "box"]
+    boxes = [part for part in parts if part.shape == "box"]
     if "type" not in model.model_fields:
         return boxes, {}
     folds: dict[str, list[Part]] = {NOZZLES: [], DETAILS: []}

@@ -6,6 +6,7 @@ import hashlib
 import json
 from collections.abc import Iterator, Mapping
 from dataclasses import replace
+from functools import cached_property
 from typing import Annotated, Any, ClassVar
 
 import numpy as np
@@ -393,6 +394,23 @@ class Case(Input):
     limits: Limits = Limits()
     sheet: Sheet | None = None
     operating: Annotated[tuple[Operating, ...], Field(max_length=12)] = ()
+
+    @classmethod
+    def idle(cls, given: Mapping[str, Any]) -> frozenset[str]:
+        """By path: what the exchanger names of its own, and how it lies where no steam condenses."""
+        parts = {name: part if isinstance(part := given.get(name), Mapping) else {} for name in ("exchanger", *SIDES)}
+        kind = EXCHANGERS.get(str(parts["exchanger"].get("type")))
+        names = kind.idle(parts["exchanger"]) if kind else frozenset()
+        fluids_given = [parts[side].get("fluid") for side in SIDES]
+        if not any(isinstance(fluid, Mapping) and "steam" in fluid for fluid in fluids_given):
+            names |= {"orientation"}
+        return frozenset(f"exchanger.{name}" for name in names)
+
+    @cached_property
+    def idle_fields(self) -> frozenset[str]:
+        """Paths of the fields that decide nothing in this case; their defaults assume nothing."""
+        gauge = any(isinstance(leaf, Figure) and leaf.quantity == "pressure_gauge" for *_, leaf in self.leaves())
+        return self.idle(self.model_dump(exclude_unset=True)) | (frozenset() if gauge else {"atmosphere"})
 
     def stream(self, side: Side) -> Stream:
         return self.inside if side == "inside" else self.outside

@@ -260,6 +260,21 @@ class Input(BaseModel):
         return (self.problems(),)
 
     @classmethod
+    def idle(cls, given: Mapping[str, Any]) -> frozenset[str]:
+        """Fields that decide nothing beside what is given, as typed or as read, of the others."""
+        return frozenset()
+
+    def leaves(self, path: str = "") -> Iterator[tuple[str, bool, Declaration | None, Any]]:
+        """Path, whether it was stated, declaration and value of every field that is no group of fields."""
+        declarations = type(self).declared()
+        for name in type(self).model_fields:
+            place, value = f"{path}.{name}" if path else name, getattr(self, name)
+            if isinstance(value, Input):
+                yield from value.leaves(place)
+            else:
+                yield place, name in self.model_fields_set, declarations.get(name), value
+
+    @classmethod
     def declared(cls) -> Mapping[str, Declaration]:
         """Field name to declaration, for the fields that hold a single figure, count, choice or text."""
         return {

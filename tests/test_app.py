@@ -180,7 +180,17 @@ def test_every_kind_of_fluid_and_every_type_of_exchanger_has_a_form() -> None:
         app.selectbox(key=f"exchanger.kind@typed#{generation}").set_value(kind).run()
         assert "went wrong" not in words(app)
         labels = {box.label for box in [*app.text_input, *app.selectbox]}
-        assert {d.name for d in model.declared().values()} <= labels
+        idle = model.idle({}) | {"orientation"}  # no steam condenses here
+        assert {declared.name for name, declared in model.declared().items() if name not in idle} <= labels
+
+
+def test_a_field_that_decides_nothing_is_not_asked_for_until_it_does() -> None:
+    shell = {"type": "shell-and-tube", "tema": "BEM"}
+    app = page("case", kept({**OIL_COOLER, "exchanger": shell}))
+    asked = {"exchanger.u_bend_length", "exchanger.shell_inlets"}
+    assert not asked & {box.key.partition("@")[0] for box in app.text_input}
+    app.text_input(key="exchanger.tema@typed#0").set_value("BJU").run()
+    assert asked <= {box.key.partition("@")[0] for box in app.text_input}
 
 
 def test_a_choice_that_is_needed_is_not_made_for_the_user() -> None:

@@ -709,6 +709,19 @@ def test_every_default_that_matters_is_told_once_and_no_stated_figure():
     assert set(told) - left == {"atmosphere", "inside.R_fouling"}
 
 
+def test_a_default_that_decides_nothing_is_not_told():
+    def told(at: Look) -> set[str]:
+        return {finding.where.removeprefix("exchanger.") for finding in at.verdict("assumed").findings}
+
+    straight, single = told(bundle()), told(bundle(exchanger__tube_passes=1))
+    others = {"u_bend_length", "u_bend_area", "long_baffle_leakage", "shell_inlets", "pass_lane_width", "orientation"}
+    assert not others & (straight | single)
+    assert "pass_lanes" in straight - single
+    assert {"u_bend_length", "u_bend_area"} <= told(bundle(exchanger__tema="BEU"))
+    assert "long_baffle_leakage" in told(bundle(exchanger__tema="BFM"))
+    assert "orientation" in told(heater())
+
+
 def test_gauge_and_absolute_limits_are_compared_as_one():
     # 15 barg is 16.013 bara.
     limits = {"limits__inside_design_pressure": "10 barg", "limits__inside_test_pressure": "15 barg"}

@@ -167,6 +167,14 @@ def test_inputs_are_shown_as_typed_with_their_origin(cooler):
     assert len(cooler.table("inputs", 1).rows) == 3
 
 
+def test_no_default_is_shown_of_a_field_that_decides_nothing(cooler):
+    labels = [cells[0] for cells in cooler.table("inputs", 2).rows]
+    assert "Orientation" not in labels  # no steam condenses
+    assert "Atmospheric pressure" in labels  # pressures are gauge
+    absolute = Rated(inside__p_in="5 bara", outside__p_in="7 bara").table("inputs", 2)
+    assert "Atmospheric pressure" not in [cells[0] for cells in absolute.rows]
+
+
 def test_limits_are_shown_where_they_are_stated(cooler):
     assert "No design pressure" in cooler.text("inputs")
     assert "Design pressure, inside" in Rated(limits__inside_design_pressure="10 barg").text("inputs")

@@ -4,9 +4,10 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 from functools import cached_property
-from typing import Annotated, ClassVar, Literal
+from typing import Annotated, Any, ClassVar, Literal
 
 import numpy as np
+from numpy.typing import NDArray
 from pydantic import Field
 
 from engine import effectiveness as exact
@@ -178,6 +179,11 @@ class DoublePipe(Input):
     ] = 0.0
     film_factor: Factors = Factors()
     dp_factor: Factors = Factors()
+
+    @classmethod
+    def idle(cls, given: Mapping[str, Any]) -> frozenset[str]:
+        straight = given.get("legs_in_series") == 1 and not given.get("banks_in_parallel")
+        return frozenset({"bend_length"} if straight else ())
 
     title: ClassVar[str] = "Double pipe"
     side_names: ClassVar[Mapping[Side, str]] = {"inside": "Inner pipe", "outside": "Annulus"}
@@ -478,7 +484,7 @@ class DoublePipe(Input):
 
     # --- the whole --------------------------------------------------------------------------------------------------
 
-    def effectiveness(self, NTU: Array, Cr: Array, inside_is_min: Array) -> Array | str:
+    def effectiveness(self, NTU: Array, Cr: Array, inside_is_min: NDArray[np.bool_]) -> Array | str:
         counter = self.arrangement == "counter"
         if self._both_split:
             return exact.effectiveness_counter(NTU, Cr) if counter else exact.effectiveness_cocurrent(NTU, Cr)
@@ -488,7 +494,7 @@ class DoublePipe(Input):
     def driving_force(self, T_in: Mapping[Side, Array], T_out: Mapping[Side, Array]) -> tuple[Array, Array] | str:
         counter = self.arrangement == "counter"
         if not self._both_split:
-            return "one fluid is split over the banks and the other visits them in turn: no single F is published here"
+            return self._driving_force_of_banks(T_in, T_out)
         if counter:
             ends = (T_in["inside"] - T_out["outside"], T_out["inside"] - T_in["outside"])
         else:
@@ -496,6 +502,29 @@ class DoublePipe(Input):
         lmtd = exact.log_mean(np.abs(ends[0]), np.abs(ends[1]))
         # Ends of opposite sign have crossed: no area of this arrangement gives them.
         return lmtd, np.where(ends[0] * ends[1] > 0, 1.0, 0.0)
+
+    @property
+    def F_through_effectiveness(self) -> bool:
+        return not self._both_split
+
+    def _driving_force_of_banks(
+        self, T_in: Mapping[Side, Array], T_out: Mapping[Side, Array]
+    ) -> tuple[Array, Array] | str:
+        """By the exact ε of one fluid split over banks that the other visits in turn, solved for NTU."""
+        change = {side: np.abs(T_out[side] - T_in[side]) for side in ("inside", "outside")}
+        span = np.abs(T_in["inside"] - T_in["outside"])
+        most, least = np.maximum(*change.values()), np.minimum(*change.values())
+        inside_is_min = np.asarray(change["inside"] >= change["outside"])
+
+        def relation(NTU: Array, Cr: Array) -> Array:
+            return np.asarray(self.effectiveness(NTU, Cr, inside_is_min))
+
+        Cr = least / np.where(most > 0, most, 1.0)
+        NTU = exact.ntu(relation, np.minimum(most / span, 1.0), Cr)
+        mtd = most / np.where(NTU > 0, NTU, 1.0)
+        ends = (T_in["inside"] - T_out["outside"], T_out["inside"] - T_in["outside"])
+        lmtd = exact.log_mean(np.abs(ends[0]), np.abs(ends[1]))
+        return lmtd, np.where(np.isfinite(NTU) & (lmtd > 0), mtd / np.where(lmtd > 0, lmtd, 1.0), 0.0)
 
     def checks(self) -> tuple[Iterator[Problem], ...]:
         return self._pipe_problems(), self._bank_problems(), self._wall_problems()

@@ -54,6 +54,15 @@ SHELLS: Mapping[str, ShellType] = {
     "X": ShellType(name="cross-flow"),
 }
 
+BAFFLE_FIELDS = frozenset(
+    {
+        *("baffle_type", "baffle_cut", "baffle_spacing", "inlet_spacing", "outlet_spacing", "baffles"),
+        *("tube_hole_clearance", "shell_baffle_clearance"),
+        *("sealing_strip_pairs", "pass_lanes", "pass_lane_width"),
+    }
+)
+"""What an X shell, rated as one bank, has no use for."""
+
 RE_LAMINAR, RE_TRANSITIONAL = 100.0, 1000.0
 """Names of the shell-side regimes: below the switch of the method's constants, and below its row for Re from 1000."""
 
@@ -238,6 +247,22 @@ class ShellAndTube(Input):
     ] = 0.0
     film_factor: Factors = Factors()
     dp_factor: Factors = Factors()
+
+    @classmethod
+    def idle(cls, given: Mapping[str, Any]) -> frozenset[str]:
+        letters = str(given.get("tema", "")).upper()
+        if len(letters) != 3:
+            return frozenset()
+        shell_letter, rear = letters[1], letters[2]
+        found = set() if shell_letter == "F" else {"long_baffle_leakage"}
+        found |= {"first_pass"} if shell_letter == "J" else {"shell_inlets"}
+        if rear != "U":
+            found |= {"u_bend_length", "u_bend_area"}
+        if given.get("tube_passes") == 1:
+            found.add("pass_lanes")
+        if "pass_lanes" in found or not given.get("pass_lanes"):
+            found.add("pass_lane_width")
+        return frozenset(found | BAFFLE_FIELDS if shell_letter == "X" else found)
 
     title: ClassVar[str] = "Shell and tube"
     side_names: ClassVar[Mapping[Side, str]] = {"inside": "Tube side", "outside": "Shell side"}
@@ -781,9 +806,22 @@ class ShellAndTube(Input):
             return relation(NTU, Cr)
         return exact.effectiveness_counter(n * exact.ntu_counter(relation(NTU / n, Cr), Cr), Cr)
 
-    def effectiveness(self, NTU: Array, Cr: Array, inside_is_min: Array) -> Array | str:
+    def effectiveness(self, NTU: Array, Cr: Array, inside_is_min: NDArray[np.bool_]) -> Array | str:
         relation = self._relation(np.asarray(inside_is_min, dtype=bool))
         return relation if isinstance(relation, str) else relation(NTU, Cr)
+
+    @property
+    def _two_passes(self) -> bool:
+        return self.shell_letter == "E" and self.tube_passes == 2
+
+    @property
+    def F_through_effectiveness(self) -> bool:
+        return self.shell_letter == "X"
+
+    @property
+    def _one_way(self) -> bool:
+        """Whether the arrangement is plain counter or co-current flow."""
+        return self._relation(np.array([True])) is exact.effectiveness_counter or self.arrangement == "co-current"
 
     def driving_force(self, T_in: Mapping[Side, Array], T_out: Mapping[Side, Array]) -> tuple[Array, Array] | str:
         change = {side: np.abs(T_out[side] - T_in[side]) for side in T_in}
@@ -796,14 +834,15 @@ class ShellAndTube(Input):
             if self.arrangement == "counter"
             else (T_in["outside"], T_out["outside"])
         )
-        ends = [np.abs(a - b) for a, b in zip((T_in["inside"], T_out["inside"]), outside, strict=True)]
-        lmtd = exact.log_mean(*ends)
-        if relation is exact.effectiveness_counter or self.arrangement == "co-current":
-            return lmtd, np.ones_like(lmtd)
+        ends = [a - b for a, b in zip((T_in["inside"], T_out["inside"]), outside, strict=True)]
+        lmtd = exact.log_mean(np.abs(ends[0]), np.abs(ends[1]))
+        if self._one_way:
+            # Ends of opposite sign have crossed: no area of this arrangement gives them.
+            return lmtd, np.where(ends[0] * ends[1] > 0, 1.0, 0.0)
         larger, smaller = np.maximum(*change.values()), np.minimum(*change.values())
         P = larger / np.abs(T_in["inside"] - T_in["outside"])
         R = smaller / np.where(larger == 0, 1.0, larger)
-        if self.shell_letter == "E" and self.tube_passes == 2:
+        if self._two_passes:
             return lmtd, exact.correction_factor(P, R, self.shells_in_series)
         needed = exact.ntu(relation, P, R)
         return lmtd, np.where(np.isinf(needed), 0.0, exact.ntu_counter(P, R) / np.where(needed == 0, 1.0, needed))

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from typing import Any
 
 import numpy as np
 from scipy.constants import g
@@ -11,7 +10,7 @@ from scipy.constants import g
 from engine.case import ConstantFluid, TableFluid
 from engine.findings import COMMON_PRACTICE, Finding, Missing, Subject, percent, rule, span
 from engine.rating import State
-from engine.stated import SIDES, Choice, Count, Declaration, Figure, Input, Side, Stated
+from engine.stated import SIDES, Choice, Count, Figure, Side, Stated
 
 OWN = "this calculation"
 
@@ -344,10 +343,8 @@ def property_note(s: Subject, side: Side) -> Iterator[Finding]:
 
 @rule("assumed", title="A figure is assumed", grades=("note",), needs="nothing", source=OWN)
 def assumed(s: Subject) -> Iterator[Finding]:
-    leaves = list(_leaves(s.case, ""))
-    gauge = any(isinstance(leaf, Figure) and leaf.quantity == "pressure_gauge" for *_, leaf in leaves)
-    for path, stated, declared, value in leaves:
-        if stated or not getattr(declared, "assumed", "") or (path == "atmosphere" and not gauge):
+    for path, stated, declared, value in s.case.leaves():
+        if stated or not getattr(declared, "assumed", "") or path in s.case.idle_fields:
             continue
         assert isinstance(declared, (Stated, Count, Choice))
         shown = s.show(value, declared.quantities[0]) if isinstance(declared, Stated) and value is not None else value
@@ -373,18 +370,6 @@ def assumed(s: Subject) -> Iterator[Finding]:
                 do=STATE_IT,
                 source=str(source),
             )
-
-
-def _leaves(part: Input, path: str) -> Iterator[tuple[str, bool, Declaration | None, Any]]:
-    """Path, whether it was stated, declaration and value of every field that is no group of fields."""
-    declarations = type(part).declared()
-    for name in type(part).model_fields:
-        place = f"{path}.{name}" if path else name
-        value = getattr(part, name)
-        if isinstance(value, Input):
-            yield from _leaves(value, place)
-        else:
-            yield place, name in part.model_fields_set, declarations.get(name), value
 
 
 @rule(

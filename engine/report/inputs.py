@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Mapping, Sequence
+from collections.abc import Callable, Collection, Iterator, Mapping, Sequence
 from typing import Any
 
 from pydantic import ValidationError
@@ -125,10 +125,11 @@ def inputs(case: Case, words: Words, cite: Callable[[Source], str]) -> Iterator[
     for side in SIDES:
         yield from _typed_properties(case.stream(side), words)
     atmosphere = Case.declared()["atmosphere"].name
-    general = [row for row in _rows(case, words) if row[0] == atmosphere]
+    general = [row for row in _rows(case, words, case.idle_fields) if row[0] == atmosphere]
+    idle = frozenset(path.removeprefix("exchanger.") for path in case.idle_fields)
     yield Table(
         header=(f"{case.exchanger.title} as typed", "Value", "Origin"),
-        rows=(*_rows(case.exchanger, words), *general, *_derived(case, words, cite)),
+        rows=(*_rows(case.exchanger, words, idle), *general, *_derived(case, words, cite)),
         widths=WIDTHS,
     )
     limits = tuple(_rows(case.limits, words))
@@ -175,8 +176,9 @@ def _typed_properties(stream: Stream, words: Words) -> Iterator[Block]:
     )
 
 
-def _rows(part: Input, words: Words) -> Iterator[tuple[str, str, str]]:
-    """What is stated or assumed in a part of the input: trade name, value, origin. A group of keys is one row."""
+def _rows(part: Input, words: Words, idle: Collection[str] = ()) -> Iterator[tuple[str, str, str]]:
+    """What is stated or assumed in a part of the input: trade name, value, origin. A group of keys is one row; no
+    default is shown of a field that is idle."""
     declared = type(part).declared()
     for name in type(part).model_fields:
         value, item = getattr(part, name), declared.get(name)
@@ -190,7 +192,7 @@ def _rows(part: Input, words: Words) -> Iterator[tuple[str, str, str]]:
             continue
         elif name in part.model_fields_set:
             yield item.name, words.typed(value, item), "stated"
-        elif isinstance(item, (Stated, Count, Choice)) and item.assumed:
+        elif isinstance(item, (Stated, Count, Choice)) and item.assumed and name not in idle:
             yield item.name, words.typed(value, item), f"assumed: {item.assumed}"
 
 
