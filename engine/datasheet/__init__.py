@@ -391,6 +391,8 @@ class Repair:
     of: int
     breaks: int = 0
     """Checks that would fail instead."""
+    also: tuple[str, ...] = ()
+    """Fields that were computed from it and change with it."""
     quantity: str = ""
     slip: str = ""
 
@@ -398,11 +400,13 @@ class Repair:
         before, to = (
             units.show(x, self.quantity, system) if self.quantity else f"{x:.4g}" for x in (self.before, self.to)
         )
-        return f"{subject.label(self.field)} from {before} to {to}"
+        with_it = f", and with it {', '.join(map(subject.label, self.also))}" if self.also else ""
+        return f"{subject.label(self.field)} from {before} to {to}{with_it}"
 
     def says(self, subject: Subject, system: str = "si") -> str:
         new = f", {self.breaks} new" if self.breaks else ""
-        return f"Change {self.change(subject, system)} and {self.clears} of {self.of} failures vanish{new}."
+        comma = "," if self.also else ""
+        return f"Change {self.change(subject, system)}{comma} and {self.clears} of {self.of} failures vanish{new}."
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -517,7 +521,7 @@ def _check_json(c: Checked) -> dict[str, Any]:
 def _repair_json(r: Repair) -> dict[str, Any]:
     return {
         "field": r.field, "from": r.before, "to": r.to, "clears": r.clears, "of": r.of, "breaks": r.breaks,
-        "slip": r.slip,
+        "slip": r.slip, "also": list(r.also),
     }  # fmt: skip
 
 

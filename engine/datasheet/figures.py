@@ -135,8 +135,8 @@ class Subject:
 
     def crosses_saturation(self, side: Side) -> bool:
         """Whether a fluid of the library would boil or condense between the printed temperatures of its side."""
-        ends = [self.values.get(f"{side}.{end}") for end in ("T_in", "T_out")]
-        if None in ends or not self.library(side):
+        ends = [float(T) for end in ("T_in", "T_out") if (T := self.values.get(f"{side}.{end}")) is not None]
+        if len(ends) < 2 or not self.library(side):
             return False
         saturated = self._once(f"saturation {side}", lambda: self._saturation(side))
         return saturated is not None and min(ends) - SATURATED <= saturated <= max(ends) + SATURATED

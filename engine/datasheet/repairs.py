@@ -15,6 +15,8 @@ from engine.datasheet.figures import Missing, Subject
 from engine.datasheet.slips import MATCH, Candidate, candidates
 from engine.stated import Figure
 
+TELLING = 2.0
+"""Tolerances beyond which a misfit says something of its cause."""
 LOOKED = 1e4
 """By how much a figure may be off at most."""
 MOST_STEPS = 30
@@ -93,7 +95,8 @@ def repairs_of(subject: Subject, ended: Iterable[Checked]) -> Found:
     ]
     failed = [c for c in closures if c.fails and c.ended.grade != "note"]
     if not any(c.ended.check.closes for c in failed):
-        failed = [c for c in closures if c.fails and c.ended.line is not None]
+        notes = [c for c in closures if c.fails and c.ended.line is not None and c.ended.check.closes]
+        failed = [c for c in notes if c.miss({}) > TELLING] or notes
     if not any(c.ended.check.closes for c in failed):
         return Found()
     search = _Search(subject, closures, {})
@@ -106,7 +109,7 @@ def repairs_of(subject: Subject, ended: Iterable[Checked]) -> Found:
     if singles[0].clears < len(failed):
         pairs = list(_pairs(subject, closures, failed, singles[:MOST_PAIRS]))
     return Found(
-        slips=tuple(trial.as_slip(subject, len(failed)) for trial in slips if trial.net >= best),
+        slips=tuple(trial.as_slip(len(failed)) for trial in slips if trial.net >= best),
         repairs=tuple(trial.as_repair(subject, len(failed)) for trial in singles),
         pairs=tuple(pairs),
     )
@@ -117,12 +120,15 @@ class _Trial:
     """One field at one value, and what became of the checks."""
 
     field: str
-    to: float
+    candidate: Candidate
     clears: int
     breaks: int
     left: float
     """Sum of what misfit is left, so that of two equal trials the one that closes better stands first."""
-    slip: Candidate | None = None
+
+    @property
+    def changed(self) -> dict[str, float]:
+        return {self.field: self.candidate.to, **self.candidate.also}
 
     @property
     def net(self) -> int:
@@ -130,26 +136,25 @@ class _Trial:
 
     @property
     def order(self) -> tuple[float, ...]:
-        return (-self.net, self.slip is None, self.left)
+        return (-self.net, not self.candidate.name, self.left)
 
     def as_repair(self, subject: Subject, of: int) -> Repair:
         value = subject.sheet_values[self.field]
         return Repair(
             field=self.field,
             before=float(value),
-            to=self.to,
+            to=self.candidate.to,
+            also=tuple(self.candidate.also),
             clears=self.clears,
             of=of,
             breaks=self.breaks,
             quantity=value.quantity if isinstance(value, Figure) else "",
-            slip=self.slip.name if self.slip else "",
+            slip=self.candidate.name,
         )
 
-    def as_slip(self, subject: Subject, of: int) -> Slip:
-        assert self.slip is not None
-        return Slip(
-            field=self.field, name=self.slip.name, factor=self.slip.factor, to=self.to, clears=self.clears, of=of
-        )
+    def as_slip(self, of: int) -> Slip:
+        c = self.candidate
+        return Slip(field=self.field, name=c.name, factor=c.factor, to=c.to, clears=self.clears, of=of)
 
 
 class _Search:
@@ -162,7 +167,7 @@ class _Search:
         """The best trial of each field that takes part in a failure that closes, those that gain first."""
         found = []
         for path in self._fields(failed):
-            trials = [self._trial(path, to, failed, slip) for to, slip in self._values(path)]
+            trials = [self._trial(path, candidate, failed) for candidate in self._candidates(path)]
             if trials:
                 best = min(trials, key=lambda trial: trial.order)
                 if best.net > 0:
@@ -172,7 +177,7 @@ class _Search:
     def slips(self, failed: Sequence[_Closure]) -> Iterator[_Trial]:
         """The first slip of each field that a root of its failures matches and that gains most."""
         for path in self._fields(failed):
-            trials = [self._trial(path, to, failed, slip) for to, slip in self._values(path) if slip]
+            trials = [self._trial(path, slip, failed) for slip in self._candidates(path) if slip.name]
             if trials:
                 most = max(trial.net for trial in trials)
                 yield next(trial for trial in trials if trial.net == most)
@@ -185,33 +190,35 @@ class _Search:
             if path in entering and path not in self.changed and not isinstance(self.subject.sheet_values[path], str)
         ]
 
-    def _values(self, path: str) -> Iterator[tuple[float, Candidate | None]]:
-        """Values worth trying: where a failure closes, and without a slip that would explain one."""
+    def _candidates(self, path: str) -> Iterator[Candidate]:
+        """Values worth trying: where a failure closes, and without a slip that would explain a large one."""
         if path in FEW:
-            yield from ((float(n), None) for n in SMALL_COUNTS if n != self.subject.sheet_values[path])
+            yield from (Candidate(to=float(n)) for n in SMALL_COUNTS if n != self.subject.sheet_values[path])
             return
         failed = [
             c
             for c in self.closures
             if c.fails and c.ended.check.closes and path in c.fields and c.ended.line is not None
         ]
+        large = [c for c in failed if c.miss(self.changed) > TELLING]
         for slip in candidates(self.subject, path):
-            if any(c.miss({**self.changed, path: slip.to}, as_slip=True) <= 1.0 for c in failed):
-                yield slip.to, slip
+            if any(c.miss({**self.changed, path: slip.to, **slip.also}, as_slip=True) <= 1.0 for c in large):
+                yield slip
         whole = not isinstance(self.subject.sheet_values[path], Figure)
         for c in failed:
             root = self._root(c, path)
             if root is not None:
-                yield (float(round(root)) if whole else root), None
+                yield Candidate(to=float(round(root)) if whole else root)
 
-    def _trial(self, path: str, to: float, failed: Sequence[_Closure], slip: Candidate | None) -> _Trial:
+    def _trial(self, path: str, candidate: Candidate, failed: Sequence[_Closure]) -> _Trial:
         """What a value does to the checks that the field enters; a note that remains counts as not cleared."""
-        changed = {**self.changed, path: to}
+        own = {path: candidate.to, **candidate.also}
+        changed = {**self.changed, **own}
         clears = breaks = 0
         left = 0.0
         failing = set(map(id, failed))
         for c in self.closures:
-            if path not in c.fields:
+            if own.keys().isdisjoint(c.fields):
                 continue
             counted = id(c) in failing
             if not counted and not c.ended.check.closes:
@@ -220,9 +227,9 @@ class _Search:
             left += min(miss, 10.0) ** 2
             if counted and miss <= 1.0:
                 clears += 1
-            elif not counted and not c.fails and miss > 1.0:
+            elif not counted and not c.fails and miss > TELLING:
                 breaks += 1
-        return _Trial(field=path, to=to, clears=clears, breaks=breaks, left=left, slip=slip)
+        return _Trial(field=path, candidate=candidate, clears=clears, breaks=breaks, left=left)
 
     def _root(self, c: _Closure, path: str) -> float | None:
         """The value of a field at which a failed check closes; None without one."""
@@ -295,10 +302,10 @@ def _pairs(
     """Two figures that together clear more than the best single one, the best pair first."""
     found = []
     for first in singles:
-        search = _Search(subject, closures, {first.field: first.to})
-        still = [c for c in failed if c.miss({first.field: first.to}) > 1.0]
+        search = _Search(subject, closures, first.changed)
+        still = [c for c in failed if c.miss(first.changed) > 1.0]
         for second in search.ranked(still)[:MOST_PAIRS]:
-            together = {first.field: first.to, second.field: second.to}
+            together = {**first.changed, **second.changed}
             clears = sum(c.miss(together) <= 1.0 for c in failed)
             if clears > singles[0].clears:
                 found.append((clears, first, replace(second, clears=clears)))

@@ -7,7 +7,7 @@ table, which takes them from scipy.constants.
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from engine import units
 from engine.datasheet.driving_force import factor, log_mean_difference
@@ -59,12 +59,15 @@ CONFUSED: Mapping[str, tuple[tuple[str, str], ...]] = {
 
 @dataclass(frozen=True, kw_only=True)
 class Candidate:
-    """A value that the figure would have without a slip."""
+    """A value worth trying for a figure, such as the one that it would have without a slip."""
 
-    name: str
-    factor: float
-    """Of the figure as it stands over what it should be; 1 for a slip that adds."""
     to: float
+    name: str = ""
+    """Of the slip, where it is one."""
+    factor: float = 1.0
+    """Of the figure as it stands over what it should be; 1 for a slip that adds."""
+    also: Mapping[str, float] = field(default_factory=dict)
+    """What was computed from the figure and changes with it."""
 
 
 def candidates(subject: Subject, path: str) -> Iterator[Candidate]:
@@ -151,7 +154,18 @@ def _of_shells(subject: Subject, path: str, x: float) -> Iterator[Candidate]:
     words = "the uncorrected LMTD" if path == "mtd" else "left at one"
     for name, wrong in ((words, lmtd), *((f"F of {n} shells in series", F) for n, F in others.items())):
         if true > 0 and wrong > 0 and abs(wrong / true - 1) > 2 * MATCH and abs(x / wrong - 1) < MATCH / 2:
+            yield Candidate(name=name, factor=wrong / true, to=true, also=_with_mtd(subject, path, true / x))
             yield Candidate(name=name, factor=wrong / true, to=true)
+
+
+def _with_mtd(subject: Subject, path: str, ratio: float) -> dict[str, float]:
+    """What follows from a mean difference `ratio` times as large, where it was all computed from one."""
+    values = subject.sheet_values
+    follows = {"mtd": ratio, "U_service": 1 / ratio}
+    also = {name: float(values[name]) * by for name, by in follows.items() if name in values and name != path}
+    if "excess_area" in values and "U_service" in values:
+        also["excess_area"] = (1 + float(values["excess_area"])) * ratio - 1
+    return also
 
 
 def _of_temperature(x: float) -> Iterator[Candidate]:
