@@ -150,6 +150,8 @@ class State:
     chest: Chest | None = None
     """Where steam condenses."""
     wall_R: float = 0.0
+    surface_T: Mapping[Side, float] = field(default_factory=dict)
+    """Mean temperature of the surface that each fluid touches [K]."""
     converged: bool = True
     iterations: int = 0
     residual: float = 0.0
@@ -300,9 +302,10 @@ def rate(case: Case, *, fineness: int = 1) -> Rating:
     states = {name: state_of(case, solved, i, name) for i, name in enumerate(("clean", "fouled"))}
     states, requirement = _with_requirement(case, states)
     states = _with_pressures(case, both, states, fineness)
-    methods: dict[str, State | str] = {"march": states["fouled"]}
-    for method in ("effectiveness_ntu", "lmtd"):
-        methods[method] = mean_property_state(case, point, method, states["fouled"], fineness)
+    by_ntu = mean_property_state(case, point, "effectiveness_ntu", states["fouled"], fineness)
+    near = states["fouled"] if isinstance(by_ntu, str) else by_ntu
+    by_lmtd = mean_property_state(case, point, "lmtd", near, fineness)
+    methods = {"march": states["fouled"], "effectiveness_ntu": by_ntu, "lmtd": by_lmtd}
     return Rating(case=case, states=states, methods=methods, requirement=requirement)
 
 
@@ -380,6 +383,7 @@ def state_of(case: Case, solved: Solution, i: int, name: str) -> State:
         profile=_profile(solved, i),
         chest=None if condensed is None else _chest_of(case, solved, i, area, duty),
         wall_R=R["wall"],
+        surface_T={side: float(solved.surface[side][i] @ solved.share) for side in SIDES},
         converged=bool(solved.residual[i] <= SETTLED),
         iterations=int(solved.iterations[i]),
         residual=float(solved.residual[i]),
@@ -696,8 +700,10 @@ def mean_property_state(case: Case, point: Points, method: str, start: State, fi
     Returns the reason instead where the arrangement has no such relation. `start` only gives the first guess.
     """
     exchanger, steam, chest = case.exchanger, steam_of(case), start.chest
+    if method == "lmtd" and steam is None and exchanger.F_through_effectiveness:
+        return "F of this arrangement is only known through its ε, so it would be no second way beside it"
     T_out: dict[Side, Array] = {side: np.array([start.T_out[side]]) for side in SIDES}
-    surface: dict[Side, Array] = {side: np.array([np.mean(start.sides[side].surface_T)]) for side in SIDES}
+    surface: dict[Side, Array] = {side: np.array([start.surface_T[side]]) for side in SIDES}
     whole = exchanger.whole(fineness)
     T_in = dict(point.T_in)
     flow = np.zeros(1)
@@ -778,6 +784,8 @@ def mean_property_state(case: Case, point: Points, method: str, start: State, fi
         U_dirty=U,
         resistances=R,
         wall_R=R["wall"],
+        surface_T={side: float(surface[side][0]) for side in SIDES},
+        chest=chest,
         iterations=count,
         residual=change / span,
     )
@@ -801,10 +809,7 @@ def _lmtd_duty(case: Case, T_in: Mapping[Side, Array], C: Mapping[Side, float], 
         lmtd, F = (float(x[0]) for x in found)
         return float(U * case.exchanger.area * max(np.nan_to_num(F) * lmtd, 0.0) - duty)
 
-    ceiling = 1.0
-    if case.steam_side is None and getattr(case.exchanger, "arrangement", "counter") == "co-current":
-        ceiling = 1.0 / (1.0 + min(C.values()) / max(C.values()))
-    low, high = 1e-12, ceiling * (1 - 1e-12)
+    low, high = 1e-12, 1 - 1e-12
     if excess(low) <= 0 or reason:
         return reason or "no driving force"
     if excess(high) >= 0:

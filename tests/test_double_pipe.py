@@ -269,6 +269,14 @@ def test_one_side_split_over_banks_equals_its_bank_by_bank_solution(split, arran
     assert isinstance(rating.methods["lmtd"], str)
 
 
+def test_one_side_split_over_banks_is_held_against_a_required_outlet():
+    """Asked for just the outlet it gives, it has a margin of nothing."""
+    banks = {"inside": 3}
+    T = rate(constant(exchanger__banks_in_parallel=banks)).fouled.T_out["outside"] - 273.15
+    state = rate(constant(exchanger__banks_in_parallel=banks, outside__T_out=f"{T:.12g} degC")).fouled
+    assert state.margin == pytest.approx(0.0, abs=1e-6)
+
+
 def test_heat_loss_warms_the_surroundings_not_the_other_stream():
     case = constant(exchanger__heat_loss="20 kW")
     state, without = rate(case).fouled, rate(constant()).fouled

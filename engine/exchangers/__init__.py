@@ -154,11 +154,17 @@ class Exchanger(Protocol):
     def fouling_resistance(self, side: Side, R: Array) -> Array:
         """A stated resistance on the side's own surface, seen on the outside bare area."""
 
-    def effectiveness(self, NTU: Array, Cr: Array, inside_is_min: Array) -> Array | str:
+    def effectiveness(self, NTU: Array, Cr: Array, inside_is_min: NDArray[np.bool_]) -> Array | str:
         """By the exact relation of the arrangement, or the reason why there is none."""
 
     def driving_force(self, T_in: Mapping[Side, Array], T_out: Mapping[Side, Array]) -> tuple[Array, Array] | str:
-        """LMTD of the arrangement's ends and the factor F at these terminal temperatures, or the reason why not."""
+        """LMTD of the arrangement's ends and the factor F at these terminal temperatures, or the reason why not.
+
+        F is 0 where no area gives these temperatures."""
+
+    @property
+    def F_through_effectiveness(self) -> bool:
+        """Whether F is only known by inverting ε, so that LMTD and F are no second way beside it."""
 
     def problems(self) -> Any: ...
 

@@ -816,7 +816,7 @@ class ShellAndTube(Input):
 
     @property
     def F_through_effectiveness(self) -> bool:
-        return self.shell_letter == "X"
+        return self.shell_letter == "X" and not isinstance(self._relation(np.array([True])), str)
 
     @property
     def _one_way(self) -> bool:
