@@ -381,7 +381,7 @@ def _two_shells(rng: Random, vendor: Vendor) -> Injected | None:
     C = {side: values[f"{side}.flow"] * values[f"{side}.cp"] for side in SIDES}
     P = values["duty"] / (min(C.values()) * abs(values["inside.T_in"] - values["outside.T_in"]))
     F = float(exact.correction_factor(P, min(C.values()) / max(C.values()), 2))
-    if F < 1.03 * values["F"]:
+    if 1.03 * values["F"] > F:
         return None
     mtd = values["mtd"] / values["F"] * F
     changes = {"F": F, "mtd": mtd, "U_service": values["duty"] / (values["area"] * mtd)}

@@ -52,6 +52,8 @@ class Line:
     """Path of the printed figure, where it is one."""
     name: str = ""
     """What the figure is, where it is none of the sheet's own."""
+    by: str = ""
+    """Where the recomputed figure is from, where it is not from the other figures: "stands in the case"."""
     bound: Bound = ""
     low: float = -math.inf
     high: float = math.inf
@@ -332,7 +334,7 @@ class Checked:
         if self.line is None:
             return self.remark.says
         name = self.subject.label(self.line.of) if self.line.of else self.line.name
-        verb = "is expected" if self.line.bound else "follows from the other figures"
+        verb = self.line.by or ("is expected" if self.line.bound else "follows from the other figures")
         text = f"{name} is {self.shown(self.line.sheet, system)}, where {self.expected(system)} {verb}"
         return text[:1].upper() + text[1:] + (f"; {self.slip}" if self.slip else "") + "."
 
@@ -547,7 +549,7 @@ def _consequence(c: Checked, system: str) -> str:
         ratio = line.sheet / line.recomputed
         ratio = 1 / ratio if c.check.bears == "mtd" and ratio else ratio
         lost = whole * abs(1 - _duty_ratio(values, ratio))
-    text = f"{units.show(lost, 'heat_flow', system, 3)} of duty ({100 * lost / whole:.2g} %)"
+    text = f"{units.show(lost, 'heat_flow', system, 3)} of duty ({float(f"{100 * lost / whole:.2g}"):g} %)"
     for side in SIDES:
         T_in, T_out = (values.get(f"{side}.{end}") for end in ("T_in", "T_out"))
         if T_in is not None and T_out is not None and T_in != T_out:

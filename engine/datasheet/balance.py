@@ -251,7 +251,14 @@ def against_library(v: Figures, where: str) -> Line:
     if fluid.outside(np.asarray(T)):
         raise Missing(f"{side}.fluid that the library knows at the mean temperature")
     known = float(fluid.values(T, name)[0])
-    return Line(sheet=printed, recomputed=known, quantity=FLUID_PROPERTIES[name], of=where, share=PROPERTY_SHARES[name])
+    return Line(
+        sheet=printed,
+        recomputed=known,
+        quantity=FLUID_PROPERTIES[name],
+        of=where,
+        by="is what the library has",
+        share=PROPERTY_SHARES[name],
+    )
 
 
 @check(

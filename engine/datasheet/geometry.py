@@ -355,6 +355,7 @@ def drop(v: Figures, where: str) -> Line:
         recomputed=state.dp,
         quantity="pressure_difference",
         of=f"{side}.dp",
+        by="is our own rating",
         share=SHELL_DROP if baffled else TUBE_DROP,
         absolute=500.0,
     )

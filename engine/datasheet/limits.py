@@ -23,6 +23,7 @@ TEST_RATIO = (1.25, 1.55)
 TUBE_RUPTURE = 10 / 13
 EXPANSION_NOTE, EXPANSION = 30.0, 50.0
 FIXED_HEADS = "LMN"
+CASE = "stands in our case"
 RE_LAMINAR, RE_TURBULENT = 2300.0, 1e4
 
 
@@ -200,7 +201,9 @@ def same_as_case(v: Figures, where: str) -> Line | Remark:
         label = v.subject.label(where)
         return Remark(says=f"{label}: the sheet has {v[where]}, the case {asked}.") if v[where] != asked else Remark()
     if isinstance(asked, int):
-        return Line(sheet=float(v[where]), recomputed=float(asked), quantity="dimensionless", of=where, share=0.0)
+        return Line(
+            sheet=float(v[where]), recomputed=float(asked), quantity="dimensionless", of=where, by=CASE, share=0.0
+        )
     declared = sheet_fields()[where]
     assert isinstance(declared, Stated)
     quantity = asked.quantity if isinstance(asked, Figure) else declared.quantities[0]
@@ -210,13 +213,23 @@ def same_as_case(v: Figures, where: str) -> Line | Remark:
     if name == "flow":
         own = case.flow(_side(side))
         assert own is not None
-        return Line(sheet=mass_flow(v, _side(side)), recomputed=own, quantity="mass_flow", of=where, share=0.01)
+        return Line(
+            sheet=mass_flow(v, _side(side)), recomputed=own, quantity="mass_flow", of=where, by=CASE, share=0.01
+        )
     if quantity == "temperature":
         return Line(
-            sheet=float(v[where]), recomputed=float(asked), quantity="temperature", of=where, share=0, absolute=rounding
+            sheet=float(v[where]),
+            recomputed=float(asked),
+            quantity="temperature",
+            of=where,
+            by=CASE,
+            share=0,
+            absolute=rounding,
         )
     if quantity in ("pressure_absolute", "pressure_gauge"):
         own = absolute(asked, float(case.atmosphere))
-        return Line(sheet=pressure(v, where), recomputed=own, quantity="pressure_absolute", of=where, absolute=rounding)
+        return Line(
+            sheet=pressure(v, where), recomputed=own, quantity="pressure_absolute", of=where, by=CASE, absolute=rounding
+        )
     share = 0.005 + rounding / abs(asked) if asked else 0.0
-    return Line(sheet=float(v[where]), recomputed=float(asked), quantity=quantity, of=where, share=share)
+    return Line(sheet=float(v[where]), recomputed=float(asked), quantity=quantity, of=where, by=CASE, share=share)

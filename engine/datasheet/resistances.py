@@ -28,6 +28,7 @@ EXCESS_USUAL = 0.25
 CLEANLINESS = (0.75, 0.90)
 FOULING_USUAL = (1e-4, 1e-3)
 DOMINATES = 0.5
+CASE, OWN = "stands in our case", "is our own rating"
 OWN_FILMS = 2.0
 COPIED = 1.03
 """By how much more U the films would give than is printed, for a copied figure to be told."""
@@ -239,6 +240,7 @@ def outside_film(v: Figures, _: str) -> Line:
         recomputed=own,
         quantity="heat_transfer_coefficient",
         of="outside.h" if "outside.h" in v else "",
+        by=OWN,
         name="the outside film left by clean U",
     )
 
@@ -285,7 +287,7 @@ def fouling_range(v: Figures, where: str) -> Line:
     R = float(v[path])
     if path in v.subject.sheet_values and path in v.subject.case_values:
         asked = float(v.subject.case_values[path])
-        return Line(sheet=R, recomputed=asked, quantity="fouling_resistance", of=path, absolute=1e-6)
+        return Line(sheet=R, recomputed=asked, quantity="fouling_resistance", of=path, by=CASE, absolute=1e-6)
     usual = FOULING.get(str(v.get(f"{where}.fluid") or "").lower())
     low, high = (usual.low, usual.high) if usual else FOULING_USUAL
     if not usual and R == 0.0:
