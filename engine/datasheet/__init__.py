@@ -549,7 +549,9 @@ def _consequence(c: Checked, system: str) -> str:
         ratio = line.sheet / line.recomputed
         ratio = 1 / ratio if c.check.bears == "mtd" and ratio else ratio
         lost = whole * abs(1 - _duty_ratio(values, ratio))
-    text = f"{units.show(lost, 'heat_flow', system, 3)} of duty ({float(f"{100 * lost / whole:.2g}"):g} %)"
+    # Two digits, but never as a power of ten.
+    share = float(f"{100 * lost / whole:.2g}")
+    text = f"{units.show(lost, 'heat_flow', system, 3)} of duty ({share:g} %)"
     for side in SIDES:
         T_in, T_out = (values.get(f"{side}.{end}") for end in ("T_in", "T_out"))
         if T_in is not None and T_out is not None and T_in != T_out:
