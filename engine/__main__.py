@@ -186,6 +186,19 @@ def _findings(_: argparse.Namespace) -> int:
     return DONE
 
 
+def _checks(_: argparse.Namespace) -> int:
+    from engine.datasheet import catalogue
+
+    for row in catalogue():
+        _say(
+            f"{row['id']}: {row['title']}\n"
+            f"  grade   {row['grade']}\n"
+            f"  needs   {row['needs']}\n"
+            f"  source  {row['source']}\n"
+        )
+    return DONE
+
+
 def _schema(_: argparse.Namespace) -> int:
     from engine.casefile import schema
 
@@ -243,6 +256,7 @@ COMMANDS: dict[str, Command] = {
         "compute every published or derived value that the engine must reproduce", _prove, _prove_arguments
     ),
     "findings": Command("list the findings that a rating can have, and what each needs", _findings),
+    "checks": Command("list the checks of a datasheet, and what each needs", _checks),
     "schema": Command("print the JSON Schema of the case file", _schema),
 }
 

@@ -138,6 +138,11 @@ def checks() -> tuple[Check, ...]:
     return tuple(_REGISTER[id] for id in order)
 
 
+def catalogue() -> tuple[dict[str, str], ...]:
+    """One row a check: id, title, the gravest grade, needs, source."""
+    return tuple({key: getattr(c, key) for key in ("id", "title", "grade", "needs", "source")} for c in checks())
+
+
 def within(value: float, quantity: str, *, low: float = -math.inf, high: float = math.inf, **more: Any) -> Line:
     """The line of a figure that should lie in a range."""
     bound: Bound = "at least" if value < low else "at most" if value > high else "within"
@@ -587,6 +592,7 @@ __all__ = [
     "Remark",
     "Repair",
     "Slip",
+    "catalogue",
     "check",
     "check_datasheet",
     "check_json",
