@@ -24,6 +24,7 @@ from engine.correlations.across_bundle import (
     kern_equivalent_diameter,
     kern_film,
     leakage_factor,
+    over_steps,
     taborek_f,
     taborek_j,
     turbulent_share,
@@ -307,3 +308,12 @@ def test_the_film_is_fast():
         bell_delaware_film(g, G=mean, Re=Re, Re_mean=mean, Pr=Pr, cp=4e3, mu_ratio=Pr)
         best = min(best, time.perf_counter() - start)
     assert best / Re.size < 0.3e-6
+
+
+@pytest.mark.parametrize("angle", [30.0, 45.0, 60.0, 90.0])
+def test_a_cell_is_led_over_a_step_and_keeps_the_printed_rows_elsewhere(angle):
+    for end in (1e1, 1e2, 1e3, 1e4):
+        near = end * np.exp(np.linspace(-0.03, 0.03, 601))
+        led = taborek_j(angle, near, 1.33) * over_steps(angle, near)
+        assert np.abs(np.diff(np.log(led))).max() < 1e-3
+        assert (over_steps(angle, np.array([0.98, 1.02]) * end) == 1.0).all()

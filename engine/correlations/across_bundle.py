@@ -44,6 +44,8 @@ BAFFLE_CUT = Range(argument="baffle_cut", low=0.15, high=0.45)
 # Tube layouts
 
 _ROW_ENDS = np.array([10.0, 1e2, 1e3, 1e4])
+STEP_WIDTH = 0.01
+"""Relative half-width in Re over which a cell is led from one printed row to the next (our choice, see `over_steps`)."""
 
 
 @dataclass(frozen=True)
@@ -61,6 +63,18 @@ class _Curve:
         c1, c2 = np.array(self.rows).T
         spread = self.c3 / (1.0 + 0.14 * np.exp(self.c4 * ln_Re))
         return np.asarray(np.exp(np.log(c1)[row] + c2[row] * ln_Re + spread * np.log(1.33 / np.asarray(pitch_ratio))))
+
+    def over_steps(self, Re: Array) -> Array:
+        """Factor that joins the rows linearly in ln Re within STEP_WIDTH of their ends; 1 elsewhere."""
+        factor = np.ones_like(Re)
+        for k, end in enumerate(_ROW_ENDS):
+            way = 0.5 + 0.5 * np.log(Re / end) / np.log1p(STEP_WIDTH)
+            if ((way > 0) & (way < 1)).any():
+                (c1, c2), (d1, d2) = self.rows[k : k + 2]
+                step = d1 / c1 * end ** (d2 - c2)
+                joined = (1 + way * (step - 1)) / np.where(way < 0.5, 1.0, step)
+                factor = np.where((way > 0) & (way < 1), joined, factor)
+        return factor
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -291,6 +305,15 @@ def taborek_j(layout_angle: float, Re: Array, pitch_ratio: Real) -> Array:
 def taborek_f(layout_angle: float, Re: Array, pitch_ratio: Real) -> Array:
     """dP = 2 f G²/rho a row: neither Darcy's factor nor Fanning's."""
     return tube_layout(layout_angle).f(Re, pitch_ratio)
+
+
+def over_steps(layout_angle: float, Re: Array) -> Array:
+    """Factor on j that leads a cell over the printed steps between two rows.
+
+    A cell covers a range of Re, and at a step no single temperature may satisfy both rows: without this the march
+    would swing between them for ever. The relation itself keeps its steps.
+    """
+    return tube_layout(layout_angle).j.over_steps(Re)
 
 
 def ideal_film(

@@ -568,7 +568,8 @@ class ShellAndTube(Input):
         else:
             relation = shell.bell_delaware_film
             h = relation(self.geometry, G=G, Re=Re, Re_mean=Re_mean, Pr=Pr, cp=cp, mu_ratio=mu_ratio)
-        h = h * np.asarray(at.factor_of(relation))[..., None] * self.film_factor.outside
+        h = h * shell.over_steps(self.angle, Re) * np.asarray(at.factor_of(relation))[..., None]
+        h = h * self.film_factor.outside
         regime = (Re >= RE_LAMINAR).astype(np.int8) + (Re >= RE_TRANSITIONAL)
         return Film(h=h, Re=Re, Pr=Pr, velocity=G / at.bulk.rho, regime=regime, relations=(relation,) * 3)
 
