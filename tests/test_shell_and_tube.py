@@ -618,14 +618,15 @@ def test_halved_bays_are_those_of_the_finer_row(passes, halvings):
 
 def test_what_is_not_stated_is_listed_with_its_source():
     exchanger = cooler().exchanger
-    listed = {path: text for path, text, _ in exchanger.derived()}
-    assert listed["tube_wall"] == "2.108 mm"
+    listed = {figure.path: figure.value for figure in exchanger.derived()}
+    assert listed["tube_wall"] == pytest.approx(0.083 * 0.0254)
     # 19 baffles: 1 + floor((4.88 - 2 x 0.25)/0.25) = 18, the ends sharing 4.88 - 17 x 0.25.
-    assert listed["baffles"] == "18"
-    assert listed["inlet_spacing"] == listed["outlet_spacing"] == "315 mm"
+    assert listed["baffles"] == 18
+    assert listed["inlet_spacing"] == pytest.approx(0.315)
+    assert listed["outlet_spacing"] == pytest.approx(0.315)
     # TEMA RCB-4.3: 3/16 inch in shells of 18 to 39 inches; RCB-4.2: 1/32 inch up to spans of 36 inches.
-    assert listed["shell_baffle_clearance"] == "4.8 mm"
-    assert listed["tube_hole_clearance"] == "0.8 mm"
+    assert listed["shell_baffle_clearance"] == pytest.approx(3 / 16 * 0.0254, rel=0.01)
+    assert listed["tube_hole_clearance"] == pytest.approx(1 / 32 * 0.0254, rel=0.01)
     assert "bundle_diameter" in listed
     full = {
         "gauge": None, "tube_wall": "2.11 mm", "baffles": 19, "inlet_spacing": "190 mm", "outlet_spacing": "190 mm",

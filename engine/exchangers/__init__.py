@@ -113,6 +113,19 @@ class Film:
     """The relation that stands behind each regime."""
 
 
+@dataclass(frozen=True, kw_only=True)
+class Derived:
+    """A figure that a table or a rule gives where none is stated."""
+
+    path: str
+    value: float
+    quantity: str
+    """Empty for a count."""
+    source: Source
+    size: str = ""
+    """The stated field whose size this is; empty where the figure is assumed."""
+
+
 class Exchanger(Protocol):
     """The duties of an exchanger type. Arrays as in `Flowing`; U and resistances on the outside bare tube area."""
 
@@ -123,8 +136,8 @@ class Exchanger(Protocol):
     def area_at(self, tubes_plugged: Array) -> Array:
         """The same with so many tubes plugged in each shell, of its shape; 0 or less where none is left open."""
 
-    def derived(self) -> list[tuple[str, str, Source]]:
-        """What follows from tables where the user stated nothing: path, figure in words, source."""
+    def derived(self) -> list[Derived]:
+        """What follows from tables and rules where the user stated no figure."""
 
     @property
     def area_ratio(self) -> float:
@@ -172,6 +185,7 @@ class Exchanger(Protocol):
 __all__ = [
     "REGIMES",
     "Cells",
+    "Derived",
     "Exchanger",
     "Film",
     "Flowing",

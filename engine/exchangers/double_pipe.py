@@ -11,8 +11,8 @@ from numpy.typing import NDArray
 from pydantic import Field
 
 from engine import effectiveness as exact
-from engine.correlations import Array, Correlation, Excursion, Source, annulus, inside_tubes, losses
-from engine.exchangers import Cells, Film, Flowing, entrance_nodes, layout, sliver, standard_sizes
+from engine.correlations import Array, Correlation, Excursion, annulus, inside_tubes, losses
+from engine.exchangers import Cells, Derived, Film, Flowing, entrance_nodes, layout, sliver, standard_sizes
 from engine.exchangers.condenser import CondensingSurface
 from engine.stated import Choice, Count, Input, Problem, Side, Stated, Words
 
@@ -222,12 +222,12 @@ class DoublePipe(Input):
     def area_at(self, tubes_plugged: Array) -> Array:
         return np.full(np.shape(tubes_plugged), self.area)
 
-    def derived(self) -> list[tuple[str, str, Source]]:
+    def derived(self) -> list[Derived]:
         return [
-            (name, f"{od * 1e3:.4g} mm outside, {id * 1e3:.4g} mm inside", standard_sizes.ASME_B36)
+            Derived(path=f"{name}.{end}", value=diameter, quantity="length", source=standard_sizes.ASME_B36, size=name)
             for name, pipe in (("inner_pipe", self.inner_pipe), ("outer_pipe", self.outer_pipe))
             if pipe.nps is not None
-            for od, id in [pipe.diameters]
+            for end, diameter in zip(("od", "id"), pipe.diameters, strict=True)
         ]
 
     @property

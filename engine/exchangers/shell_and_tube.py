@@ -19,7 +19,7 @@ from pydantic_core import PydanticCustomError
 from engine import effectiveness as exact
 from engine.correlations import Array, Correlation, Excursion, Source, inside_tubes, losses
 from engine.correlations import across_bundle as shell
-from engine.exchangers import Cells, Film, Flowing, entrance_nodes, layout, sliver, standard_sizes
+from engine.exchangers import Cells, Derived, Film, Flowing, entrance_nodes, layout, sliver, standard_sizes
 from engine.exchangers.condenser import CondensingSurface
 from engine.exchangers.double_pipe import Factors, length
 from engine.stated import Choice, Count, Input, Problem, Side, Stated, Words
@@ -424,27 +424,31 @@ class ShellAndTube(Input):
             u_tubes=self.u_tubes,
         )
 
-    def derived(self) -> list[tuple[str, str, Source]]:
-        found: list[tuple[str, str, Source]] = []
+    def derived(self) -> list[Derived]:
+        found: list[Derived] = []
+
+        def take(path: str, value: float, source: Source, quantity: str = "length", size: str = "") -> None:
+            found.append(Derived(path=path, value=value, quantity=quantity, source=source, size=size))
+
         if self.gauge is not None:
-            found.append(("tube_wall", _mm((self.tube_od - self.tube_id) / 2), standard_sizes.BWG))
+            take("tube_wall", (self.tube_od - self.tube_id) / 2, standard_sizes.BWG, size="gauge")
         if self.bundle_diameter is None:
-            found.append(("bundle_diameter", _mm(self.outer_tube_limit), standard_sizes.SINNOTT_BUNDLE))
+            take("bundle_diameter", self.outer_tube_limit, standard_sizes.SINNOTT_BUNDLE)
         if self.shell_letter == "X":
             return found
         _, inlet, outlet = self.path_spacings
         if self.baffles is None:
-            found.append(("baffles", str(self.baffle_count), DERIVED_BAFFLES))
+            take("baffles", self.baffle_count, DERIVED_BAFFLES, quantity="")
         for name, stated, used in (
             ("inlet_spacing", self.inlet_spacing, inlet),
             ("outlet_spacing", self.outlet_spacing, outlet),
         ):
             if stated is None or abs(used - stated) > 1e-6:
-                found.append((name, _mm(used), DERIVED_BAFFLES))
+                take(name, used, DERIVED_BAFFLES)
         if self.tube_hole_clearance is None:
-            found.append(("tube_hole_clearance", _mm(self.hole_clearance), standard_sizes.TEMA))
+            take("tube_hole_clearance", self.hole_clearance, standard_sizes.TEMA)
         if self.shell_baffle_clearance is None:
-            found.append(("shell_baffle_clearance", _mm(self.baffle_clearance), standard_sizes.TEMA))
+            take("shell_baffle_clearance", self.baffle_clearance, standard_sizes.TEMA)
         return found
 
     # --- cells ------------------------------------------------------------------------------------------------------

@@ -358,18 +358,19 @@ def assumed(s: Subject) -> Iterator[Finding]:
             source=declared.assumed,
         )
     exchanger = s.case.exchanger
-    for name, figure, source in exchanger.derived():
-        # A table that stands for a stated size assumes nothing.
-        if name not in exchanger.model_fields_set:
-            title = type(exchanger).declared()[name].name
-            yield s.finding(
-                "note",
-                where=f"exchanger.{name}",
-                says=f"Not stated, so taken: {title.lower()} {figure}.",
-                because={title: figure},
-                do=STATE_IT,
-                source=str(source),
-            )
+    for derived in exchanger.derived():
+        if derived.size or derived.path in exchanger.model_fields_set:
+            continue
+        title = type(exchanger).declared()[derived.path].name
+        shown = s.show(derived.value, derived.quantity) if derived.quantity else f"{derived.value:.0f}"
+        yield s.finding(
+            "note",
+            where=f"exchanger.{derived.path}",
+            says=f"Not stated, so taken: {title.lower()} {shown}.",
+            because={title: shown},
+            do=STATE_IT,
+            source=str(derived.source),
+        )
 
 
 @rule(

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Collection, Iterator, Mapping, Sequence
+from itertools import groupby
 from typing import Any
 
 from pydantic import ValidationError
@@ -197,9 +198,22 @@ def _rows(part: Input, words: Words, idle: Collection[str] = ()) -> Iterator[tup
 
 
 def _derived(case: Case, words: Words, cite: Callable[[Source], str]) -> Iterator[tuple[str, str, str]]:
-    declared = type(case.exchanger).declared()
-    for name, text, source in case.exchanger.derived():
-        yield declared[name].name if name in declared else _spelt(name), text, f"derived {cite(source)}"
+    exchanger = case.exchanger
+    declared = dict(type(exchanger).declared())
+    for part, found in groupby(exchanger.derived(), lambda figure: figure.path.partition(".")[0]):
+        figures = list(found)
+        inner = getattr(exchanger, part)
+        names = type(inner).declared() if isinstance(inner, Input) else {}
+        texts = []
+        for figure in figures:
+            text = words.show(figure.value, figure.quantity) if figure.quantity else f"{figure.value:.0f}"
+            own = names.get(figure.path.rpartition(".")[2])
+            texts.append(f"{own.name.lower()} {text}" if own else text)
+        yield (
+            declared[part].name if part in declared else _spelt(part),
+            ", ".join(texts),
+            f"derived {cite(figures[0].source)}",
+        )
     yield "Heat-transfer area", f"{words.show(case.exchanger.area, 'area')}, outside, bare", "derived"
 
 

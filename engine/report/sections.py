@@ -538,7 +538,7 @@ class _Report:
     @cached_property
     def _sources(self) -> list[Source]:
         """All sources cited by number, in the order in which a reader meets them."""
-        derived = [source for _, _, source in self.case.exchanger.derived()]
+        derived = [figure.source for figure in self.case.exchanger.derived()]
         if not self.both:
             return list(dict.fromkeys(derived))
         opinions = [relation.source for _, relation, _, _ in self._opinions]
