@@ -25,7 +25,7 @@ _WHERE = {
     "PROOF_KINDS": "proofs",
     "Problem": "stated",
     "Question": "studies",
-    "Rating": "rating",
+    "Rating": "states",
     "SIDES": "stated",
     "SYSTEMS": "units",
     "Sheet": "sheet",

@@ -1,182 +1,27 @@
-"""From a case to its rating: clean and fouled by the march, closed forms at mean properties beside it, the frame of
-many points.
+"""From a case to its rating: clean and fouled by the march, what is required against what is there, closed forms beside
+it, and the frame of many points.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping, Sequence
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, replace
 
 import numpy as np
 import pandas as pd
 from scipy.optimize import brentq
 
-from engine import effectiveness as exact
 from engine import fluids
 from engine.case import Case
-from engine.correlations import Array, Correlation, Excursion
-from engine.exchangers import REGIMES, Film, Flowing
+from engine.closed_forms import correction, counter_lmtd, driving_force, mean_films, mean_flowing, mean_property_state
+from engine.correlations import Array
+from engine.exchangers import REGIMES, Film
 from engine.exchangers.condenser import CondensingFilm
 from engine.fluids import Fluid
-from engine.points import (
-    SETTLED,
-    Points,
-    Solution,
-    Texts,
-    film_spread,
-    flowing_side,
-    in_series,
-    joined,
-    points_of,
-    resistances,
-    solve,
-)
+from engine.points import SETTLED, Points, Solution, Texts, flowing_side, in_series, joined, points_of, solve
 from engine.stated import SIDES, Side, opposite
+from engine.states import Chest, Profile, Rating, SideState, State, Zone
 from engine.steam import Steam, steam_of
-
-
-@dataclass(frozen=True, kw_only=True)
-class Profile:
-    """Temperatures along the exchanger of one point; x is the area fraction from the inside inlet on, both ends and
-    the cell centres; of the rest of the area where part of it is flooded by condensate. Wall temperatures are those of
-    the metal's two faces; `surface` those the fluids touch."""
-
-    x: Array
-    T: Mapping[Side, Array]
-    wall_T: Mapping[Side, Array]
-    surface_T: Mapping[Side, Array]
-    regime: Mapping[Side, tuple[str, ...]]
-    heat_flux: Array
-    """On the outside bare area, hot to cold [W/m²]."""
-
-
-@dataclass(frozen=True, kw_only=True)
-class SideState:
-    """One side of a solved state. Re, Pr, velocity and drop of condensing steam are not rated: NaN here, null in the
-    result file."""
-
-    flow: float
-    """Of the whole stream [kg/s]; of condensing steam what condenses."""
-    T_in: float
-    T_out: float
-    h: float
-    Re: float
-    Pr: float
-    velocity: float
-    regime: str
-    drops: Mapping[str, float]
-    R_fouling: float
-    relations: tuple[Correlation, ...]
-    excursions: tuple[Excursion, ...]
-    properties_in: Mapping[str, float]
-    properties_out: Mapping[str, float]
-    second_opinions: Mapping[str, float]
-    surface_T: tuple[float, float]
-    """Lowest and highest temperature of the surface that the fluid touches [K]."""
-    second_opinion_drops: Mapping[str, float] = field(default_factory=dict)
-    """By other published relations and coefficients, by name [Pa]."""
-
-    @property
-    def dp(self) -> float:
-        return sum(self.drops.values()) if self.drops else np.nan
-
-
-@dataclass(frozen=True, kw_only=True)
-class Zone:
-    """Part of what condensing steam gives. Desuperheating has no area of its own: it condenses on the wet wall."""
-
-    name: str
-    """desuperheating, condensing or subcooling."""
-    duty: float
-    area: float | None = None
-    U: float | None = None
-    mtd: float | None = None
-
-
-@dataclass(frozen=True, kw_only=True)
-class Chest:
-    """The condensing side of one state. Pressures are absolute."""
-
-    side: Side
-    p_supply: float
-    p: float
-    """At which the chest settles: as supplied, or lower where less steam comes than the area would condense."""
-    T_sat: float
-    flow: float
-    """What condenses [kg/s]."""
-    flow_most: float | None
-    """What comes at most, where it is stated."""
-    heat: float
-    """What a kilogram gives [J/kg]."""
-    zones: tuple[Zone, ...]
-    T_vapour: float
-    """At which vapour enters the chest, let down to its pressure [K]."""
-    dry_surface: float | None
-    """Temperature of the hottest surface if vapour touched it dry; None where the vapour is saturated [K]."""
-    p_required: float | None = None
-    """At which the area would give just the required duty."""
-    p_required_problem: str = ""
-    """Why there is no such pressure, where a duty is required."""
-    stall_duty: float | None = None
-    """With the chest at the stated back pressure: at any smaller duty condensate no longer drains."""
-
-    @property
-    def throttled(self) -> bool:
-        return self.p < self.p_supply * (1 - 1e-6)
-
-
-@dataclass(frozen=True, kw_only=True)
-class State:
-    """One state of the exchanger by one method."""
-
-    method: str
-    state: str
-    duty: float
-    T_out: Mapping[Side, float]
-    area: float
-    mtd: float
-    F: float
-    effectiveness: float
-    NTU: float
-    U_clean: float
-    U_dirty: float
-    resistances: Mapping[str, float]
-    """Outside film, outside fouling, wall, inside fouling, inside film [m²K/W] on the outside bare area."""
-    U_required: float | None = None
-    margin: float | None = None
-    required_duty: float | None = None
-    sides: Mapping[Side, SideState] = field(default_factory=dict)
-    profile: Profile | None = None
-    chest: Chest | None = None
-    """Where steam condenses."""
-    wall_R: float = 0.0
-    surface_T: Mapping[Side, float] = field(default_factory=dict)
-    """Mean temperature of the surface that each fluid touches [K]."""
-    converged: bool = True
-    iterations: int = 0
-    residual: float = 0.0
-
-
-@dataclass(frozen=True, kw_only=True)
-class Rating:
-    """A rated case: both states by the march, the fouled state by every method, or the reason why there is none."""
-
-    case: Case
-    states: Mapping[str, State]
-    methods: Mapping[str, State | str]
-    problem: str = ""
-    """A sentence when the physics leaves no answer, such as a liquid that boils at the wall."""
-    requirement: str = ""
-    """Why a stated outlet gives no required U, when it does not."""
-
-    @property
-    def fouled(self) -> State:
-        return self.states["fouled"]
-
-    @property
-    def clean(self) -> State:
-        return self.states["clean"]
-
 
 # --- the frame ------------------------------------------------------------------------------------------------------
 
@@ -253,34 +98,6 @@ def figures_of(case: Case, solved: Solution) -> dict[str, Array]:
         "outside.Re": mean["outside"].Re[:, 0],
         "inside.dp": dp["inside"],
         "outside.dp": dp["outside"],
-    }
-
-
-def mean_flowing(
-    case: Case, points: Points, T_out: Mapping[Side, Array], surface: Mapping[Side, Array]
-) -> dict[Side, Flowing]:
-    """Each side at the mean of its inlet and outlet, as one cell; without a condensing one."""
-    return {
-        side: flowing_side(
-            case.fluid(side),
-            side,
-            points,
-            0.5 * (points.T_in[side] + T_out[side])[:, None],
-            surface[side][:, None],
-        )
-        for side in SIDES
-        if side != case.steam_side
-    }
-
-
-def mean_films(case: Case, solved: Solution) -> dict[Side, Film]:
-    """The films at the mean of inlet and outlet; a condensing one as it is, (P, n)."""
-    surface: dict[Side, Array] = {side: solved.surface[side] @ solved.share for side in SIDES}
-    flowing = mean_flowing(case, solved.points, solved.T_out, surface)
-    whole = case.exchanger.whole()
-    return {
-        side: case.exchanger.film(side, whole, flowing[side]) if side in flowing else solved.films[side]
-        for side in SIDES
     }
 
 
@@ -373,7 +190,7 @@ def state_of(case: Case, solved: Solution, i: int, name: str) -> State:
         T_out={side: float(solved.T_out[side][i]) for side in SIDES},
         area=area,
         mtd=mtd,
-        F=_correction(mtd, lmtd),
+        F=correction(mtd, lmtd),
         effectiveness=duty / (C_min * abs(float((T_in["inside"] - T_in["outside"])[0]))),
         NTU=U * area / C_min,
         U_clean=float(solved.U_clean[i]),
@@ -497,20 +314,6 @@ def _printed(fluid: Fluid, T: float) -> dict[str, float]:
     return {name: float(getattr(at, name)) for name in ("rho", "cp", "mu", "k")}
 
 
-def counter_lmtd(case: Case, T_in: Mapping[Side, Array], T_out: Mapping[Side, Array]) -> float:
-    """LMTD at the terminal temperatures: counter-current, for a co-current double pipe its own."""
-    cocurrent = getattr(case.exchanger, "arrangement", "counter") == "co-current"
-    inside_ends = (T_in["inside"], T_out["inside"])
-    outside_ends = (T_in["outside"], T_out["outside"]) if cocurrent else (T_out["outside"], T_in["outside"])
-    ends = [np.abs(a - b) for a, b in zip(inside_ends, outside_ends, strict=True)]
-    return float(exact.log_mean(ends[0], ends[1])[0])
-
-
-def _correction(mtd: float, lmtd: float) -> float:
-    """F; 1 where the fluids have met within the digits, so that no end difference is left to compare with."""
-    return mtd / lmtd if lmtd > 0 else 1.0
-
-
 def _profile(solved: Solution, i: int) -> Profile:
     whole = along(solved)
     regime: dict[Side, tuple[str, ...]] = {}
@@ -588,7 +391,7 @@ def _with_requirement(case: Case, states: Mapping[str, State]) -> tuple[dict[str
         T_out_required[side] = np.array([T])
     if not (T_out_required[hot] > T_in[cold] and T_out_required[cold] < T_in[hot]):
         return dict(states), "the required outlets cross the other inlet: no area can give them"
-    found = _driving_force(case, T_in, T_out_required)
+    found = driving_force(case, T_in, T_out_required)
     if isinstance(found, str):
         return dict(states), found
     lmtd, F = (float(x[0]) for x in found)
@@ -621,16 +424,6 @@ def _too_little(case: Case, steam: Steam, duty: float) -> str:
     if duty <= most:
         return ""
     return f"the stated {flow:.4g} kg/s of steam give {most / 1e3:.4g} kW at most, and {duty / 1e3:.4g} kW are required"
-
-
-def _driving_force(case: Case, T_in: Mapping[Side, Array], T_out: Mapping[Side, Array]) -> tuple[Array, Array] | str:
-    """LMTD and F at terminal temperatures; beside condensing steam F is 1 in any arrangement."""
-    steam = case.steam_side
-    if steam is None:
-        return case.exchanger.driving_force(T_in, T_out)
-    cold = opposite(steam)
-    ends = [np.maximum(T_in[steam] - T, 0.0) for T in (T_in[cold], T_out[cold])]
-    return exact.log_mean(*ends), np.ones_like(ends[0])
 
 
 def _enthalpy_rise(fluid: Fluid, T_in: float, T_out: float) -> float:
@@ -689,129 +482,3 @@ def _with_pressures(case: Case, both: Points, states: Mapping[str, State], finen
             chest = replace(chest, stall_duty=float(solved.duty[at_back]))
         found[name] = replace(states[name], chest=chest)
     return found
-
-
-# --- closed forms beside the march ------------------------------------------------------------------------------------
-
-
-def mean_property_state(case: Case, point: Points, method: str, start: State, fineness: int = 1) -> State | str:
-    """The fouled state with properties, films and U at mean temperatures, by ε-NTU or by LMTD and F.
-
-    Returns the reason instead where the arrangement has no such relation. `start` only gives the first guess.
-    """
-    exchanger, steam, chest = case.exchanger, steam_of(case), start.chest
-    if method == "lmtd" and steam is None and exchanger.F_through_effectiveness:
-        return "F of this arrangement is only known through its ε, so it would be no second way beside it"
-    T_out: dict[Side, Array] = {side: np.array([start.T_out[side]]) for side in SIDES}
-    surface: dict[Side, Array] = {side: np.array([start.surface_T[side]]) for side in SIDES}
-    whole = exchanger.whole(fineness)
-    T_in = dict(point.T_in)
-    flow = np.zeros(1)
-    if steam is not None and chest is not None:
-        if steam.subcooling:
-            return "the area that condensate floods is not part of the closed forms"
-        T_in[steam.side] = T_out[steam.side] = np.array([chest.T_sat])
-        flow = np.array([chest.flow])
-    span = abs(float((T_in["inside"] - T_in["outside"])[0]))
-    own = {side: case.fluid(side) for side in SIDES}
-    count = 0
-    while (count := count + 1) < 200:
-        flowing = mean_flowing(case, point, T_out, surface)
-        films = {side: exchanger.film(side, whole, flowing[side]) for side in flowing}
-        if steam is not None:
-            at = steam.at(T_in[steam.side], surface[steam.side][:, None], flow, point.tubes_plugged, {})
-            films[steam.side] = steam.surface.film(at)
-        T_metal = 0.5 * (surface["inside"] + surface["outside"])[:, None]
-        local = resistances(case, point, films, T_metal)
-        spread = film_spread(case, whole, flowing, {side: films[side].h for side in SIDES}, local)
-        local = resistances(case, point, films, T_metal, spread)
-        # The entrance makes U differ along a leg; its area mean is the U of every method.
-        share, U_local = whole.layout.area_share, in_series(local)
-        U = float((U_local @ share)[0])
-        R = {name: float(((U_local * r) @ share)[0]) / U for name, r in local.items()}
-        C = dict.fromkeys(SIDES, np.inf)
-        for side in flowing:
-            C[side] = float((point.flow[side] * own[side].mean_cp(T_in[side], T_out[side]))[0])
-        C_min, C_max = min(C.values()), max(C.values())
-        inside_is_min = C["inside"] <= C["outside"]
-        if exchanger.heat_loss and (steam is None or steam.side == "inside"):
-            return "the stated heat loss is not part of the closed forms"
-        NTU = U * exchanger.area / C_min
-        if method == "effectiveness_ntu":
-            found = (
-                exchanger.effectiveness(np.array([NTU]), np.array([C_min / C_max]), np.array([inside_is_min]))
-                if steam is None
-                else exact.effectiveness_counter(np.array([NTU]), 0.0)
-            )
-            if isinstance(found, str):
-                return found
-            duty = float(found[0]) * C_min * span
-        else:
-            answer = _lmtd_duty(case, T_in, C, U)
-            if isinstance(answer, str):
-                return answer
-            duty = answer
-        hot = case.hot
-        if steam is not None:
-            flow = (duty + steam.loss) / steam.heat(point.T_in[steam.side], T_in[steam.side])
-        new = {side: T_in[side] + (-duty if side == hot else duty) / C[side] for side in SIDES}
-        mean = {side: 0.5 * (T_in[side] + new[side]) for side in SIDES}
-        # The mean temperatures of a side lie off the profile's; the flux between films is duty over area.
-        flux = (duty if hot == "inside" else -duty) / exchanger.area
-        new_surface: dict[Side, Array] = {
-            "inside": mean["inside"] - flux * R["inside film"],
-            "outside": mean["outside"] + flux * R["outside film"],
-        }
-        change = max(float(np.abs(new[side] - T_out[side])[0]) for side in SIDES)
-        change = max(change, *(float(np.abs(new_surface[side] - surface[side])[0]) for side in SIDES))
-        T_out, surface = new, new_surface
-        if change < 1e-9 * span:
-            break
-    else:
-        return "its fixed point did not settle"
-    mtd = duty / (U * exchanger.area)
-    return State(
-        method=method,
-        state="fouled",
-        duty=duty,
-        T_out={side: float(T_out[side][0]) for side in SIDES},
-        area=exchanger.area,
-        mtd=mtd,
-        F=_correction(mtd, counter_lmtd(case, T_in, T_out)),
-        effectiveness=duty / (C_min * span),
-        NTU=NTU,
-        U_clean=1.0 / (1.0 / U - R["outside fouling"] - R["inside fouling"]),
-        U_dirty=U,
-        resistances=R,
-        wall_R=R["wall"],
-        surface_T={side: float(surface[side][0]) for side in SIDES},
-        chest=chest,
-        iterations=count,
-        residual=change / span,
-    )
-
-
-def _lmtd_duty(case: Case, T_in: Mapping[Side, Array], C: Mapping[Side, float], U: float) -> float | str:
-    """The duty at which U·area·F·LMTD equals it, found without any ε relation."""
-    hot = case.hot
-    span = abs(float((T_in["inside"] - T_in["outside"])[0]))
-    most = min(C.values()) * span
-    reason = ""
-
-    def excess(share: float) -> float:
-        nonlocal reason
-        duty = share * most
-        T_out = {side: T_in[side] + (-duty if side == hot else duty) / C[side] for side in SIDES}
-        found = _driving_force(case, T_in, T_out)
-        if isinstance(found, str):
-            reason = found
-            return 0.0
-        lmtd, F = (float(x[0]) for x in found)
-        return float(U * case.exchanger.area * max(np.nan_to_num(F) * lmtd, 0.0) - duty)
-
-    low, high = 1e-12, 1 - 1e-12
-    if excess(low) <= 0 or reason:
-        return reason or "no driving force"
-    if excess(high) >= 0:
-        return high * most
-    return float(brentq(excess, low, high, xtol=1e-15, rtol=1e-14)) * most

@@ -8,8 +8,8 @@ from typing import Any
 
 from engine import __version__
 from engine.findings import Verdict
-from engine.rating import Chest, Profile, Rating, SideState, State
 from engine.stated import SIDES
+from engine.states import Chest, Profile, Rating, SideState, State
 from engine.uncertainty import Intervals
 
 FORMAT = "countercheck-rating"

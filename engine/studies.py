@@ -16,10 +16,11 @@ from pydantic import ValidationError
 
 from engine import fluids, units
 from engine.case import R_FOULING, Case, SolutionFluid
+from engine.closed_forms import mean_films
 from engine.correlations import Array, Excursion
 from engine.exchangers import REGIMES
 from engine.points import Points, Solution, joined, points_of
-from engine.rating import FIGURES, along, figures_of, mean_films, rate, tabulated
+from engine.rating import FIGURES, along, figures_of, rate, tabulated
 from engine.stated import SIDES, CaseError, Figure, Input, Problem, Side, opposite
 from engine.uncertainty import NORMAL_95, doubts, each_way
 

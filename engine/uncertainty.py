@@ -17,8 +17,8 @@ from engine import fluids
 from engine.case import Case, ConstantFluid, PureFluid, SteamFluid, TableFluid
 from engine.correlations import Array
 from engine.points import SETTLED, Points, Solution, joined, points_of, solve
-from engine.rating import Rating
 from engine.stated import SIDES, Figure, Side
+from engine.states import Rating
 
 NORMAL_95 = 1.959963984540054
 COMMON_PRACTICE = "common practice"

@@ -18,9 +18,10 @@ from engine import units
 from engine.case import Case
 from engine.casefile import parse_case
 from engine.exchangers.shell_and_tube import ShellAndTube
-from engine.rating import Rating, rate
+from engine.rating import rate
 from engine.sheet import Sheet, sheet_fields
 from engine.stated import SIDES, CaseError, Count, Stated
+from engine.states import Rating
 
 Random = np.random.Generator
 

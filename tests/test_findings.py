@@ -14,7 +14,8 @@ import pytest
 
 from engine.casefile import parse_case
 from engine.findings import GRADES, Finding, Verdict, catalogue, findings, judge, rule, rules
-from engine.rating import Rating, rate
+from engine.rating import rate
+from engine.states import Rating
 from engine.uncertainty import Intervals, propagate
 from tests.cases import OIL_TABLE, changed
 

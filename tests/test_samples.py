@@ -10,8 +10,9 @@ from pathlib import Path
 import pytest
 
 from engine.casefile import dump_case, load_case, parse_case, raw_of
-from engine.rating import Rating, rate
+from engine.rating import rate
 from engine.stated import SIDES
+from engine.states import Rating
 from engine.uncertainty import propagate
 from tests.cases import changed
 

@@ -15,12 +15,13 @@ from hypothesis import strategies as st
 from engine import effectiveness as exact
 from engine.case import Case
 from engine.casefile import dump_case, parse_case, raw_of
+from engine.closed_forms import mean_flowing
 from engine.correlations import across_bundle as shell
 from engine.exchangers import layout
 from engine.march import temperatures
 from engine.points import points_of
 from engine.proofs.shell_and_tube import measured_exchanger
-from engine.rating import mean_flowing, rate, rate_points
+from engine.rating import rate, rate_points
 from engine.stated import CaseError
 from engine.uncertainty import propagate
 

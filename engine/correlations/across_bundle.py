@@ -45,7 +45,7 @@ BAFFLE_CUT = Range(argument="baffle_cut", low=0.15, high=0.45)
 
 _ROW_ENDS = np.array([10.0, 1e2, 1e3, 1e4])
 STEP_WIDTH = 0.01
-"""Relative half-width in Re over which a cell is led from one printed row to the next (our choice, see `over_steps`)."""
+"""Relative half-width in Re over which a cell is led from one printed row to the next: our choice."""
 
 
 @dataclass(frozen=True)

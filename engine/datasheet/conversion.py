@@ -10,6 +10,7 @@ import numpy as np
 from engine import fluids, units
 from engine.case import Case
 from engine.casefile import FORMAT, VERSION, raw_case
+from engine.closed_forms import counter_lmtd
 from engine.datasheet.figures import (
     DOUBLE_PIPE,
     FLUID_PROPERTIES,
@@ -23,10 +24,10 @@ from engine.datasheet.figures import (
 from engine.datasheet.geometry import height_of_segment
 from engine.exchangers.double_pipe import DoublePipe
 from engine.exchangers.shell_and_tube import ShellAndTube
-from engine.rating import Rating, State, counter_lmtd
 from engine.sheet import Sheet, sheet_fields
 from engine.sheet.typed import raw_sheet
 from engine.stated import SIDES, Figure, Side
+from engine.states import Rating, State
 
 STREAM = ("flow", "T_in", "p_in", "T_out", "R_fouling", "dp_allowed")
 LIMITS = ("design_pressure", "test_pressure", "design_temperature")

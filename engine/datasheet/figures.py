@@ -17,9 +17,10 @@ from engine.case import ATMOSPHERE, Case, PureFluid, absolute
 from engine.exchangers import standard_sizes
 from engine.exchangers.double_pipe import DoublePipe
 from engine.exchangers.shell_and_tube import ShellAndTube
-from engine.rating import Rating, rate
+from engine.rating import rate
 from engine.sheet import PARTS, Sheet, sheet_fields
 from engine.stated import SIDES, Figure, Side, Stated
+from engine.states import Rating
 
 DOUBLE_PIPE, SHELL_AND_TUBE = "double-pipe", "shell-and-tube"
 FLUID_PROPERTIES: Mapping[str, str] = {

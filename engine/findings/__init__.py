@@ -15,8 +15,8 @@ from engine import units
 from engine.case import Case
 from engine.exchangers.shell_and_tube import ShellAndTube
 from engine.fluids import Fluid
-from engine.rating import Rating, State
 from engine.stated import SIDES, Side
+from engine.states import Rating, State
 from engine.uncertainty import Intervals
 
 Grade = Literal["stop", "act", "watch", "note"]

@@ -8,7 +8,7 @@ from engine import fluids
 from engine.case import SteamFluid
 from engine.findings import COMMON_PRACTICE, Finding, Missing, Subject, percent, rule
 from engine.findings.validity import OWN
-from engine.rating import Chest
+from engine.states import Chest
 
 M_WATER, M_AIR = 18.015e-3, 28.96e-3
 """Molar masses [kg/mol]."""

@@ -11,8 +11,8 @@ from engine.correlations import Array
 from engine.exchangers.shell_and_tube import ShellAndTube
 from engine.findings import COMMON_PRACTICE, Finding, Missing, Subject, percent, rule, span
 from engine.findings.validity import OWN, capacities
-from engine.rating import State
 from engine.stated import SIDES, Side
+from engine.states import State
 from engine.studies import SCALING_SURFACE, scales
 
 OUTLETS_APART = 0.02

@@ -9,8 +9,8 @@ from scipy.constants import g
 
 from engine.case import ConstantFluid, TableFluid
 from engine.findings import COMMON_PRACTICE, Finding, Missing, Subject, percent, rule, span
-from engine.rating import State
 from engine.stated import SIDES, Choice, Count, Figure, Side, Stated
+from engine.states import State
 
 OWN = "this calculation"
 

@@ -15,7 +15,8 @@ from engine.exchangers import layout
 from engine.exchangers.double_pipe import DoublePipe, Pipe
 from engine.march import temperatures
 from engine.proofs import Kind, Proof
-from engine.rating import State, rate
+from engine.rating import rate
+from engine.states import State
 
 FOOT, DEGREE = 0.3048, 5 / 9
 BTU_PER_HOUR = 0.29307107

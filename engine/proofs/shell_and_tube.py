@@ -11,7 +11,8 @@ from typing import Any
 from engine.casefile import parse_case
 from engine.correlations import REGISTER
 from engine.proofs import Proof
-from engine.rating import Rating, State, rate
+from engine.rating import rate
+from engine.states import Rating, State
 from engine.uncertainty import NORMAL_95, propagate
 from engine.units import from_unit
 

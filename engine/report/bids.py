@@ -11,10 +11,11 @@ from engine.casefile import parse_case, raw_case
 from engine.datasheet import GRADES, Audit
 from engine.datasheet.conversion import case_of_sheet
 from engine.datasheet.figures import Figures, Missing, bare_area, bore, outside_diameter, surface
-from engine.rating import Rating, rate
+from engine.rating import rate
 from engine.report.blocks import Block, Table
 from engine.report.words import NONE, Words
 from engine.stated import SIDES, CaseError, Figure, Side
+from engine.states import Rating
 
 MOST_BIDS = 4
 PRINTED: tuple[tuple[str, str], ...] = (

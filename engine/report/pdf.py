@@ -23,11 +23,11 @@ from reportlab.platypus import Table as Grid
 from engine import __version__
 from engine.datasheet import Audit
 from engine.findings import Verdict
-from engine.rating import Rating
 from engine.report.blocks import Block, Bundle, Section, Table
 from engine.report.datasheet import sheet_sections
 from engine.report.drawings import BOLD, HAIR, INK, PALE, REGULAR, drawn, fitted
 from engine.report.sections import sections
+from engine.states import Rating
 from engine.uncertainty import Intervals
 
 FONTS = Path(__file__).parents[1] / "fonts"

@@ -18,11 +18,11 @@ from engine.exchangers.double_pipe import DoublePipe
 from engine.exchangers.shell_and_tube import ShellAndTube
 from engine.findings import GRADES, Finding, Verdict
 from engine.findings import findings as by_grade
-from engine.rating import Profile, Rating, SideState, State
 from engine.report import inputs
 from engine.report.blocks import Block, Chart, Line, Section, Strip, Table
 from engine.report.words import NONE, Ends, Words, capital, fluid_name, limits_of, listed, page_of, relation_name
 from engine.stated import SIDES, Side
+from engine.states import Profile, Rating, SideState, State
 from engine.uncertainty import Intervals
 
 STATES = ("clean", "fouled")
