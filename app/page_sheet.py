@@ -2,11 +2,7 @@
 
 from __future__ import annotations
 
-import json
-import re
-from collections import Counter
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 from typing import Any
 
 import streamlit as st
@@ -17,45 +13,14 @@ from app.display import plain
 from app.frame import table
 from app.page_case import file_name, fold_out
 from app.page_rating import GRADES
+from app.sheet_words import Line, Told, audited, blank_files, checks_csv, own_case, pdf, sheet_files
 
 TITLE = "Datasheet check"
 FOUND, FIGURES, BIDS = "What was found", "Figures of the sheet", "Bids side by side"
 VIEWS = (FOUND, FIGURES, BIDS)
-MOST_REPAIRS = 6
 BESIDE = "sheet beside the case"
+XLSX = "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet"
 LEFT = "pasted and not understood"
-
-
-@dataclass(frozen=True)
-class Line:
-    """One check in words."""
-
-    id: str
-    title: str
-    grade: str
-    says: str
-    arithmetic: tuple[str, ...]
-    figures: tuple[tuple[str, str], ...]
-    consequence: str
-    question: str
-    missing: str
-    source: str
-
-
-@dataclass(frozen=True)
-class Told:
-    """An audit in words, in one system of units."""
-
-    counts: dict[str, int]
-    found: tuple[Line, ...]
-    missing: tuple[Line, ...]
-    clear: tuple[tuple[str, ...], ...]
-    gains: tuple[tuple[str, int], ...]
-    """Fields that are lacking, and how many checks each would help to make."""
-    slips: tuple[str, ...]
-    repairs: tuple[tuple[str, ...], ...]
-    side_names: dict[str, str]
-    problems: tuple[engine.Problem, ...]
 
 
 def show() -> None:
@@ -67,7 +32,7 @@ def show() -> None:
         uploading()
         pasting()
         saving(text, system)
-        turning(text)
+        turning()
     beside()
     stated = sheet() != {}
     if stated:
@@ -118,108 +83,6 @@ def subject() -> dict[str, Any]:
     return session.case() if session.chosen(BESIDE) is not False else {"sheet": sheet()}
 
 
-def own_case(text: str) -> engine.Case | None:
-    return session.checked(text).case
-
-
-def audit_of(text: str) -> tuple[Any, tuple[engine.Problem, ...]]:
-    """The audit of what can be read of a sheet, and what cannot."""
-    read, problems = engine.sheet_as_typed(json.loads(text).get("sheet") or {})
-    case = own_case(text)
-    return engine.check_datasheet(case.model_copy(update={"sheet": read}) if case else read), problems
-
-
-@st.cache_data(max_entries=256, show_spinner="Checking the sheet …")
-def audited(text: str, system: str) -> Told:
-    audit, problems = audit_of(text)
-    about = audit.subject
-    kinds = json.loads(text).get("exchanger") or {}
-    double_pipe = about.double_pipe or (kinds.get("type") == "double-pipe" and not audit.sheet.stated())
-    lacking = [c for c in audit.checks if c.outcome == "not possible"]
-    return Told(
-        counts=dict(audit.counts),
-        found=tuple(_line(c, system) for c in audit.found),
-        missing=tuple(_line(c, system) for c in lacking),
-        clear=tuple(
-            (c.check.id, c.title(), c.shown(c.line.sheet, system), c.expected(system))
-            for c in audit.checks
-            if c.outcome == "clear" and c.line is not None
-        ),
-        gains=tuple(gains([c.missing for c in lacking], about)),
-        slips=tuple(f"{_capital(about.label(slip.field))}: {slip.name}" for slip in audit.slips),
-        repairs=tuple(
-            (_capital(r.change(about, system)), f"{r.clears} of {r.of}", str(r.breaks), r.slip or "–")
-            for r in audit.repairs[:MOST_REPAIRS]
-        ),
-        side_names={
-            side: _capital(
-                {"inside": "inner pipe", "outside": "annulus"}[side] if double_pipe else about.side_name(side)
-            )
-            for side in engine.SIDES
-        },
-        problems=problems,
-    )
-
-
-def _line(c: Any, system: str) -> Line:
-    about = c.subject
-    return Line(
-        id=c.check.id,
-        title=c.title(),
-        grade=c.grade or "",
-        says=c.says(system),
-        arithmetic=engine.arithmetic(c, system),
-        figures=tuple(
-            (
-                _capital(about.label(path)),
-                _as_typed(about.values[path]) + (" (our case)" if path in c.from_case else ""),
-            )
-            for path in c.fields
-            if path != "type"
-        ),
-        consequence=c.consequence(system),
-        question=c.question(system),
-        missing=in_words(c.missing, about.label),
-        source=c.check.source,
-    )
-
-
-def _as_typed(value: Any) -> str:
-    return getattr(value, "text", "") or str(value)
-
-
-def _capital(text: str) -> str:
-    return text[:1].upper() + text[1:]
-
-
-_FIELD = re.compile(r"\b(?:(?:inside|outside|inner_pipe|outer_pipe)\.\w+|[A-Za-z]+(?:_\w+)+|[a-z]+)\b")
-
-
-def _fields_in(missing: str) -> list[str]:
-    known = engine.sheet_fields()
-    return [name for name in dict.fromkeys(_FIELD.findall(missing.partition("(")[0])) if name in known]
-
-
-def in_words(missing: str, label: Any) -> str:
-    """What is lacking, with fields called as on the form."""
-    if not missing or set(_fields_in(missing)) != set(re.findall(r"[\w.]+", missing)) - {"or", "and"}:
-        return missing
-    return re.sub(r"[\w.]+", lambda name: name[0] if name[0] in ("or", "and") else str(label(name[0])), missing)
-
-
-def gains(missing: Sequence[str], about: Any) -> list[tuple[str, int]]:
-    """Fields that checks wait for, those that most wait for first; of phases only where the sheet speaks of some."""
-    phases = set(sheet_form.SIDE_GROUPS[sheet_form.PHASES])
-    if any(path.rpartition(".")[2] in phases for path in about.sheet_values):
-        phases = set()
-    counted = Counter(name for text in missing for name in set(_fields_in(text)))
-    return [
-        (_capital(about.label(name)), count)
-        for name, count in counted.most_common()
-        if count > 1 and name.rpartition(".")[2] not in phases
-    ]
-
-
 # --- entering ---------------------------------------------------------------------------------------------------------
 
 
@@ -235,11 +98,9 @@ def uploading() -> None:
             args=(widget,),
         )
         st.caption("A table of two columns, field and value with its unit. The blank form names every field.")
-        _download("Blank form (XLSX)", engine.blank_xlsx(), "datasheet.xlsx", XLSX)
-        _download("Blank form (CSV)", engine.blank_csv(), "datasheet.csv", "text/csv")
-
-
-XLSX = "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet"
+        as_csv, as_xlsx = blank_files()
+        _download("Blank form (XLSX)", as_xlsx, "datasheet.xlsx", XLSX)
+        _download("Blank form (CSV)", as_csv, "datasheet.csv", "text/csv")
 
 
 def _download(label: str, content: bytes | str, name: str, kind: str, **look: Any) -> None:
@@ -313,12 +174,11 @@ def saving(text: str, system: str) -> None:
     if not sheet():
         return
     with fold_out("Save", ":material/download:"):
-        name = _name()
-        read, problems = engine.sheet_as_typed(sheet())
-        _download("Sheet (XLSX)", engine.sheet_xlsx(read), f"{name}.xlsx", XLSX)
-        _download("Sheet (CSV)", engine.sheet_csv(read), f"{name}.csv", "text/csv")
+        name, (as_csv, as_xlsx, unread) = _name(), sheet_files(text)
+        _download("Sheet (XLSX)", as_xlsx, f"{name}.xlsx", XLSX)
+        _download("Sheet (CSV)", as_csv, f"{name}.csv", "text/csv")
         _download("All checks (CSV)", checks_csv(text, system), f"{name}-checks.csv", "text/csv")
-        left = f" Left out, since they do not read: {len(problems)}." if problems else ""
+        left = f" Left out, since they do not read: {unread}." if unread else ""
         st.caption(f"The sheet is saved with the case too, on the page Case.{left}")
         st.button("Empty this sheet", on_click=_emptied, key=f"empty{session.view()}")
 
@@ -332,17 +192,7 @@ def _name() -> str:
     return file_name({"tag": raw.get("item") or session.case().get("tag") or "datasheet"}, "").rstrip(".")
 
 
-@st.cache_data(max_entries=32, show_spinner=False)
-def checks_csv(text: str, system: str) -> bytes:
-    return engine.check_csv(audit_of(text)[0], system)
-
-
-@st.cache_data(max_entries=16, show_spinner="Writing the PDF …")
-def pdf(text: str, system: str) -> bytes:
-    return engine.sheet_pdf(audit_of(text)[0], system)
-
-
-def turning(text: str) -> None:
+def turning() -> None:
     """A case of the sheet, and a sheet of the rating."""
     with fold_out("Turn into", ":material/swap_horiz:"):
         st.button("A case of this sheet", on_click=_made_case, disabled=not sheet(), key=f"case{session.view()}")
