@@ -11,7 +11,8 @@ from engine import effectiveness as exact
 from engine.case import Case
 from engine.correlations import Array
 from engine.exchangers import Film, Flowing
-from engine.points import Points, Solution, film_spread, flowing_side, in_series, resistances
+from engine.points import Points
+from engine.solve import Solution, film_spread, flowing_side, in_series, resistances
 from engine.stated import SIDES, Side, opposite
 from engine.states import State
 from engine.steam import steam_of

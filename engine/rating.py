@@ -18,7 +18,8 @@ from engine.correlations import Array
 from engine.exchangers import REGIMES, Film
 from engine.exchangers.condenser import CondensingFilm
 from engine.fluids import Fluid
-from engine.points import SETTLED, Points, Solution, Texts, flowing_side, in_series, joined, points_of, solve
+from engine.points import Points, Texts, joined, points_of
+from engine.solve import SETTLED, Solution, flowing_side, in_series, solve
 from engine.stated import SIDES, Side, opposite
 from engine.states import Chest, Profile, Rating, SideState, State, Zone
 from engine.steam import Steam, steam_of

@@ -171,6 +171,18 @@ class Steam:
         return np.asarray(relation(Ra, film.Pr) * film.k / length * self.surface.film_factor)
 
 
+@dataclass(frozen=True, kw_only=True)
+class Condensed:
+    """What the condensing side of solved points does; arrays (P,)."""
+
+    steam: Steam
+    T_sat: Array
+    """In the chest [K]: as supplied, or lower where less steam comes than the area would condense."""
+    flow: Array
+    """What condenses [kg/s]."""
+    flooded: Flooded | None
+
+
 def steam_of(case: Case) -> Steam | None:
     """The steam of a case; None where nothing condenses."""
     side = case.steam_side

@@ -19,8 +19,9 @@ from engine.case import R_FOULING, Case, SolutionFluid
 from engine.closed_forms import mean_films
 from engine.correlations import Array, Excursion
 from engine.exchangers import REGIMES
-from engine.points import Points, Solution, joined, points_of
+from engine.points import Points, joined, points_of
 from engine.rating import FIGURES, along, figures_of, rate, tabulated
+from engine.solve import Solution
 from engine.stated import SIDES, CaseError, Figure, Input, Problem, Side, opposite
 from engine.uncertainty import NORMAL_95, doubts, each_way
 

@@ -16,7 +16,8 @@ from numpy.typing import NDArray
 from engine import fluids
 from engine.case import Case, ConstantFluid, PureFluid, SteamFluid, TableFluid
 from engine.correlations import Array
-from engine.points import SETTLED, Points, Solution, joined, points_of, solve
+from engine.points import Points, joined, points_of
+from engine.solve import SETTLED, Solution, solve
 from engine.stated import SIDES, Figure, Side
 from engine.states import Rating
 

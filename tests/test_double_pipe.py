@@ -15,8 +15,9 @@ from scipy.integrate import solve_bvp
 from engine.casefile import parse_case
 from engine.effectiveness import effectiveness_cocurrent, effectiveness_counter
 from engine.exchangers import Cells
-from engine.points import flowing_side, points_of, resistances, solve
+from engine.points import points_of
 from engine.rating import rate, rate_points
+from engine.solve import flowing_side, resistances, solve
 from engine.stated import SIDES
 from tests.cases import OIL_COOLER, OIL_TABLE, changed, constant, oil_cooler
 

@@ -19,9 +19,10 @@ from engine.case import Case
 from engine.casefile import load_case, parse_case
 from engine.findings import judge
 from engine.fluids import saturation, saturation_line
-from engine.points import points_of, solve
+from engine.points import points_of
 from engine.rating import rate, rate_points
 from engine.result import result_json
+from engine.solve import solve
 from engine.stated import SIDES, CaseError
 from engine.uncertainty import doubts, propagate
 from tests.cases import CONSTANT_COLD, changed

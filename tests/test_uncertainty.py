@@ -9,8 +9,9 @@ import pytest
 
 from engine import uncertainty
 from engine.casefile import parse_case
-from engine.points import points_of, solve
+from engine.points import points_of
 from engine.rating import rate
+from engine.solve import solve
 from engine.stated import SIDES
 from engine.uncertainty import NORMAL_95, QUANTITIES, doubts, propagate
 from tests.cases import CONSTANT_COLD, CONSTANT_HOT, OIL_COOLER, changed, constant, oil_cooler
