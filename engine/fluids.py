@@ -658,6 +658,7 @@ def _saturation(code: str, p: float) -> tuple[float | None, float | None]:
     return found[0], found[1]
 
 
+@lru_cache(maxsize=4096)
 def _phase(code: str, p: float, T: float) -> Phase:
     state = _state("HEOS", code)
     if p >= state.p_critical():

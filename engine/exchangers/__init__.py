@@ -6,7 +6,7 @@ point (P), the second the cell (n). An exchanger receives `Properties`, never a 
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Collection, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import Any, Protocol
 
@@ -14,6 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from engine.correlations import Array, Correlation, Excursion, Source
+from engine.correlations.losses import Figure
 from engine.exchangers.layout import Layout
 from engine.fluids import Properties
 from engine.stated import Problem, Side
@@ -39,6 +40,15 @@ class Cells:
     a side that has none there does not change within a cell."""
     weights: Array | None = None
     """(n, n_nodes) share of each sliver in its cell."""
+
+
+class MadeCells(dict[tuple[str, int], Cells]):
+    """The cells that an exchanger has been cut into already: they never change, and cutting takes a while."""
+
+    def once(self, kind: str, fineness: int, cut: Callable[[], Cells]) -> Cells:
+        if (kind, fineness) not in self:
+            self[kind, fineness] = cut()
+        return self[kind, fineness]
 
 
 def entrance_nodes(start: Array, end: Array, from_end: NDArray[np.bool_], leg: float) -> tuple[Array, Array]:
@@ -160,6 +170,13 @@ class Exchanger(Protocol):
 
     def drop_relation(self, side: Side) -> Correlation:
         """The relation whose scatter the drop carries."""
+
+    def supporting(self, side: Side, regimes: Collection[str], gas: bool) -> tuple[Correlation, ...]:
+        """What film and drop of a side that flows in these regimes rest on beside the film's relations and the drop's:
+        factors of the wall, friction in another regime, the bank within a bundle, fins."""
+
+    def loss_coefficients(self, side: Side) -> tuple[Figure, ...]:
+        """The loss coefficients that enter the drop."""
 
     def wall_resistance(self, T_metal: Array) -> Array:
         """Of the tube wall [m²K/W], at the metal temperature."""

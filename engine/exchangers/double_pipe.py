@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Collection, Iterator, Mapping
 from functools import cached_property
 from typing import Annotated, Any, ClassVar, Literal
 
@@ -12,7 +12,7 @@ from pydantic import Field
 
 from engine import effectiveness as exact
 from engine.correlations import Array, Correlation, Excursion, annulus, inside_tubes, losses
-from engine.exchangers import Cells, Derived, Film, Flowing, entrance_nodes, layout, sliver, standard_sizes
+from engine.exchangers import Cells, Derived, Film, Flowing, MadeCells, entrance_nodes, layout, sliver, standard_sizes
 from engine.exchangers.condenser import CondensingSurface
 from engine.stated import Choice, Count, Input, Problem, Side, Stated, Words
 
@@ -248,10 +248,14 @@ class DoublePipe(Input):
 
     def cells(self, fineness: int = 1) -> Cells:
         """The legs cut into equal cells; `fineness` multiplies their number."""
-        return self._cut(self._cells_a_leg * fineness)
+        return self._made.once("cells", fineness, lambda: self._cut(self._cells_a_leg * fineness))
 
     def whole(self, fineness: int = 1) -> Cells:
-        return self._cut(self._cells_a_leg * fineness, legs=1, banks=1)
+        return self._made.once("whole", fineness, lambda: self._cut(self._cells_a_leg * fineness, legs=1, banks=1))
+
+    @cached_property
+    def _made(self) -> MadeCells:
+        return MadeCells()
 
     @property
     def _cells_a_leg(self) -> int:
@@ -481,6 +485,21 @@ class DoublePipe(Input):
 
     def drop_relation(self, side: Side) -> Correlation:
         return annulus.annulus_turbulent_friction if side == "outside" and self.finned is None else losses.churchill
+
+    def supporting(self, side: Side, regimes: Collection[str], gas: bool) -> tuple[Correlation, ...]:
+        laminar, turbulent = bool({*regimes} - {"turbulent"}), bool({*regimes} - {"laminar"})
+        found = list(inside_tubes.wall_relations(laminar=laminar, turbulent=turbulent, gas=gas))
+        if side == "outside" and self.finned is not None:
+            found.append(annulus.fin_efficiency)
+        if side == "outside" and self.finned is None and laminar:
+            found.append(annulus.annulus_laminar_friction)
+        return (*found, *(() if gas else (losses.wall_factor_friction,)))
+
+    def loss_coefficients(self, side: Side) -> tuple[losses.Figure, ...]:
+        bends = (losses.RETURN_BEND,) if self.legs_on_path("inside") > 1 else ()
+        ends = (losses.TUBE_ENTRANCE, losses.TUBE_EXIT, *bends) if side == "inside" else (losses.ANNULUS_HAIRPIN,)
+        nozzles = (losses.NOZZLE_IN, losses.NOZZLE_OUT) if getattr(self, f"{side}_nozzle_id") is not None else ()
+        return (*ends, *nozzles)
 
     # --- the whole --------------------------------------------------------------------------------------------------
 

@@ -6,7 +6,7 @@ beside it. Shell letters and heads are those of the TEMA Standards, figure N-1.2
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Collection, Iterator, Mapping
 from dataclasses import dataclass
 from functools import cached_property
 from itertools import pairwise
@@ -19,7 +19,7 @@ from pydantic_core import PydanticCustomError
 from engine import effectiveness as exact
 from engine.correlations import Array, Correlation, Excursion, Source, inside_tubes, losses
 from engine.correlations import across_bundle as shell
-from engine.exchangers import Cells, Derived, Film, Flowing, entrance_nodes, layout, sliver, standard_sizes
+from engine.exchangers import Cells, Derived, Film, Flowing, MadeCells, entrance_nodes, layout, sliver, standard_sizes
 from engine.exchangers.condenser import CondensingSurface
 from engine.exchangers.double_pipe import Factors, length
 from engine.stated import Choice, Count, Input, Problem, Side, Stated, Words
@@ -459,10 +459,14 @@ class ShellAndTube(Input):
         They are no baffle compartments: the film of Bell-Delaware is that of the whole shell, end spacings included, so
         what differs from bay to bay is the temperature only.
         """
-        return self._cells(self._layout(fineness))
+        return self._made.once("cells", fineness, lambda: self._cells(self._layout(fineness)))
 
     def whole(self, fineness: int = 1) -> Cells:
-        return self._cells(layout.counter_chain(24 * fineness))
+        return self._made.once("whole", fineness, lambda: self._cells(layout.counter_chain(24 * fineness)))
+
+    @cached_property
+    def _made(self) -> MadeCells:
+        return MadeCells()
 
     def _cells(self, order: layout.Layout) -> Cells:
         L = self.tube_length
@@ -742,6 +746,18 @@ class ShellAndTube(Input):
         if side == "inside":
             return losses.churchill
         return shell.taborek_f if self.shell_letter == "X" else shell.bell_delaware_drop
+
+    def supporting(self, side: Side, regimes: Collection[str], gas: bool) -> tuple[Correlation, ...]:
+        if side == "outside":
+            return () if self.shell_letter == "X" else (shell.taborek_j, shell.taborek_f)
+        laminar, turbulent = bool({*regimes} - {"turbulent"}), bool({*regimes} - {"laminar"})
+        wall = inside_tubes.wall_relations(laminar=laminar, turbulent=turbulent, gas=gas)
+        return (*wall, *(() if gas else (losses.wall_factor_friction,)))
+
+    def loss_coefficients(self, side: Side) -> tuple[losses.Figure, ...]:
+        passes = (losses.TUBE_PASS,) if side == "inside" else ()
+        nozzle = self.tube_nozzle_id if side == "inside" else self.shell_nozzle_id
+        return (*passes, *((losses.NOZZLE_IN, losses.NOZZLE_OUT) if nozzle is not None else ()))
 
     def second_opinion_drops(self, side: Side, cells: Cells, at: Flowing) -> dict[str, Array]:
         """Total drop by other published relations, by name, at mean conditions (P,), nozzles and dp_factor included."""
