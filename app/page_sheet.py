@@ -42,8 +42,10 @@ def show() -> None:
             "Upload or paste a datasheet, open an example that holds one on the page Case, or type figures below. "
             "Every two figures that belong together are checked at once; nothing has to be complete."
         )
-    widget = f"view of the sheet{session.view()}"
-    view = session.chosen("sheet view") or (FOUND if stated else FIGURES)
+    if not stated and not session.chosen("sheet view"):
+        # Or the first figure typed would turn the page.
+        session.choose("sheet view", FIGURES)
+    widget, view = f"view of the sheet{session.view()}", session.chosen("sheet view") or FOUND
     st.segmented_control(
         "View",
         VIEWS,

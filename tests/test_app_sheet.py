@@ -130,6 +130,18 @@ def test_the_page_opens_with_no_sheet_and_no_case():
     assert {declared.name for declared in engine.sheet_fields().values()} <= labels
 
 
+def test_figures_typed_one_by_one_are_checked_as_soon_as_two_belong_together():
+    app = page("sheet")
+    figures = {
+        "inside.flow": "186 t/h", "inside.cp": "4.20 kJ/kgK", "inside.T_in": "26.0 degC", "inside.T_out": "33.4 degC",
+        "outside.T_in": "74 degC", "duty": "16.13 MW",
+    }  # fmt: skip
+    for place, text in figures.items():
+        box(app, place).set_value(text).run()
+    assert draft_of(app)["case"]["sheet"]["inside"]["T_out"] == "33.4 degC"
+    assert "1 stop" in words(app)
+
+
 def test_a_slip_of_units_is_named_first_and_asked_about():
     app = page("sheet", kept(SLIPPED))
     said = words(app)
