@@ -17,6 +17,12 @@ from engine.stated import Figure
 
 TELLING = 2.0
 """Tolerances beyond which a misfit says something of its cause."""
+LEFT = 0.4
+"""Of a misfit that a slip explains, at the most."""
+BROKEN = 1.5
+"""Tolerances from which on a repair breaks a check that had closed."""
+UNLIKELY = 0.5
+"""What a place further down the list of slips counts, in squared tolerances left."""
 LOOKED = 1e4
 """By how much a figure may be off at most."""
 MOST_STEPS = 30
@@ -96,7 +102,7 @@ def repairs_of(subject: Subject, ended: Iterable[Checked]) -> Found:
     failed = [c for c in closures if c.fails and c.ended.grade != "note"]
     if not any(c.ended.check.closes for c in failed):
         notes = [c for c in closures if c.fails and c.ended.line is not None and c.ended.check.closes]
-        failed = [c for c in notes if c.miss({}) > TELLING] or notes
+        failed += [c for c in notes if c.miss({}) > TELLING] or notes
     if not any(c.ended.check.closes for c in failed):
         return Found()
     search = _Search(subject, closures, {})
@@ -125,6 +131,8 @@ class _Trial:
     breaks: int
     left: float
     """Sum of what misfit is left, so that of two equal trials the one that closes better stands first."""
+    place: int
+    """Among the candidates of the field, whose commonest slips stand first."""
 
     @property
     def changed(self) -> dict[str, float]:
@@ -136,7 +144,7 @@ class _Trial:
 
     @property
     def order(self) -> tuple[float, ...]:
-        return (-self.net, not self.candidate.name, self.left)
+        return (-self.net, not self.candidate.name, self.left + UNLIKELY * self.place)
 
     def as_repair(self, subject: Subject, of: int) -> Repair:
         value = subject.sheet_values[self.field]
@@ -167,7 +175,7 @@ class _Search:
         """The best trial of each field that takes part in a failure that closes, those that gain first."""
         found = []
         for path in self._fields(failed):
-            trials = [self._trial(path, candidate, failed) for candidate in self._candidates(path)]
+            trials = [self._trial(path, one, failed, i) for i, one in enumerate(self._candidates(path))]
             if trials:
                 best = min(trials, key=lambda trial: trial.order)
                 if best.net > 0:
@@ -175,12 +183,11 @@ class _Search:
         return sorted(found, key=lambda trial: trial.order)
 
     def slips(self, failed: Sequence[_Closure]) -> Iterator[_Trial]:
-        """The first slip of each field that a root of its failures matches and that gains most."""
+        """The best slip of each field that would explain a large misfit."""
         for path in self._fields(failed):
-            trials = [self._trial(path, slip, failed) for slip in self._candidates(path) if slip.name]
-            if trials:
-                most = max(trial.net for trial in trials)
-                yield next(trial for trial in trials if trial.net == most)
+            slips = [one for one in self._candidates(path) if one.name]
+            if slips:
+                yield min((self._trial(path, one, failed, i) for i, one in enumerate(slips)), key=lambda t: t.order)
 
     def _fields(self, failed: Sequence[_Closure]) -> list[str]:
         entering = {path for c in failed if c.ended.check.closes for path in c.fields}
@@ -200,9 +207,10 @@ class _Search:
             for c in self.closures
             if c.fails and c.ended.check.closes and path in c.fields and c.ended.line is not None
         ]
-        large = [c for c in failed if c.miss(self.changed) > TELLING]
+        large = [(c, miss) for c in failed if (miss := c.miss(self.changed)) > TELLING]
         for slip in candidates(self.subject, path):
-            if any(c.miss({**self.changed, path: slip.to, **slip.also}, as_slip=True) <= 1.0 for c in large):
+            changed = {**self.changed, path: slip.to, **slip.also}
+            if any(c.miss(changed, as_slip=True) <= 1.0 and c.miss(changed) <= LEFT * miss for c, miss in large):
                 yield slip
         whole = not isinstance(self.subject.sheet_values[path], Figure)
         for c in failed:
@@ -210,7 +218,7 @@ class _Search:
             if root is not None:
                 yield Candidate(to=float(round(root)) if whole else root)
 
-    def _trial(self, path: str, candidate: Candidate, failed: Sequence[_Closure]) -> _Trial:
+    def _trial(self, path: str, candidate: Candidate, failed: Sequence[_Closure], place: int) -> _Trial:
         """What a value does to the checks that the field enters; a note that remains counts as not cleared."""
         own = {path: candidate.to, **candidate.also}
         changed = {**self.changed, **own}
@@ -227,9 +235,9 @@ class _Search:
             left += min(miss, 10.0) ** 2
             if counted and miss <= 1.0:
                 clears += 1
-            elif not counted and not c.fails and miss > TELLING:
+            elif not counted and not c.fails and miss > BROKEN:
                 breaks += 1
-        return _Trial(field=path, candidate=candidate, clears=clears, breaks=breaks, left=left)
+        return _Trial(field=path, candidate=candidate, clears=clears, breaks=breaks, left=left, place=place)
 
     def _root(self, c: _Closure, path: str) -> float | None:
         """The value of a field at which a failed check closes; None without one."""
