@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import io
 import time
+from pathlib import Path
 
 import numpy as np
 import pandas as pd
@@ -13,7 +14,7 @@ from hypothesis import strategies as st
 from pypdf import PdfReader
 
 from engine import studies
-from engine.casefile import dump_case, parse_case, raw_of
+from engine.casefile import dump_case, load_case, parse_case, raw_of
 from engine.rating import rate, rate_points
 from engine.report import Table, report_pdf, studied
 from engine.stated import CaseError
@@ -34,6 +35,7 @@ from engine.studies import (
 from engine.uncertainty import NORMAL_95, propagate
 from tests.cases import OIL_COOLER, changed, constant, oil_cooler
 
+SAMPLES = Path(__file__).resolve().parent.parent / "sample_cases"
 SHELL = {
     "type": "shell-and-tube",
     "tema": "BEM",
@@ -343,6 +345,12 @@ def test_the_first_limit_binds_at_the_answer_and_is_passed_beyond_it(case, path,
     # Between the stated value and the answer nothing is passed.
     between = sweep(case, path, np.linspace(found.variable.today, found.value, 30))
     assert between.within(between.limits).all()
+
+
+def test_an_answer_is_found_where_both_its_neighbours_lie_on_the_limit_within_the_last_digits():
+    case = load_case(SAMPLES / "gear-oil-turning-laminar.json")
+    found = answer(case, Question(path="outside.R_fouling", way="most"))
+    assert (found.outcome, found.limit.key) == ("reached", "inside.T_out")
 
 
 def test_the_most_plugged_tubes_is_the_last_count_that_keeps_the_outlet():
