@@ -7,7 +7,7 @@ import json
 from collections.abc import Iterator, Mapping
 from dataclasses import replace
 from functools import cached_property
-from typing import Annotated, Any, ClassVar
+from typing import Annotated, Any, ClassVar, Literal
 
 import numpy as np
 from pydantic import BeforeValidator, Discriminator, Field, Tag
@@ -49,6 +49,9 @@ class PureFluid(Input):
     def spec(self, atmosphere: float) -> fluids.Specification:
         return fluids.Pure(self.name)
 
+    def problems(self) -> Iterator[Problem]:
+        yield from _name_problems(self.name, "fluid", "")
+
 
 class SolutionFluid(Input):
     """An aqueous or similar solution by mass fraction."""
@@ -61,6 +64,20 @@ class SolutionFluid(Input):
 
     def spec(self, atmosphere: float) -> fluids.Specification:
         return fluids.Solution(self.solution, float(self.mass_fraction))
+
+    def problems(self) -> Iterator[Problem]:
+        yield from _name_problems(self.solution, "solution", "solution")
+
+
+def _name_problems(name: str, kind: Literal["fluid", "solution"], path: str) -> Iterator[Problem]:
+    """A name that nothing is known by is wrong before any temperature is stated."""
+    if not name.strip():
+        yield Problem(path=path, says="is missing")
+        return
+    try:
+        fluids.check_name(name, kind)
+    except fluids.FluidError as error:
+        yield Problem(path=path, says=str(error))
 
 
 SLIGHT_SUPERHEAT = 50.0
@@ -191,14 +208,20 @@ class ConstantFluid(Input):
         return fluids.Constant(name=self.name, rho=float(c.rho), cp=float(c.cp), k=float(c.k), mu=float(c.mu))
 
 
-FLUID_TAGS = ("pure", "solution", "steam", "table", "constant")
+FLUIDS: dict[str, type[Input]] = {
+    "pure": PureFluid,
+    "solution": SolutionFluid,
+    "steam": SteamFluid,
+    "table": TableFluid,
+    "constant": ConstantFluid,
+}
 
 
-def _fluid_tag(given: Any) -> str | None:
+def fluid_tag(given: Any) -> str | None:
     if isinstance(given, Input):
         return str(getattr(given, "tag_name", ""))
     if isinstance(given, dict):
-        return next((tag for tag in FLUID_TAGS[1:] if tag in given), "pure" if "name" in given else None)
+        return next((tag for tag in list(FLUIDS)[1:] if tag in given), "pure" if "name" in given else None)
     return None
 
 
@@ -222,7 +245,7 @@ FluidInput = Annotated[
     | Annotated[TableFluid, Tag("table")]
     | Annotated[ConstantFluid, Tag("constant")],
     Discriminator(
-        _fluid_tag,
+        fluid_tag,
         custom_error_type="not_a_fluid",
         custom_error_message="is not a fluid",
         custom_error_context={

@@ -15,7 +15,7 @@ from pydantic.json_schema import GenerateJsonSchema, JsonSchemaValue
 from pydantic_core import core_schema
 
 from engine import units
-from engine.case import ATMOSPHERE, EXCHANGERS, FLUID_TAGS, Case, Limits, PureFluid, Stream, stream_problems
+from engine.case import ATMOSPHERE, EXCHANGERS, FLUIDS, Case, Limits, PureFluid, Stream, fluid_tag, stream_problems
 from engine.stated import SIDES, CaseError, Figure, Input, Problem, Side, Stated, dotted, problems_of, short
 
 FORMAT = "countercheck-case"
@@ -155,7 +155,7 @@ def parse_case(raw: dict[str, Any]) -> Case:
     try:
         case = Case.model_validate(raw, context={"file": True})
     except ValidationError as error:
-        problems = problems_of(error, Case, {"fluid": FLUID_TAGS, "exchanger": EXCHANGERS.keys()})
+        problems = problems_of(error, Case, {"fluid": FLUIDS.keys(), "exchanger": EXCHANGERS.keys()})
         problems += _problems_of_sound_parts(raw, {problem.path for problem in problems})
         raise CaseError(_once(problems)) from None
     problems = list(case.problems())
@@ -211,12 +211,14 @@ def _problems_of_sound_parts(raw: dict[str, Any], known: set[str]) -> list[Probl
         for name in ("flow", "T_in", "p_in", "T_out"):
             stream.__dict__.setdefault(name, None)
         fluid = stream.__dict__.pop("fluid", None)
-        steam = isinstance(given.get("fluid"), dict) and "steam" in given["fluid"]
-        if fluid is not None or not steam:
+        tag = fluid_tag(given.get("fluid"))
+        if fluid is None and tag is not None:
+            found += _found(_readable(FLUIDS[tag], given["fluid"]), f"{side}.fluid")
+        if fluid is not None or tag != "steam":
             # What else is missing does not depend on which fluid it will be, other than steam.
             stream.__dict__["fluid"] = fluid or PureFluid(name="Water")
             found += _found(stream, side)
-        stream.__dict__["fluid"] = fluid
+        stream.__dict__["fluid"] = None if _any_at(f"{side}.fluid", {problem.path for problem in found}) else fluid
     given = raw.get("exchanger")
     kind = given.get("type") if isinstance(given, dict) else None
     if isinstance(given, dict) and isinstance(kind, str) and kind in EXCHANGERS:

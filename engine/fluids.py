@@ -1172,6 +1172,14 @@ def _solute_names() -> dict[str, str]:
     return names | _SOLUTE_ALIASES
 
 
+def check_name(name: str, kind: Literal["fluid", "solution"]) -> None:
+    """FluidError with a sentence where nothing of the kind has that name, whatever its state would be."""
+    if kind == "fluid":
+        _pure_code(name)
+    else:
+        _solution_code(name)
+
+
 def _pure_code(name: str) -> tuple[str, str]:
     found = _pure_names().get(_folded(name))
     if found is None:

@@ -159,7 +159,7 @@ ONE_REASON = [
     ("exchanger.inner_pipe", {"nps": "2.2", "schedule": "40"}, "there is no pipe of NPS '2.2' in the table; offered"),
     ("exchanger.inner_pipe", {"nps": "2", "schedule": "47"}, "NPS 2 has no schedule '47' in the table; offered are 5S"),
     ("exchanger.inner_pipe", {"nps": "1/0", "schedule": "40"}, "there is no pipe of NPS '1/0'"),
-    ("exchanger.inner_pipe", {"nps": "2"}, 'needs either "nps" and "schedule", or "od" and "id"'),
+    ("exchanger.inner_pipe", {"nps": "2"}, "is missing"),
     ("exchanger.inner_pipe", {}, 'needs either "nps" and "schedule", or "od" and "id"'),
     ("exchanger.inner_pipe.od", "60 mm", "gives both a nominal size and diameters; allowed is one of the two"),
     ("exchanger.inner_pipe", {"od": "50 mm", "id": "60 mm"}, "60 mm is not smaller than the outside diameter, 50 mm"),
@@ -211,6 +211,19 @@ def test_a_wrong_input_is_refused_in_one_sentence(path, value, says):
     assert len(sentences) == 1
     assert says in sentences[0]
     assert sentences[0].startswith(f"{path.partition('.')[0]}")
+
+
+@pytest.mark.parametrize(
+    ("fluid", "says"),
+    [
+        ("tolune", "inside.fluid: no fluid is called 'tolune': the nearest name is toluene"),
+        ({"solution": "ethylen glykol"}, "inside.fluid.solution: no solution is called 'ethylen glykol'"),
+        ("", "inside.fluid: is missing"),
+    ],
+)
+def test_a_fluid_that_is_not_known_is_refused_before_anything_else_is_stated(fluid, says):
+    sentences = refused(changed(OIL_COOLER, inside={"fluid": fluid}, outside={}, exchanger={"type": "double-pipe"}))
+    assert [sentence for sentence in sentences if sentence.startswith(says)]
 
 
 @pytest.mark.parametrize(

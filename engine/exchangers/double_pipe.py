@@ -45,7 +45,11 @@ class Pipe(Input):
         by_diameter = (self.od is not None, self.id is not None)
         if any(by_size) and any(by_diameter):
             yield Problem(path="", says="gives both a nominal size and diameters; allowed is one of the two")
-        elif not all(by_size) and not all(by_diameter):
+        elif any(by_size) and not all(by_size):
+            yield Problem(path="schedule" if self.schedule is None else "nps", says="is missing")
+        elif any(by_diameter) and not all(by_diameter):
+            yield Problem(path="id" if self.id is None else "od", says="is missing")
+        elif not any(by_size) and not any(by_diameter):
             yield Problem(path="", says='needs either "nps" and "schedule", or "od" and "id"')
         elif all(by_size):
             try:
@@ -599,7 +603,7 @@ class DoublePipe(Input):
 
     def _wall_problems(self) -> Iterator[Problem]:
         if (self.material is None) == (self.wall_conductivity is None):
-            says = 'one of "material" and "wall_conductivity" must be stated, not both and not neither'
+            says = 'one of "material" and "wall_conductivity" must be stated, and not both'
             yield Problem(path="material", says=says)
         elif self.material is not None:
             try:

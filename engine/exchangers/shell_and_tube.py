@@ -870,6 +870,9 @@ class ShellAndTube(Input):
 
     # --- what does not go together ----------------------------------------------------------------------------------
 
+    def checks(self) -> tuple[Iterator[Problem], ...]:
+        return self.problems(), self._wall_problems()
+
     def problems(self) -> Iterator[Problem]:
         tema_sound = True
         for problem in self._tema_problems():
@@ -924,7 +927,7 @@ class ShellAndTube(Input):
 
     def _wall_problems(self) -> Iterator[Problem]:
         if (self.material is None) == (self.wall_conductivity is None):
-            says = 'one of "material" and "wall_conductivity" must be stated, not both and not neither'
+            says = 'one of "material" and "wall_conductivity" must be stated, and not both'
             yield Problem(path="material", says=says)
         elif self.material is not None:
             try:
@@ -932,7 +935,7 @@ class ShellAndTube(Input):
             except ValueError as error:
                 yield Problem(path="material", says=str(error))
         if (self.tube_wall is None) == (self.gauge is None):
-            says = 'one of "tube_wall" and "gauge" must be stated, not both and not neither'
+            says = 'one of "tube_wall" and "gauge" must be stated, and not both'
             yield Problem(path="tube_wall", says=says)
             return
         try:
