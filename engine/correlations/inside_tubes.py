@@ -324,6 +324,12 @@ AS_BULK = Wall()
 """The wall at the bulk state: every factor is 1."""
 
 
+def wall_relations(*, laminar: bool, turbulent: bool, gas: bool) -> tuple[Correlation, ...]:
+    """The relations behind a Wall's factors on the films that occur."""
+    used = ((laminar and not gas, wall_factor_liquid_laminar), (turbulent and not gas, wall_factor_liquid_turbulent))
+    return tuple(relation for occurs, relation in (*used, (turbulent and gas, wall_factor_gas_turbulent)) if occurs)
+
+
 # The tube film over all Re
 
 TUBE_RELATIONS = (gnielinski_laminar, transition, gnielinski_turbulent)

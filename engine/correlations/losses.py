@@ -184,5 +184,20 @@ TUBE_PASS_KERN = Figure(
 NOZZLE_IN = Figure(what="inlet nozzle, of its own head", value=1.0, unit=HEADS, source=COMMON_PRACTICE)
 NOZZLE_OUT = Figure(what="outlet nozzle, of its own head", value=0.5, unit=HEADS, source=COMMON_PRACTICE)
 
+COEFFICIENTS = {
+    figure.what: figure
+    for figure in (
+        TUBE_ENTRANCE,
+        TUBE_EXIT,
+        RETURN_BEND,
+        ANNULUS_HAIRPIN,
+        TUBE_PASS,
+        TUBE_PASS_KERN,
+        NOZZLE_IN,
+        NOZZLE_OUT,
+    )
+}
+"""By name."""
+
 DRAWN_TUBE = Figure(what="roughness of drawn tube", value=1.5e-6, unit="m", source=MOODY_1944)
 COMMERCIAL_STEEL = Figure(what="roughness of commercial steel pipe", value=45.0e-6, unit="m", source=MOODY_1944)
