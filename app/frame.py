@@ -23,6 +23,9 @@ STYLE = """<style>
 [data-testid="stLayoutWrapper"]:has(> .st-key-bundle) {position: sticky; top: 4.5rem}
 .st-key-former {border-left: 6px double #b9641a; padding-left: 0.9rem; opacity: 0.8}
 .st-key-answer p {font-size: 1.25rem; font-weight: 600; line-height: 1.4}
+@media (min-width: 641px) {
+  [class*="st-key-later-row"] [data-testid="stWidgetLabel"] {display: none}
+}
 @media (hover: hover) {
   [data-testid="stWidgetLabel"] [data-testid="stTooltipIcon"] {visibility: hidden}
   [data-testid="stElementContainer"]:is(:hover, :focus-within) [data-testid="stTooltipIcon"] {visibility: visible}
@@ -32,7 +35,8 @@ STYLE = """<style>
 }
 </style>"""
 """A wide table scrolls within itself, never the page. Results of a former case carry a mark along their whole length.
-The help of a box shows while the box is pointed at or typed in, so that the tabulator key goes from box to box."""
+Rows of a table that lie
+under one another are named by the first. The help of a box shows while the box is pointed at or typed in, so that the tabulator key goes from box to box."""
 
 
 def drawn(show: Callable[[], None]) -> Callable[[], None]:
@@ -145,15 +149,24 @@ def blocks(blocks: Sequence[Any], place: str) -> None:
         if isinstance(block, str):
             st.markdown(plain(block).replace("\n", "  \n"))
         elif isinstance(block, engine.Table):
-            if block.title:
-                st.markdown(f"**{plain(block.title)}**")
-            table(block.header, block.rows)
+            titled(block)
+        elif isinstance(block, engine.Columns):
+            for tables, column in zip(block.columns, st.columns(list(block.widths), gap="large"), strict=True):
+                with column:
+                    for one in tables:
+                        titled(one)
         elif isinstance(block, engine.Chart):
             plot(figures.chart(block), block.alt, f"{place} {i}")
         elif isinstance(block, engine.Bundle):
             plot(figures.bundle(block), block.alt, f"{place} {i}")
         else:
             st.markdown(plain(block.alt))
+
+
+def titled(block: Any) -> None:
+    if block.title:
+        st.markdown(f"**{plain(block.title)}**")
+    table(block.header, block.rows)
 
 
 def plot(figure: Any, alt: str, key: str) -> None:

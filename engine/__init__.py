@@ -17,6 +17,7 @@ _WHERE = {
     "CaseError": "stated",
     "Chart": "report.blocks",
     "Choice": "stated",
+    "Columns": "report.blocks",
     "Count": "stated",
     "EXCHANGERS": "case",
     "Input": "stated",

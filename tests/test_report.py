@@ -44,6 +44,11 @@ class Rated:
     def table(self, key, number=0):
         return [block for block in self.sections[key].blocks if isinstance(block, blocks.Table)][number]
 
+    def columns(self):
+        """Of the exchanger's inputs: what was typed, and what was taken instead."""
+        block = next(block for block in self.sections["inputs"].blocks if isinstance(block, blocks.Columns))
+        return block.tables[0], block.tables[-1]
+
     def figure(self, key):
         return next(block for block in self.sections[key].blocks if not isinstance(block, (str, blocks.Table)))
 
@@ -154,25 +159,29 @@ def test_a_drop_is_held_against_its_allowance(cooler):
 
 
 def test_inputs_are_shown_as_typed_with_their_origin(cooler):
-    streams, exchanger = cooler.table("inputs"), cooler.table("inputs", 2)
+    streams, (typed, taken) = cooler.table("inputs"), cooler.columns()
     assert row(streams, "Flow") == ("Flow", "12 m3/h", "6 t/h ± 3 %")
     assert row(streams, "Fouling resistance")[2] == "0 m²K/W, assumed: no fouling, since none is stated"
     assert row(streams, "Required outlet temperature")[1] == "not stated"
-    assert row(exchanger, "Legs in series") == ("Legs in series", "8", "stated")
-    assert row(exchanger, "Inner pipe")[1] == "nominal size 2, schedule 40"
-    assert row(exchanger, "Roughness of the annulus")[1:] == (
-        "0.045 mm",
-        "assumed: commercial steel pipe (common practice)",
-    )
+    assert row(typed, "Legs in series") == ("Legs in series", "8")
+    size = "nominal size 2, schedule 40: outside diameter 60.3 mm, inside diameter 52.48 mm [1]"
+    assert row(typed, "Inner pipe")[1] == size
+    assert row(taken, "Roughness of the annulus")[1:] == ("0.045 mm", "commercial steel pipe (common practice)")
     assert len(cooler.table("inputs", 1).rows) == 3
 
 
 def test_no_default_is_shown_of_a_field_that_decides_nothing(cooler):
-    labels = [cells[0] for cells in cooler.table("inputs", 2).rows]
-    assert "Orientation" not in labels  # no steam condenses
-    assert "Atmospheric pressure" in labels  # pressures are gauge
-    absolute = Rated(inside__p_in="5 bara", outside__p_in="7 bara").table("inputs", 2)
-    assert "Atmospheric pressure" not in [cells[0] for cells in absolute.rows]
+    def taken(rated):
+        return [cells[0] for cells in rated.columns()[1].rows]
+
+    assert "Orientation" not in taken(cooler)  # no steam condenses
+    assert "Atmospheric pressure" in taken(cooler)  # pressures are gauge
+    assert "Atmospheric pressure" not in taken(Rated(inside__p_in="5 bara", outside__p_in="7 bara"))
+
+
+def test_sizes_from_tables_are_told_in_the_units_of_the_report():
+    typed, _ = Rated("us").columns()
+    assert "outside diameter 2.374 in" in row(typed, "Inner pipe")[1]  # 2 3/8 in
 
 
 def test_limits_are_shown_where_they_are_stated(cooler):
@@ -209,7 +218,9 @@ def test_methods_stand_beside_each_other_or_say_why_not(cooler):
         "LMTD and F, mean properties",
     ]
     split = Rated(exchanger__banks_in_parallel={"inside": 1, "outside": 3}, exchanger__legs_in_series=3)
-    assert "LMTD and F, mean properties: not possible, one fluid is split" in split.text("methods").replace("\n", " ")
+    assert "LMTD and F, mean properties: not possible, F of this arrangement" in split.text("methods").replace(
+        "\n", " "
+    )
 
 
 def test_findings_stand_by_grade_with_action_and_source():
@@ -220,7 +231,7 @@ def test_findings_stand_by_grade_with_action_and_source():
     assert "act" in grades
     for _, found, action in rated.table("findings").rows[:3]:
         assert re.search(r"\[[a-z-]+(, [\w.]+)?\]$", found)
-        assert "\nSource: " in action
+        assert " Source: " in action
 
 
 def test_what_was_not_checked_is_named(cooler):

@@ -11,13 +11,27 @@ from engine.stated import Side
 
 @dataclass(frozen=True, kw_only=True)
 class Table:
-    """Rows of text. A cell may hold line breaks; `widths` are relative; `roomy` rows leave space to write in."""
+    """Rows of text. A cell may hold line breaks; `widths` are relative; `roomy` rows leave space to write in, `fine`
+    ones are to look up rather than to read."""
 
     header: tuple[str, ...]
     rows: tuple[tuple[str, ...], ...]
     title: str = ""
     widths: tuple[float, ...] = ()
     roomy: bool = False
+    fine: bool = False
+
+
+@dataclass(frozen=True, kw_only=True)
+class Columns:
+    """Columns of tables, side by side where there is room, else one below the other; `widths` are relative."""
+
+    columns: tuple[tuple[Table, ...], ...]
+    widths: tuple[float, ...]
+
+    @property
+    def tables(self) -> tuple[Table, ...]:
+        return tuple(table for column in self.columns for table in column)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -76,7 +90,13 @@ class DoublePipeScheme:
     legs: int
     banks: int
     flows: Mapping[Side, Flow]
-    alt: str
+    caption: str
+    """What its drawing leaves out."""
+    ends: str
+
+    @property
+    def alt(self) -> str:
+        return f"{self.caption} {self.ends}"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -92,7 +112,13 @@ class ShellScheme:
     shells_in_series: int
     shells_in_parallel: int
     flows: Mapping[Side, Flow]
-    alt: str
+    caption: str
+    """What its drawing leaves out."""
+    ends: str
+
+    @property
+    def alt(self) -> str:
+        return f"{self.caption} {self.ends}"
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -108,7 +134,7 @@ class Bundle:
 
 
 Figure = Chart | DoublePipeScheme | ShellScheme | Bundle
-Block = str | Table | Figure
+Block = str | Table | Columns | Figure
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -58,12 +58,12 @@ def ticks(low: float, high: float, most: int = 6) -> list[float]:
     return [i * step for i in range(first, max(last, first + 1) + 1)]
 
 
-def draw_chart(chart: Chart, width: float, height: float = 158.0) -> Drawing:
+def draw_chart(chart: Chart, width: float, height: float = 146.0) -> Drawing:
     """The lines over their axes, a legend above, the strips below."""
     drawing = Drawing(width, height)
     strip_height = 11.0
     left, right, top = 44.0, 10.0, 18.0
-    bottom = 30.0 + strip_height * len(chart.strips) + (4.0 if chart.strips else 0.0)
+    bottom = 25.0 + strip_height * len(chart.strips) + (4.0 if chart.strips else 0.0)
     values = [y for line in chart.lines for y in line.y]
     y_ticks = ticks(min(values), max(values))
     y_low, y_high = y_ticks[0], y_ticks[-1]
@@ -388,7 +388,7 @@ HALF = 0.5523
 """Handle of the cubic that draws a quarter of a circle, over the radius."""
 
 
-def draw_bundle(bundle: Bundle, width: float, height: float = 170.0) -> Drawing:
+def draw_bundle(bundle: Bundle, width: float, height: float = 150.0) -> Drawing:
     """The tubes to scale within shell and outer tube limit; even passes are grey, each pass carries its number."""
     field, drawing = bundle.field, Drawing(width, height)
     scale = (height / 2 - 3) / field.shell_radius

@@ -8,17 +8,17 @@ from typing import Any
 
 from pydantic import ValidationError
 
-from engine.case import Case, ConstantFluid, Stream, TableFluid
+from engine.case import Case, ConstantFluid, SteamFluid, Stream, TableFluid
 from engine.correlations import Source
+from engine.exchangers import Derived
 from engine.exchangers.double_pipe import DoublePipe
 from engine.exchangers.shell_and_tube import ShellAndTube
 from engine.exchangers.tube_field import tube_field
-from engine.report.blocks import Block, Bundle, DoublePipeScheme, Flow, ShellScheme, Table
+from engine.report.blocks import Block, Bundle, Columns, DoublePipeScheme, Flow, ShellScheme, Table
 from engine.report.words import Words, capital, fluid_name, listed
 from engine.stated import SIDES, Choice, Count, Input, Side, Stated
 
-NOT_STATED, MISSING = "not stated", "is missing"
-WIDTHS = (1.6, 2, 2.4)
+STATED, ASSUMED, NOT_STATED, MISSING = "stated", "assumed: ", "not stated", "is missing"
 
 
 def scheme(case: Case, words: Words, T_out: Mapping[Side, str]) -> Block:
@@ -38,10 +38,11 @@ def scheme(case: Case, words: Words, T_out: Mapping[Side, str]) -> Block:
             shells_in_series=exchanger.shells_in_series,
             shells_in_parallel=exchanger.shells_in_parallel,
             flows=flows,
-            alt=f"{exchanger.title} {exchanger.tema.upper()}, {exchanger.shell_type.name}; {exchanger.tubes} tubes "
+            caption=f"{exchanger.title} {exchanger.tema.upper()}, {exchanger.shell_type.name}; {exchanger.tubes} tubes "
             f"in {_counted(exchanger.tube_passes, 'pass', 'passes')} of {words.typed(exchanger.tube_length)}; "
             f"{_counted(exchanger.shells_in_series, 'shell', 'shells')} in series, "
-            f"{_counted(exchanger.shells_in_parallel, 'train', 'trains')}. {ends}",
+            f"{_counted(exchanger.shells_in_parallel, 'train', 'trains')}.",
+            ends=ends,
         )
     legs = _counted(exchanger.legs_in_series, "leg", "legs in series")
     banks = ""
@@ -53,7 +54,8 @@ def scheme(case: Case, words: Words, T_out: Mapping[Side, str]) -> Block:
         legs=exchanger.legs_in_series,
         banks=exchanger.banks,
         flows=flows,
-        alt=f"{exchanger.title}, {exchanger.arrangement}; {legs} of {words.typed(exchanger.leg_length)}{banks}. {ends}",
+        caption=f"{exchanger.title}, {exchanger.arrangement}; {legs} of {words.typed(exchanger.leg_length)}{banks}.",
+        ends=ends,
     )
 
 
@@ -125,18 +127,21 @@ def inputs(case: Case, words: Words, cite: Callable[[Source], str]) -> Iterator[
     )
     for side in SIDES:
         yield from _typed_properties(case.stream(side), words)
-    atmosphere = Case.declared()["atmosphere"].name
-    general = [row for row in _rows(case, words, case.idle_fields) if row[0] == atmosphere]
-    idle = frozenset(path.removeprefix("exchanger.") for path in case.idle_fields)
-    yield Table(
-        header=(f"{case.exchanger.title} as typed", "Value", "Origin"),
-        rows=(*_rows(case.exchanger, words, idle), *general, *_derived(case, words, cite)),
-        widths=WIDTHS,
-    )
-    limits = tuple(_rows(case.limits, words))
+    rows = list(_exchanger_rows(case, words, cite))
+    stated = tuple((label, value) for label, value, origin in rows if origin == STATED)
+    taken = tuple((label, value, origin.removeprefix(ASSUMED)) for label, value, origin in rows if origin != STATED)
+    limits = tuple((label, value) for label, value, _ in _rows(case.limits, words))
+    typed = [Table(header=(case.exchanger.title, "As typed"), rows=stated, widths=(1, 1.4))]
     if limits:
-        yield Table(header=("Limits as typed", "Value", "Origin"), rows=limits, widths=WIDTHS)
-    else:
+        typed.append(Table(header=("Limits", "As typed"), rows=limits, widths=(1, 1.4)))
+    yield Columns(
+        columns=(
+            tuple(typed),
+            (Table(header=("Not stated, so taken", "Value", "Origin"), rows=taken, widths=(1.5, 1.1, 2)),),
+        ),
+        widths=(1, 1.4),
+    )
+    if not limits:
         yield "No design pressure, design temperature or other limit of the equipment is stated."
     if case.notes.strip():
         yield f"Notes: {case.notes.strip()}"
@@ -163,6 +168,11 @@ def _stream_cell(stream: Stream, name: str, declared: Any, words: Words) -> str:
 
 def _typed_properties(stream: Stream, words: Words) -> Iterator[Block]:
     fluid = stream.fluid
+    if isinstance(fluid, SteamFluid):
+        yield Table(
+            header=("Steam as typed", "Value", "Origin"), rows=tuple(_rows(fluid.steam, words)), widths=(1.3, 2, 2)
+        )
+        return
     if isinstance(fluid, TableFluid):
         rows: Sequence[Input] = fluid.table
     elif isinstance(fluid, ConstantFluid):
@@ -187,34 +197,47 @@ def _rows(part: Input, words: Words, idle: Collection[str] = ()) -> Iterator[tup
             inner = list(_rows(value, words))
             if inner:
                 text = ", ".join(f"{label.lower()} {cell}" for label, cell, _ in inner)
-                origin = "; ".join(dict.fromkeys(row[2] for row in inner)).replace("; assumed:", ";")
+                origin = "; ".join(dict.fromkeys(row[2] for row in inner)).replace(f"; {ASSUMED}", "; ")
                 yield _spelt(name), text, origin
         elif item is None or value is None:
             continue
         elif name in part.model_fields_set:
-            yield item.name, words.typed(value, item), "stated"
+            yield item.name, words.typed(value, item), STATED
         elif isinstance(item, (Stated, Count, Choice)) and item.assumed and name not in idle:
-            yield item.name, words.typed(value, item), f"assumed: {item.assumed}"
+            yield item.name, words.typed(value, item), f"{ASSUMED}{item.assumed}"
 
 
-def _derived(case: Case, words: Words, cite: Callable[[Source], str]) -> Iterator[tuple[str, str, str]]:
-    exchanger = case.exchanger
-    declared = dict(type(exchanger).declared())
-    for part, found in groupby(exchanger.derived(), lambda figure: figure.path.partition(".")[0]):
-        figures = list(found)
-        inner = getattr(exchanger, part)
-        names = type(inner).declared() if isinstance(inner, Input) else {}
-        texts = []
-        for figure in figures:
-            text = words.show(figure.value, figure.quantity) if figure.quantity else f"{figure.value:.0f}"
-            own = names.get(figure.path.rpartition(".")[2])
-            texts.append(f"{own.name.lower()} {text}" if own else text)
-        yield (
-            declared[part].name if part in declared else _spelt(part),
-            ", ".join(texts),
-            f"derived {cite(figures[0].source)}",
-        )
-    yield "Heat-transfer area", f"{words.show(case.exchanger.area, 'area')}, outside, bare", "derived"
+def _exchanger_rows(case: Case, words: Words, cite: Callable[[Source], str]) -> Iterator[tuple[str, str, str]]:
+    """Of the exchanger, with what follows from it, and of the atmosphere that gauge pressures stand on."""
+    exchanger, derived = case.exchanger, case.exchanger.derived()
+    idle = frozenset(path.removeprefix("exchanger.") for path in case.idle_fields)
+    sizes = {
+        _label(exchanger, size): f": {', '.join(_figure(exchanger, f, words) for f in found)} {cite(found[0].source)}"
+        for size, found in ((size, list(group)) for size, group in groupby(derived, lambda figure: figure.size))
+        if size
+    }
+    for label, value, origin in _rows(exchanger, words, idle):
+        yield label, value + sizes.get(label, ""), origin
+    atmosphere = Case.declared()["atmosphere"].name
+    yield from (row for row in _rows(case, words, idle) if row[0] == atmosphere)
+    for figure in derived:
+        if not figure.size:
+            rated = figure.path in exchanger.model_fields_set
+            label = _label(exchanger, figure.path) + (", as rated" if rated else "")
+            yield label, _figure(exchanger, figure, words), f"derived {cite(figure.source)}"
+    yield "Heat-transfer area", words.show(exchanger.area, "area"), "derived: outside, bare"
+
+
+def _label(part: Input, name: str) -> str:
+    declared = type(part).declared()
+    return declared[name].name if name in declared else _spelt(name)
+
+
+def _figure(exchanger: Any, figure: Derived, words: Words) -> str:
+    """A derived figure, of a stated size with its name."""
+    text = words.plain(figure.value, figure.quantity) if figure.quantity else f"{figure.value:.0f}"
+    group, _, name = figure.path.rpartition(".")
+    return f"{_label(getattr(exchanger, group) if group else exchanger, name).lower()} {text}" if figure.size else text
 
 
 def _spelt(name: str) -> str:

@@ -23,7 +23,7 @@ from reportlab.platypus import Table as Grid
 from engine import __version__
 from engine.datasheet import Audit
 from engine.findings import Verdict
-from engine.report.blocks import Block, Bundle, Section, Table
+from engine.report.blocks import Block, Bundle, Chart, Columns, Section, Table
 from engine.report.datasheet import sheet_sections
 from engine.report.drawings import BOLD, HAIR, INK, PALE, REGULAR, drawn, fitted
 from engine.report.sections import sections
@@ -40,11 +40,16 @@ ROOM = 40 * mm
 KEPT = 500
 """A table of up to so many characters stays on one page, with its heading."""
 
-BODY = ParagraphStyle("body", fontName=REGULAR, fontSize=7.8, leading=10.2, textColor=INK, spaceAfter=2)
-LEAD = ParagraphStyle("lead", parent=BODY, fontSize=9.2, leading=12.6, spaceAfter=4)
+GAP, GUTTER = 4.0, 12.0
+"""Below a table, and between two side by side."""
+
+BODY = ParagraphStyle("body", fontName=REGULAR, fontSize=7.6, leading=9.8, textColor=INK, spaceAfter=2)
+LEAD = ParagraphStyle("lead", parent=BODY, fontSize=9.2, leading=12.2, spaceAfter=4)
 CAPTION = ParagraphStyle("caption", parent=BODY, fontSize=7.0, leading=8.8)
-CELL = ParagraphStyle("cell", parent=BODY, fontSize=6.9, leading=8.3, spaceAfter=0)
+CELL = ParagraphStyle("cell", parent=BODY, fontSize=6.8, leading=8.0, spaceAfter=0)
+FINE_CELL = ParagraphStyle("fine cell", parent=CELL, fontSize=6.2, leading=7.2)
 HEADER_CELL = ParagraphStyle("header cell", parent=CELL, fontName=BOLD)
+FINE_HEADER_CELL = ParagraphStyle("fine header cell", parent=FINE_CELL, fontName=BOLD)
 TITLE = ParagraphStyle("title", parent=BODY, fontName=BOLD, fontSize=15, leading=19, spaceAfter=4)
 HEADING = ParagraphStyle("heading", parent=BODY, fontName=BOLD, fontSize=9.6, leading=12, spaceBefore=6, spaceAfter=2)
 TABLE_TITLE = ParagraphStyle(
@@ -146,35 +151,57 @@ def _section(section: Section) -> list[Flowable]:
     heading, (first, *rest) = Paragraph(_markup(section.title), HEADING), section.blocks
     if section.key == "signatures":
         return [KeepTogether([heading, *(part for block in section.blocks for part in _block(block))])]
-    opening = [Paragraph(_markup(str(first)), LEAD)] if section.key == "answer" else _block(first)
-    placed: list[Flowable] = (
-        [KeepTogether([heading, *opening])] if _kept(first) else [CondPageBreak(ROOM), heading, *opening]
-    )
+    opening = [heading, *([Paragraph(_markup(str(first)), LEAD)] if section.key == "answer" else _block(first))]
+    kept = _kept(first)
+    if isinstance(first, str) and rest and not isinstance(rest[0], str):  # words that lead to a table stay with it
+        opening += _block(rest[0])
+        kept = _kept(rest.pop(0))
+    placed: list[Flowable] = [KeepTogether(opening)] if kept else [CondPageBreak(ROOM), *opening]
     for block in rest:
         placed += [KeepTogether(_block(block))] if _kept(block) else [CondPageBreak(ROOM), *_block(block)]
     return placed
 
 
 def _kept(block: Block) -> bool:
-    return not isinstance(block, Table) or sum(len(cell) for row in block.rows for cell in row) <= KEPT
+    """Whether a block stays on one page."""
+    tables = block.tables if isinstance(block, Columns) else (block,) if isinstance(block, Table) else ()
+    return sum(len(cell) for table in tables for row in table.rows for cell in row) <= KEPT
 
 
-def _block(block: Block) -> list[Flowable]:
+def _block(block: Block, width: float = WIDTH) -> list[Flowable]:
     if isinstance(block, str):
         return [Paragraph(_markup(block), BODY)]
     if isinstance(block, Table):
         title = [Paragraph(_markup(block.title), TABLE_TITLE)] if block.title else []
-        return [*title, _grid(block), Spacer(0, 4)]
+        return [*title, _grid(block, width), Spacer(0, GAP)]
+    if isinstance(block, Columns):
+        return [_side_by_side(block)]
     if isinstance(block, Bundle):  # its legend is drawn beside it
-        return [drawn(block, WIDTH), Spacer(0, 4)]
-    return [drawn(block, WIDTH), Paragraph(_markup(block.alt), CAPTION)]
+        return [drawn(block, WIDTH), Spacer(0, GAP)]
+    return [drawn(block, WIDTH), Paragraph(_markup(block.alt if isinstance(block, Chart) else block.caption), CAPTION)]
 
 
-def _grid(table: Table) -> Grid:
+def _side_by_side(columns: Columns) -> Grid:
+    room = WIDTH - GUTTER * (len(columns.columns) - 1)
+    cells: list[Any] = []
+    widths: list[float] = []
+    for tables, share in zip(columns.columns, columns.widths, strict=True):
+        width = room * share / sum(columns.widths)
+        cells += ["", [part for table in tables for part in _block(table, width)]]
+        widths += [GUTTER, width]
+    style = [
+        ("VALIGN", (0, 0), (-1, -1), "TOP"),
+        *((f"{edge}PADDING", (0, 0), (-1, -1), 0) for edge in ("LEFT", "RIGHT", "TOP", "BOTTOM")),
+    ]
+    return Grid([cells[1:]], colWidths=widths[1:], style=style, hAlign="LEFT", splitInRow=1)
+
+
+def _grid(table: Table, room: float) -> Grid:
     weights = table.widths or (1.0,) * len(table.header)
-    widths = [WIDTH * weight / sum(weights) for weight in weights]
-    cells = [[Paragraph(_markup(text), HEADER_CELL) for text in table.header]]
-    cells += [[Paragraph(_markup(text), CELL) for text in row] for row in table.rows]
+    widths = [room * weight / sum(weights) for weight in weights]
+    header, cell = (FINE_HEADER_CELL, FINE_CELL) if table.fine else (HEADER_CELL, CELL)
+    cells = [[Paragraph(_markup(text), header) for text in table.header]]
+    cells += [[Paragraph(_markup(text), cell) for text in row] for row in table.rows]
     heights = [None, *([8 * mm if table.roomy else None] * len(table.rows))]
     style = [
         ("VALIGN", (0, 0), (-1, -1), "TOP"),
@@ -182,7 +209,7 @@ def _grid(table: Table) -> Grid:
         ("LINEBELOW", (0, 0), (-1, -1), 0.35, HAIR),
         ("LEFTPADDING", (0, 0), (-1, -1), 3),
         ("RIGHTPADDING", (0, 0), (-1, -1), 3),
-        ("TOPPADDING", (0, 0), (-1, -1), 0.9),
-        ("BOTTOMPADDING", (0, 0), (-1, -1), 1.5),
+        ("TOPPADDING", (0, 0), (-1, -1), 0.3 if table.fine else 0.6),
+        ("BOTTOMPADDING", (0, 0), (-1, -1), 0.8 if table.fine else 1.2),
     ]
     return Grid(cells, colWidths=widths, rowHeights=heights, style=style, repeatRows=1, hAlign="LEFT")

@@ -5,7 +5,7 @@ from __future__ import annotations
 import textwrap
 from collections.abc import Iterable
 
-from engine.report.blocks import Block, Section, Table
+from engine.report.blocks import Block, Columns, Section, Table
 
 WIDTH = 110
 GAP = "  "
@@ -23,6 +23,8 @@ def report_text(sections: Iterable[Section], width: int = WIDTH) -> str:
 def _block(block: Block, width: int) -> str:
     if isinstance(block, Table):
         return _table(block, width)
+    if isinstance(block, Columns):
+        return "\n\n".join(_table(table, width) for table in block.tables)
     return _wrapped(block if isinstance(block, str) else block.alt, width)
 
 

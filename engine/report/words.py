@@ -56,6 +56,11 @@ class Words:
         last = self._last(value, quantity, ends)
         return f"{self._of(ends[0], quantity, last)} to {self._of(ends[1], quantity, last)}"
 
+    def bracketed(self, value: float, quantity: str, ends: Ends) -> str:
+        """A figure with its interval behind it, for a cell."""
+        text = self.best(value, quantity, ends)
+        return f"{text} ({self.span(value, quantity, ends)})" if ends and text != NONE else text
+
     def doubted(self, value: float, quantity: str, ends: Ends) -> str:
         """A figure and its interval, for a sentence."""
         text = self.best(value, quantity, ends)
@@ -81,15 +86,28 @@ class Words:
             return f"{value.text} (= {self.show(value, value.quantity)})"
         if isinstance(declared, Stated):
             quantity = value.quantity if isinstance(value, Figure) and value.quantity else declared.quantities[0]
-            number, _, unit = self.show(float(value), quantity).partition(" ")
-            return f"{number.rstrip('0').rstrip('.') if '.' in number else number} {unit}".rstrip()
+            return self.plain(float(value), quantity)
         return str(value)
+
+    def plain(self, value: float, quantity: str) -> str:
+        """A figure with its unit that is no result, without zeros at its end."""
+        number, _, unit = self.show(value, quantity).partition(" ")
+        return f"{number.rstrip('0').rstrip('.') if '.' in number else number} {unit}".rstrip()
 
 
 def _same_digits(unit: str, other: str, quantity: str) -> bool:
     """Whether a figure reads the same in two units, but for its decimal point."""
     a, b = units.find(unit, quantity), units.find(other, quantity)
     return a.zero == b.zero and math.log10(a.factor / b.factor).is_integer()
+
+
+def percent(share: float, digits: int = 1) -> str:
+    return f"{100 * share:.{digits}f} %"
+
+
+def off(share: float, digits: int = 1) -> str:
+    """A difference, with its sign."""
+    return f"{round(100 * share, digits) + 0.0:+.{digits}f} %"
 
 
 def listed(words: Sequence[str]) -> str:
