@@ -63,6 +63,9 @@ BAFFLE_FIELDS = frozenset(
 )
 """What an X shell, rated as one bank, has no use for."""
 
+MOST_BAFFLES = 500
+"""Of one shell."""
+
 RE_LAMINAR, RE_TRANSITIONAL = 100.0, 1000.0
 """Names of the shell-side regimes: below the switch of the method's constants, and below its row for Re from 1000."""
 
@@ -159,7 +162,7 @@ class ShellAndTube(Input):
         length("Inlet spacing", "400 mm", 20.0, help="From the tubesheet at the inlet to the first baffle."),
     ] = None
     outlet_spacing: Annotated[float | None, length("Outlet spacing", "400 mm", 20.0)] = None
-    baffles: Annotated[int | None, Count("Baffles", 1, 500, help="Of one shell.")] = None
+    baffles: Annotated[int | None, Count("Baffles", 1, MOST_BAFFLES, help="Of one shell.")] = None
     bundle_diameter: Annotated[float | None, length("Bundle diameter", "540 mm", 5.0, help="Outer tube limit.")] = None
     tube_hole_clearance: Annotated[
         float | None,
@@ -334,6 +337,9 @@ class ShellAndTube(Input):
         else:
             fit = (room - sum(spacing if end is None else end for end in stated)) / spacing
             count = max(1.0, 1.0 + np.floor(fit + 1e-9))
+            in_shell = count / self.shell_type.share
+            if in_shell > MOST_BAFFLES:
+                raise ValueError(f"{_mm(spacing)} asks for {in_shell:.4g} baffles; allowed is up to {MOST_BAFFLES}")
         rest = room - (count - 1) * spacing - sum(end or 0.0 for end in stated)
         both = None not in stated
         slack = SPACING_SLACK * room
@@ -1013,11 +1019,28 @@ class ShellAndTube(Input):
         except ValueError as error:
             sound = False
             yield Problem(path="shell_baffle_clearance", says=str(error))
+        for problem in self._gap_problems() if size_sound else ():
+            sound = False
+            yield problem
         if sound and size_sound:
             try:
                 _ = self.geometry
             except ValueError as error:
                 yield Problem(path="", says=str(error))
+
+    def _gap_problems(self) -> Iterator[Problem]:
+        """Gaps that are wider than what they lie in."""
+        for name, most, place in (
+            ("shell_baffle_clearance", self.shell_id - self.outer_tube_limit, "the baffles hold all tubes"),
+            ("tube_hole_clearance", self.tube_pitch - self.tube_od, "the holes do not meet"),
+        ):
+            if (getattr(self, name) or 0.0) > most:
+                says = f"{_mm(getattr(self, name))} is too wide; allowed is up to {_mm(most)}, so that {place}"
+                yield Problem(path=name, says=says)
+        lanes = self.pass_lanes * self.pass_lane_width
+        if lanes >= self.outer_tube_limit:
+            says = f"{self.pass_lanes} lanes of {_mm(self.pass_lane_width)} leave nothing of a bundle of "
+            yield Problem(path="pass_lane_width", says=says + _mm(self.outer_tube_limit))
 
 
 __all__ = ["SHELLS", "ShellAndTube", "ShellType"]
