@@ -75,7 +75,7 @@ def test_what_is_not_offered_is_refused_with_what_is():
         (lambda: pipe("2", "7"), "NPS 2 has no schedule '7'.*40, 80"),
         (lambda: gauge_wall("3"), "'3' is no tube gauge.*7 to 24"),
         (lambda: gauge_wall("thin"), "is no tube gauge"),
-        (lambda: metal("hasteloy"), "offered are alloy C-276"),
+        (lambda: metal("hasteloy"), "did you mean alloy C-276"),
         (lambda: metal(""), "offered are carbon steel"),
         (lambda: conductivity("copper", [300.0, 900.0]), "copper is known from 250 K to 600 K; 900 K"),
         (lambda: conductivity("copper", np.nan), "copper is known"),

@@ -231,7 +231,8 @@ def metal(name: str) -> Metal:
     found = _METAL_NAMES.get(" ".join(name.casefold().split()))
     if found is None:
         near = {_METAL_NAMES[word].name: None for word in get_close_matches(name.casefold(), _METAL_NAMES, n=3)}
-        raise ValueError(f"{name!r} is no metal in the table; offered are {_sentence_list(near or METALS)}")
+        hint = f"did you mean {' or '.join(near)}?" if near else f"offered are {_sentence_list(METALS)}"
+        raise ValueError(f"{name!r} is no metal in the table; {hint}")
     return found
 
 
