@@ -324,8 +324,9 @@ def _write(name: str, content: bytes) -> None:
 
 
 def _complain(sentences: Iterable[str], status: int) -> int:
+    """What was given may stand in a sentence: it breaks no line and steers no terminal."""
     for sentence in sentences:
-        print(sentence, file=sys.stderr)
+        print("".join(c if c.isprintable() else "\N{REPLACEMENT CHARACTER}" for c in sentence), file=sys.stderr)
     return status
 
 

@@ -210,6 +210,13 @@ def test_all_problems_are_told_at_once_one_a_line(tmp_path, capsys):
         assert sum(line.startswith(place) for line in sentences) == 1
 
 
+def test_what_was_given_breaks_no_line_and_steers_no_terminal(tmp_path, capsys):
+    raw = {**changed(OIL_COOLER, inside__flow="42 m3/h\n\x1b[31m"), "a\nkey\x1b[2J": 1}
+    sentences = refused(capsys, "rate", written(tmp_path / "case.json", json.dumps(raw)))
+    assert len(sentences) == 2
+    assert all(sentence.isprintable() for sentence in sentences)
+
+
 @pytest.mark.parametrize(
     ("arguments", "sentence"),
     [
