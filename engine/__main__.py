@@ -311,16 +311,22 @@ def _say(text: str) -> None:
     """Print; a reader that has closed the pipe has read enough."""
     try:
         print(text, end="" if text.endswith("\n") else "\n", flush=True)
-    except BrokenPipeError:
+    except OSError as error:
         # What is still buffered would fail once more when the interpreter closes.
         os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        if not isinstance(error, BrokenPipeError):
+            raise Refused(f"standard output: {_cannot_be_written(error)}") from None
+
+
+def _cannot_be_written(error: OSError) -> str:
+    return f"cannot be written: {(error.strerror or 'unknown reason').lower()}"
 
 
 def _write(name: str, content: bytes) -> None:
     try:
         Path(name).write_bytes(content)
     except OSError as error:
-        raise Refused(f"{name}: cannot be written: {(error.strerror or 'unknown reason').lower()}") from None
+        raise Refused(f"{name}: {_cannot_be_written(error)}") from None
 
 
 def _complain(sentences: Iterable[str], status: int) -> int:

@@ -210,6 +210,21 @@ def test_all_problems_are_told_at_once_one_a_line(tmp_path, capsys):
         assert sum(line.startswith(place) for line in sentences) == 1
 
 
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="needs a device that is always full")
+def test_a_full_disk_behind_standard_output_is_no_fault_of_the_program():
+    with Path("/dev/full").open("w") as full:
+        done = subprocess.run(
+            [sys.executable, "-m", "engine", "schema"],
+            cwd=ROOT,
+            stdout=full,
+            stderr=subprocess.PIPE,
+            text=True,
+            timeout=60,
+        )
+    assert done.returncode == 2
+    assert done.stderr == "standard output: cannot be written: no space left on device\n"
+
+
 def test_what_was_given_breaks_no_line_and_steers_no_terminal(tmp_path, capsys):
     raw = {**changed(OIL_COOLER, inside__flow="42 m3/h\n\x1b[31m"), "a\nkey\x1b[2J": 1}
     sentences = refused(capsys, "rate", written(tmp_path / "case.json", json.dumps(raw)))
