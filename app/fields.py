@@ -180,6 +180,12 @@ def model_at(model: type[engine.Input], raw: Any, path: Path) -> type[engine.Inp
     return model
 
 
+def entry(declared: Any, text: str) -> Any:
+    """What a file holds for a typed text: a count is a whole number, everything else stays as typed."""
+    whole = isinstance(declared, engine.Count) and re.fullmatch(r"[+-]?\d{1,18}", text)
+    return int(text) if whole else text
+
+
 def steps(place: str) -> Path:
     """A dotted place as a path."""
     return tuple(int(step) if step.isdigit() else step for step in re.findall(r"[^.\[\]]+", place))

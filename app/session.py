@@ -230,7 +230,9 @@ def trial(raw: dict[str, Any]) -> dict[str, Any]:
     for place, text in whatif().items():
         path = fields.steps(place)
         doubt = _DOUBT.search(str(fields.get(raw, path)))
-        raw = fields.put(raw, path, text if doubt is None or _DOUBT.search(text) else f"{text} {doubt[0]}")
+        text = text if doubt is None or _DOUBT.search(text) else f"{text} {doubt[0]}"
+        declared = fields.model_at(engine.Case, raw, path).declared().get(str(path[-1]))
+        raw = fields.put(raw, path, fields.entry(declared, text))
     return raw
 
 

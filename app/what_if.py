@@ -10,7 +10,7 @@ from typing import Any
 import streamlit as st
 
 import engine
-from app import session
+from app import fields, session
 from app.display import AS_TYPED, NONE, plain
 from app.fields import Path
 from app.frame import listed, table
@@ -23,7 +23,7 @@ FOULING_SPAN = 0.0006
 
 @dataclass(frozen=True)
 class Figure:
-    """A stated figure that may be tried at other values, in the unit of its slider."""
+    """A stated figure that may be tried at other values, in the unit of its slider; a count has no quantity."""
 
     place: str
     side: str
@@ -42,8 +42,14 @@ class Figure:
     def slider(self) -> str:
         return f"drag {self.place}{session.view()}"
 
+    def written(self, value: float) -> str:
+        return f"{value:.5g} {self.unit}" if self.quantity else f"{value}"
+
     def at(self, text: str) -> float:
         """Where the slider stands for a typed text: at the stated figure where the text cannot be shown on it."""
+        if not self.quantity:
+            tried = fields.entry(self.declared, text)
+            return min(max(tried, self.low), self.high) if isinstance(tried, int) else self.stated
         try:
             figure = engine.parse(text, *self.declared.quantities)
         except engine.UnitError:
@@ -69,6 +75,11 @@ def figures(case: engine.Case) -> Iterator[Figure]:
                 float(engine.to_unit(x, quantity, unit)) for x in (float(value), *_span(path[-1], float(value)))
             )
             yield Figure(engine.dotted((side, *path)), side, declared, quantity, unit, stated, low, high)
+    tubes, plugged = (getattr(case.exchanger, name, None) for name in ("tubes", "tubes_plugged"))
+    if tubes is not None and plugged is not None and tubes > 1:
+        declared = type(case.exchanger).declared()["tubes_plugged"]
+        most = min(max(tubes // 5, 2 * plugged, 10), tubes - 1)
+        yield Figure("exchanger.tubes_plugged", "inside", declared, "", "", plugged, 0, most)
 
 
 def _unit(value: Any, quantity: str) -> str:
@@ -110,17 +121,17 @@ def entry(figure: Figure, side: str) -> None:
         figure.declared.name,
         text,
         key=figure.box,
-        placeholder=f"{figure.stated:.5g} {figure.unit}",
+        placeholder=figure.written(figure.stated),
         on_change=_typed,
         args=(figure,),
     )
     st.slider(
-        f"{figure.declared.name}, {side.lower()}, {figure.unit}",
+        ", ".join(word for word in (figure.declared.name, side.lower(), figure.unit) if word),
         figure.low,
         figure.high,
         figure.at(text),
-        (figure.high - figure.low) / 200,
-        format="%.4g",
+        (figure.high - figure.low) / 200 if figure.quantity else 1,
+        format=f"%.4g {figure.unit.replace('%', '%%')}".strip() if figure.quantity else "%d",
         key=figure.slider,
         label_visibility="collapsed",
         on_change=_dragged,
@@ -135,7 +146,7 @@ def _typed(figure: Figure) -> None:
 
 
 def _dragged(figure: Figure) -> None:
-    text = f"{session.typed(figure.slider):.5g} {figure.unit}"
+    text = figure.written(session.typed(figure.slider))
     session.try_out(figure.place, text)
     session.show_in(figure.box, text)
 
