@@ -20,6 +20,7 @@ STYLE = """<style>
 [data-testid="stMainBlockContainer"] {padding-top: 3.5rem}
 [data-testid="stMarkdownContainer"] table {display: block; overflow-x: auto; width: fit-content; max-width: 100%}
 [data-testid="stMarkdownContainer"] td:not(:first-child) {font-variant-numeric: tabular-nums}
+[data-testid="stMarkdownContainer"] td[style*="right"] {white-space: nowrap}
 [data-testid="stLayoutWrapper"]:has(> .st-key-bundle) {position: sticky; top: 4.5rem}
 .st-key-former {border-left: 6px double #b9641a; padding-left: 0.9rem; opacity: 0.8}
 .st-key-answer p {font-size: 1.25rem; font-weight: 600; line-height: 1.4}
@@ -35,8 +36,8 @@ STYLE = """<style>
 }
 </style>"""
 """A wide table scrolls within itself, never the page. Results of a former case carry a mark along their whole length.
-Rows of a table that lie
-under one another are named by the first. The help of a box shows while the box is pointed at or typed in, so that the tabulator key goes from box to box."""
+Rows of boxes that lie under one another are named by the first. The help of a box shows while the box is pointed at or
+typed in, so that the tabulator key goes from box to box."""
 
 
 def drawn(show: Callable[[], None]) -> Callable[[], None]:

@@ -148,7 +148,8 @@ class Form:
         columns = fields.parts(part.models[0])
         for i in range(count):
             self.said((*path, i), part.models[0])
-            *places, last = st.columns([1] * len(columns) + [0.75], vertical_alignment="bottom")
+            with st.container(key=f"{'later' if i else 'first'} row {self.key((*path, i))}"):
+                *places, last = st.columns([1] * len(columns) + [0.75], vertical_alignment="bottom")
             for column, place in zip(columns, places, strict=True):
                 with place:
                     self.box(column, (*path, i, column.name))
@@ -260,7 +261,8 @@ def _said(says: str, model: type[engine.Input], wrong: bool) -> None:
     if says == MISSING:
         return
     says = fields.in_form_words(says, model)
-    st.caption(f":red[✗ {plain(says[0].upper() + says[1:])}]" if wrong else plain(f"Needed: {says}"))
+    says = plain(f"{says[0].upper()}{says[1:]}")
+    st.caption(f":red[✗ {says}]" if wrong else says)
 
 
 def _help(declared: Any) -> str | None:
@@ -324,10 +326,8 @@ def _edited(path: Path, widget: str, declared: Any, shown: Any, within: Path | N
         # A key that says of which kind its group is stays, however empty.
         tells_kind = path[-1] == "solution"
         session.put(path, "" if tells_kind else None, within)
-    elif isinstance(declared, engine.Count) and re.fullmatch(r"[+-]?\d{1,18}", text):
-        session.put(path, int(text), within)
     else:
-        session.put(path, text, within)
+        session.put(path, fields.entry(declared, text), within)
         if isinstance(declared, engine.Stated):
             session.show_in(widget, session.display().typed(text, declared.quantities))
 
