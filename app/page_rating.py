@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+import re
 from collections.abc import Mapping
 from typing import Any
 
@@ -21,6 +22,11 @@ GRADES = {
     "note": ("○ Note", "gray"),
 }
 """Shape, word and colour of each grade, the gravest first."""
+
+
+_PLACE = re.compile(r"\b(?:inside|outside|limits|exchanger)(?:\.\w+)+")
+NARROW = 162
+"""Least width of a figure's box, in pixels."""
 
 
 def show() -> None:
@@ -104,14 +110,16 @@ def key_figures(found: session.Rated) -> None:
             if not math.isfinite(value):
                 continue
             span = units.span(doubt.of[key], quantity, digits) if doubt and key in doubt.of else None
+            label = f"{label}, {units.unit(quantity)}"
             st.metric(
-                f"{label}, {units.unit(quantity)}",
+                label,
                 units.number(value, quantity, digits),
                 span,
                 delta_color="off",
                 delta_arrow="off",
                 border=True,
-                width=162,
+                # Wide enough for a long unit, which would be cut off.
+                width=max(NARROW, 40 + round(6.1 * len(label))),
             )
         if state.margin is not None:
             clean = found.rating.clean.margin
@@ -122,7 +130,7 @@ def key_figures(found: session.Rated) -> None:
                 delta_color="off",
                 delta_arrow="off",
                 border=True,
-                width=162,
+                width=NARROW,
             )
     st.caption("Fouled state. Below each figure: where it lies with a chance of 95 %.")
 
@@ -149,7 +157,7 @@ def findings(text: str) -> None:
     if missing:
         with st.expander(f"Checks that were not possible · {len(missing)}"):
             for verdict in missing:
-                st.markdown(f"- {plain(verdict.rule.title)}{_at(verdict.where)}: {plain(verdict.missing)}")
+                st.markdown(f"- {plain(verdict.rule.title)}{_at(verdict.where)}: {plain(_in_words(verdict.missing))}")
 
 
 def one_finding(finding: Any) -> None:
@@ -163,6 +171,11 @@ def one_finding(finding: Any) -> None:
 
 def _at(where: str) -> str:
     return f", {_words(where)}" if where else ""
+
+
+def _in_words(missing: str) -> str:
+    """What a check lacks, with the places in it as the form calls them."""
+    return _PLACE.sub(lambda place: f"“{_words(place[0])}”", missing)
 
 
 def _words(where: str) -> str:
