@@ -265,11 +265,14 @@ def absolute(p: float, atmosphere: float) -> float:
     return float(p) + atmosphere if gauge else float(p)
 
 
+LEAST_FLOW, MOST_FLOW = 1e-9, 1e5
+"""kg/s or m³/s: beyond them no exchanger runs, and figures lose their digits."""
 FLOW = Stated(
     ("mass_flow", "volume_flow"),
     "Flow",
+    low=LEAST_FLOW,
     above=0.0,
-    high=1e5,
+    high=MOST_FLOW,
     help="By mass, or by volume at the inlet temperature and pressure.",
     example="42 m3/h",
 )

@@ -10,7 +10,7 @@ import numpy as np
 import pandas as pd
 from numpy.typing import NDArray
 
-from engine.case import Case
+from engine.case import LEAST_FLOW, MOST_FLOW, Case
 from engine.correlations import Array
 from engine.stated import SIDES, CaseError, Problem, Side, opposite
 from engine.steam import Steam, steam_of
@@ -66,11 +66,12 @@ def points_of(case: Case, frame: pd.DataFrame | None = None) -> tuple[Points, Te
     pressure = "" if steam is None else f"{steam.side}.fluid.steam.p"
     if pressure:
         columns.add(pressure)
-    given = {} if frame is None else {str(name): frame[name].to_numpy(float) for name in frame.columns}
-    unknown = sorted(set(given) - columns)
+    names = [] if frame is None else [str(name) for name in frame.columns]
+    unknown = sorted(set(names) - columns)
     if unknown:
         allowed = ", ".join(sorted(columns))
         raise CaseError([Problem(path=name, says=f"is not a known column; allowed are {allowed}") for name in unknown])
+    given = {} if frame is None else _numbers(frame)
     if steam is not None and {pressure, f"{steam.side}.T_in"} <= set(given):
         says = f"stands beside {pressure}; of steam one of the two decides the other"
         raise CaseError([Problem(path=f"{steam.side}.T_in", says=says)])
@@ -95,6 +96,25 @@ def points_of(case: Case, frame: pd.DataFrame | None = None) -> tuple[Points, Te
     return points, _row_problems(case, points, steam)
 
 
+def _numbers(frame: pd.DataFrame) -> dict[str, Array]:
+    """The columns of a frame as numbers; CaseError for a column that stands twice or holds anything else."""
+    problems = [
+        Problem(path=str(name), says="stands twice among the columns; each may stand once")
+        for name in frame.columns[frame.columns.duplicated()]
+    ]
+    given: dict[str, Array] = {}
+    for name in frame.columns[~frame.columns.duplicated()]:
+        column = frame[name]
+        if isinstance(column, pd.Series):
+            if column.dtype.kind in "iuf":
+                given[str(name)] = column.to_numpy(float)
+            else:
+                problems.append(Problem(path=str(name), says=f"holds {column.dtype} values; allowed are numbers in SI"))
+    if problems:
+        raise CaseError(problems)
+    return given
+
+
 def _row_problems(case: Case, points: Points, steam: Steam | None) -> Texts:
     problem = np.full(len(points), "", dtype=object)
 
@@ -104,7 +124,8 @@ def _row_problems(case: Case, points: Points, steam: Steam | None) -> Texts:
     for side in SIDES:
         flow, T, R = points.flow[side], points.T_in[side], points.R_fouling[side]
         condenses = steam is not None and side == steam.side
-        refuse(~((np.isfinite(flow) | condenses) & (flow > 0)), f"{side}.flow is not a positive finite number of kg/s")
+        known = (flow >= LEAST_FLOW) & ((flow <= MOST_FLOW) | (condenses & np.isinf(flow)))
+        refuse(~known, f"{side}.flow is not a positive finite number from {LEAST_FLOW:g} to {MOST_FLOW:g} kg/s")
         refuse(~(np.isfinite(R) & (R >= 0) & (R <= 0.1)), f"{side}.R_fouling is not from 0 to 0.1 m²K/W")
         if steam is not None and condenses:
             low, high = steam.line.T_low, steam.line.T_high

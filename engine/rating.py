@@ -19,6 +19,7 @@ from engine.exchangers import REGIMES, Film
 from engine.exchangers.condenser import CondensingFilm
 from engine.fluids import Fluid
 from engine.points import Points, Texts, joined, points_of
+from engine.refusals import over_pressure
 from engine.solve import SETTLED, Solution, flowing_side, in_series, solve
 from engine.stated import SIDES, Side, opposite
 from engine.states import Chest, Profile, Rating, SideState, State, Zone
@@ -61,6 +62,11 @@ def tabulated(
         problem[at] = np.where(
             (solved.problem == "") & unconverged, "the temperatures did not settle; no answer", solved.problem
         )
+        for side in solved.flowing:
+            # A single rating shows these figures under a finding that stops it; a row has only its sentence.
+            dp, p_in = solved.drop(side), case.p_in(side)
+            for i in np.flatnonzero((problem[at] == "") & (dp >= p_in)):
+                problem[at[i]] = over_pressure(side, dp[i], p_in)
         good = problem[at] == ""
         values = columns(case, solved)
         for name in names:

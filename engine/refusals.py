@@ -44,6 +44,8 @@ def refusals(
                     "rated at its mean pressure; allowed is up to half"
                 ),
             )
+        elif fluid.saturation_temperature(min(p_in, 1e5)) is not None:
+            _mark(problem, dp >= p_in, lambda i, side=side, dp=dp, p_in=p_in: over_pressure(side, dp[i], p_in))
         hottest = max(float(x.max()) for x in (*ends[side], surface[side]))
         T_boil = _boiling_limit(fluid, p_in, dp, hottest)
         places = {"": np.concatenate([*ends[side]], axis=1)}
@@ -73,6 +75,14 @@ def refusals(
     if condensed is not None:
         _mark_steam(problem, points, condensed)
     return problem
+
+
+def over_pressure(side: Side, dp: float, p_in: float) -> str:
+    """A liquid cannot lose more pressure than it has."""
+    return (
+        f"{side}.flow: the pressure drop of {dp / 1e5:.3g} bar is over the whole inlet pressure of {p_in / 1e5:.3g} "
+        "bar absolute; this flow cannot pass"
+    )
 
 
 def _mark_steam(problem: Texts, points: Points, condensed: Condensed) -> None:

@@ -29,7 +29,7 @@ TOLERANCE = 1e-8
 SETTLED = 1e-6
 """Residual up to which a point counts as converged."""
 SETTLE_AT = (1e-1, 1e-5)
-"""Residuals at which a chunk's slowly changing parts are found: the films' spread roughly, then all for good."""
+"""Residuals at which a chunk's slowly changing parts are found: roughly, then for good."""
 PATIENCE = 14
 """Iterations after which a chunk goes on without the few points that settle slowly."""
 MOST_ITERATIONS = 80
@@ -362,12 +362,10 @@ def _settling(points: Points, condensed: Condensed, T_cold: Array, passed: Array
     return np.minimum((points.hottest_chest(side) - T_cold) / (condensed.T_sat - T_cold), most / passed)
 
 
-def _settle(on: _Setting, step: _Step, *, roughly: bool) -> _Settled:
+def _settle(on: _Setting, step: _Step) -> _Settled:
     found = step.found
     h = {side: step.films[side].h for side in SIDES}
     spread = film_spread(on.case, on.cells, step.flowing, h, step.r)
-    if roughly:
-        return replace(step.settled, spread=spread)
     met = (
         (found.inside_entry, found.inside_exit, found.inside_mean),
         (found.outside_entry, found.outside_exit, found.outside_mean),
@@ -493,7 +491,7 @@ def _march(on: _Setting, points: Points, most: int) -> Solution:
         before = (new, change) if count > 1 else None
         if level < len(SETTLE_AT) and worst <= SETTLE_AT[level]:
             level += 1
-            settled = _settle(on, step, roughly=level < len(SETTLE_AT))
+            settled = _settle(on, step)
             before = None
     return _solution(on, points, step, np.full(P, count), residual)
 

@@ -103,9 +103,19 @@ class Stated:
             figure = given if isinstance(given, Figure) else Figure(float(given), quantity=self.quantities[0])
         else:
             raise _refused(f"{short(given)} is not a figure; write it as text, for example {self._example()}")
+        if figure.sd is not None and figure.sd > self._most_sd(figure):
+            raise _refused(f"{short(given)} states a doubt that leaves nothing of the figure; allowed is up to half of it, of fouling all")
         if not (self.low <= figure <= self.high) or (self.above is not None and not figure > self.above):
             raise _refused(f"{short(given)} is out of bounds; allowed is {self.allowed()}")
         return figure
+
+    @staticmethod
+    def _most_sd(figure: Figure) -> float:
+        """Beyond it an interval of first order means nothing; fouling is known so badly, and zero is told elsewhere."""
+        if figure.quantity == "temperature":
+            return 50.0
+        size = abs(float(figure)) + (1e5 if figure.quantity == "pressure_gauge" else 0.0)
+        return (size if figure.quantity == "fouling_resistance" else 0.5 * size) or float("inf")
 
     def _example(self) -> str:
         return f'"{self.example}"' if self.example else f'"{units.show(300.0, self.quantities[0], "si")}"'

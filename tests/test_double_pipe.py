@@ -18,7 +18,7 @@ from engine.exchangers import Cells
 from engine.points import points_of
 from engine.rating import rate, rate_points
 from engine.solve import flowing_side, resistances, solve
-from engine.stated import SIDES
+from engine.stated import SIDES, CaseError
 from tests.cases import OIL_COOLER, OIL_TABLE, changed, constant, oil_cooler
 
 
@@ -372,6 +372,36 @@ def test_a_bad_row_carries_a_sentence_and_spoils_no_other():
 def test_an_unknown_column_is_refused_by_name():
     with pytest.raises(ValueError, match=r"inside\.fow"):
         rate_points(oil_cooler(), pd.DataFrame({"inside.fow": [1.0]}))
+
+
+@pytest.mark.parametrize(
+    "frame",
+    [
+        pd.DataFrame({"inside.flow": ["3"]}),
+        pd.DataFrame({"inside.flow": [True]}),
+        pd.DataFrame({"inside.flow": [3 + 1j]}),
+        pd.DataFrame({"inside.flow": pd.to_datetime(["2026-01-01"])}),
+        pd.DataFrame([[3.0, 3.0]], columns=["inside.flow", "inside.flow"]),
+    ],
+)
+def test_a_column_that_holds_no_numbers_or_stands_twice_is_refused(frame):
+    with pytest.raises(CaseError, match=r"inside\.flow"):
+        rate_points(oil_cooler(), frame)
+
+
+def test_absurd_flows_are_told_row_by_row():
+    found = rate_points(oil_cooler(), pd.DataFrame({"inside.flow": [1e-300, 1e300, 3.0, 2e4]}))
+    assert list(found.problem == "") == [False, False, True, False]
+    assert "cannot pass" in found.problem[3]
+
+
+def test_a_long_exchanger_keeps_to_the_second_law():
+    """A tiny stream over fins comes out at the other's inlet, not beyond it."""
+    fins = {"count": 24, "height": "6 mm", "thickness": "0.9 mm", "conductivity": "50 W/mK"}
+    for flow in ("0.005 kg/s", "0.02 kg/s", "0.1 kg/s"):
+        state = rate(oil_cooler(exchanger__fins=fins, outside__flow=flow, outside__T_out=None)).fouled
+        assert state.effectiveness <= 1.0 + 1e-9
+        assert state.T_out["outside"] >= 300.15 - 1e-6
 
 
 def test_an_empty_frame_gives_an_empty_frame():

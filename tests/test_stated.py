@@ -166,3 +166,20 @@ def test_every_default_lies_within_its_bounds_and_every_assumption_is_explained(
 def test_every_example_can_be_read(model):
     examples = [declared for declared in model.declared().values() if isinstance(declared, Stated) and declared.example]
     assert all(isinstance(declared.read(declared.example, file=True), Figure) for declared in examples)
+
+
+@pytest.mark.parametrize(
+    "given", ["12 m3/h ± 300 %", "4 barg ± 5 bar", "60 degC ± 80 K", "0.0002 m2K/W ± 0.0003 m2K/W"]
+)
+def test_a_doubt_that_leaves_nothing_of_a_figure_is_refused(given):
+    quantities = ("mass_flow", "volume_flow", "pressure_gauge", "temperature", "fouling_resistance")
+    with pytest.raises(PydanticCustomError, match="leaves nothing"):
+        Stated(quantities, "Anything").read(given)
+
+
+@pytest.mark.parametrize(
+    "given", ["12 m3/h ± 30 %", "0 barg ± 0.1 bar", "60 degC ± 2 K", "0.0003 m2K/W ± 0.0002 m2K/W"]
+)
+def test_a_doubt_of_usual_size_is_read(given):
+    quantities = ("mass_flow", "volume_flow", "pressure_gauge", "temperature", "fouling_resistance")
+    assert Stated(quantities, "Anything").read(given).sd > 0
