@@ -153,7 +153,7 @@ def mean_property_state(case: Case, point: Points, method: str, start: State, fi
         T_out={side: float(T_out[side][0]) for side in SIDES},
         area=exchanger.area,
         mtd=mtd,
-        F=correction(mtd, counter_lmtd(case, T_in, T_out)),
+        F=1.0 if steam else correction(mtd, counter_lmtd(case, T_in, T_out)),
         effectiveness=duty / (C_min * span),
         NTU=NTU,
         U_clean=1.0 / (1.0 / U - R["outside fouling"] - R["inside fouling"]),

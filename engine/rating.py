@@ -197,7 +197,7 @@ def state_of(case: Case, solved: Solution, i: int, name: str) -> State:
         T_out={side: float(solved.T_out[side][i]) for side in SIDES},
         area=area,
         mtd=mtd,
-        F=correction(mtd, lmtd),
+        F=1.0 if case.steam_side else correction(mtd, lmtd),
         effectiveness=duty / (C_min * abs(float((T_in["inside"] - T_in["outside"])[0]))),
         NTU=U * area / C_min,
         U_clean=float(solved.U_clean[i]),

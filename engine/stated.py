@@ -104,7 +104,8 @@ class Stated:
         else:
             raise _refused(f"{short(given)} is not a figure; write it as text, for example {self._example()}")
         if figure.sd is not None and figure.sd > self._most_sd(figure):
-            raise _refused(f"{short(given)} states a doubt that leaves nothing of the figure; allowed is up to half of it, of fouling all")
+            says = "states a doubt that leaves nothing of the figure; allowed is up to half of it, of fouling all"
+            raise _refused(f"{short(given)} {says}")
         if not (self.low <= figure <= self.high) or (self.above is not None and not figure > self.above):
             raise _refused(f"{short(given)} is out of bounds; allowed is {self.allowed()}")
         return figure
