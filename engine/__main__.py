@@ -67,6 +67,10 @@ def _rate(options: argparse.Namespace) -> int:
             _write(options.json, text.encode())
     if options.pdf:
         studies = engine.studied(case, options.units)
+        if case.sheet is not None:
+            # In a rating's report what does not close is enough; `check` lists the lines that do.
+            audit = engine.sheet_sections(engine.check_datasheet(case), options.units)
+            studies += tuple(section for section in audit if section.key not in ("sheet-clear", "sheet-missing"))
         _write(options.pdf, engine.report_pdf(rating, intervals, verdicts, options.units, studies))
     if options.json != "-":
         from engine.report import report_text

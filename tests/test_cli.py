@@ -9,6 +9,7 @@ import sys
 from pathlib import Path
 
 import pytest
+from pypdf import PdfReader
 
 import engine
 from engine import units
@@ -286,3 +287,11 @@ def test_a_fault_of_the_program_is_called_one(case, monkeypatch, capsys):
     monkeypatch.setenv("COUNTERCHECK_DEBUG", "1")
     with pytest.raises(RuntimeError):
         main(["rate", str(case)])
+
+
+def test_the_report_of_a_case_with_a_sheet_holds_its_audit(tmp_path):
+    sample = Path(__file__).parents[1] / "sample_cases" / "sheet-fouling-in-the-wrong-unit.json"
+    assert main(["rate", str(sample), "--pdf", str(tmp_path / "x.pdf")]) == 0
+    text = " ".join(page.extract_text() for page in PdfReader(tmp_path / "x.pdf").pages)
+    assert "Questions to the vendor" in text
+    assert "h·ft²·°F/Btu read as m²K/W" in " ".join(text.split())
