@@ -20,7 +20,6 @@ STYLE = """<style>
 [data-testid="stMainBlockContainer"] {padding-top: 3.5rem}
 [data-testid="stMarkdownContainer"] table {display: block; overflow-x: auto; width: fit-content; max-width: 100%}
 [data-testid="stMarkdownContainer"] td:not(:first-child) {font-variant-numeric: tabular-nums}
-[data-testid="stMarkdownContainer"] td[style*="right"] {white-space: nowrap}
 [data-testid="stLayoutWrapper"]:has(> .st-key-bundle) {position: sticky; top: 4.5rem}
 .st-key-former {border-left: 6px double #b9641a; padding-left: 0.9rem; opacity: 0.8}
 .st-key-answer p {font-size: 1.25rem; font-weight: 600; line-height: 1.4}
@@ -134,9 +133,14 @@ def listed(problems: Sequence[engine.Problem], most: int = 12) -> None:
 
 def table(header: Sequence[str], rows: Sequence[Sequence[str]]) -> None:
     """A small table of text; columns of figures stand to the right."""
-    lines = [f"| {' | '.join(plain(cell).replace(chr(10), '<br>') for cell in line)} |" for line in (header, *rows)]
+    lines = [f"| {' | '.join(_cell(cell) for cell in line)} |" for line in (header, *rows)]
     marks = ["---:" if i and _figures([row[i] for row in rows]) else ":---" for i in range(len(header))]
     st.markdown("\n".join([lines[0], f"| {' | '.join(marks)} |", *lines[1:]]))
+
+
+def _cell(text: str) -> str:
+    """Text of a cell; a short unit stays on the line of its figure."""
+    return plain(re.sub(r"(?<=\d) (?=[^\s\d]{1,4}$)", "\N{NO-BREAK SPACE}", text)).replace("\n", "<br>")
 
 
 def _figures(cells: Sequence[str]) -> bool:

@@ -58,9 +58,10 @@ def draft_of(app: AppTest) -> dict[str, Any]:
 
 
 def words(app: AppTest) -> str:
-    return "\n".join(
+    said = "\n".join(
         str(e.value) for e in [*app.title, *app.markdown, *app.caption, *app.error, *app.warning, *app.info]
     )
+    return said.replace("\N{NO-BREAK SPACE}", " ")
 
 
 def metric(app: AppTest, label: str) -> str:
@@ -115,6 +116,21 @@ def test_a_case_filled_in_field_by_field_is_complete_and_rates() -> None:
     assert draft_of(app)["case"]["exchanger"]["legs_in_series"] == 8
     assert draft_of(app)["case"]["inside"]["flow"] == "12 m3/h"
     assert float(metric(page("rating", token_of(app)), "Duty")) > 0
+
+
+def test_a_misspelt_fluid_is_refused_at_its_box_before_anything_else_is_typed() -> None:
+    app = page("case")
+    app.text_input(key="inside.fluid@typed#0").set_value("tolune").run()
+    assert "1 to correct" in words(app)
+    assert "✗ No fluid is called 'tolune'" in words(app)
+
+
+def test_a_pipe_with_its_size_alone_lacks_its_schedule_and_is_not_wrong() -> None:
+    app = page("case")
+    app.text_input(key="exchanger.inner_pipe.nps@typed#0").set_value("2").run()
+    assert "to correct" not in words(app)
+    assert "✗" not in words(app)
+    assert app.text_input(key="exchanger.inner_pipe.schedule@typed#0").placeholder.startswith("needed")
 
 
 def test_a_bad_figure_stays_in_its_box_with_the_engines_sentence_beside_it() -> None:
@@ -354,6 +370,17 @@ def test_without_any_complete_case_no_result_is_shown() -> None:
     assert not app.metric
     assert "nothing to rate yet" in words(app)
     assert "Annulus, flow is missing" in words(app)
+
+
+def test_plugged_tubes_are_tried_as_a_whole_number() -> None:
+    raw = json.loads((ROOT / "sample_cases" / "two-shells-crossing.json").read_text(encoding="utf-8"))
+    app = page("rating", kept(raw))
+    plugged = "try exchanger.tubes_plugged@typed#0"
+    app.text_input(key=plugged).set_value("5").run()
+    tried = engine.rate(engine.parse_case(fields.put(raw, ("exchanger", "tubes_plugged"), 5))).fouled.duty
+    assert Display("us", "us").show(tried, "heat_flow") in words(app)
+    app.text_input(key=plugged).set_value("5.5").run()
+    assert "is not a whole number" in words(app)
 
 
 def test_what_if_leaves_the_case_alone_until_it_is_adopted() -> None:

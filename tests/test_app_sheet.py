@@ -35,7 +35,7 @@ def page(name: str, token: str = "") -> AppTest:
 
 def words(app: AppTest) -> str:
     shown = [*app.title, *app.subheader, *app.markdown, *app.caption, *app.error, *app.warning, *app.info]
-    return "\n".join(str(element.value) for element in shown)
+    return "\n".join(str(element.value) for element in shown).replace("\N{NO-BREAK SPACE}", " ")
 
 
 # --- trust ------------------------------------------------------------------------------------------------------------

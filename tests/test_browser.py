@@ -149,7 +149,7 @@ class User:
         return float(found.locator("[data-testid=stMetricValue]").inner_text())
 
     def text(self) -> str:
-        return str(self.page.locator("[data-testid=stMain]").inner_text())
+        return str(self.page.locator("[data-testid=stMain]").inner_text()).replace("\N{NO-BREAK SPACE}", " ")
 
     def close(self) -> None:
         self.context.close()
