@@ -202,7 +202,7 @@ def gas_in_steam(s: Subject) -> Iterator[Finding]:
             "watch",
             where=path,
             says=f"Gas takes {s.dp(share * p)} of the pressure ({percent(share)} by volume): steam beside it condenses "
-            f"at {s.T(T_vent)} instead of {s.T(T_sat)}, and slowly. The rating is for steam without gas.",
+            f"{s.dT(T_sat - T_vent)} below {s.T(T_sat)}, and slowly. The rating is for steam without gas.",
             because={
                 f"temperature {how}": s.T(T_vent),
                 "condensing point without gas": s.T(T_sat),
