@@ -1,7 +1,8 @@
 """How often the audit of a datasheet raises a false alarm, finds an error, names the slip and points at the field.
 
 `python -m tests.sheet_study [SHEETS] [SEED]` prints the rates. An error is scored where what it does to a check exceeds
-two of its tolerances, both taken without the vendor's own scatter.
+two of its tolerances, both taken without the vendor's own scatter. Such an error is missed only where rounding and
+scatter hide it, so that the rate found says little; the false alarms, the names and the ranks say more.
 """
 
 from __future__ import annotations

@@ -716,8 +716,8 @@ def test_the_door_offers_the_audit():
 # --- printed worked examples ------------------------------------------------------------------------------------------
 
 PRINTED = {
-    # D. Q. Kern, Process Heat Transfer, 1950, Example 7.3: kerosene in the shell, crude in the tubes. Data, duty and F of
-    # the example; its answers were not seen.
+    # D. Q. Kern, Process Heat Transfer, 1950, Example 7.3: kerosene in the shell, crude in the tubes. Data, duty and F
+    # of the example; its answers were not seen.
     "Kern 7.3": {
         "outside.flow": "43800 lb/h", "outside.T_in": "390 degF", "outside.T_out": "200 degF",
         "inside.flow": "149000 lb/h", "inside.T_in": "100 degF",
@@ -760,8 +760,8 @@ PRINTED = {
         "outside.flow": "2.85 kg/s", "outside.cp": "1.89 kJ/kgK", "outside.T_in": "383 K", "duty": "148900 W",
         "U_service": "300 W/m2K", "area": "15.0 m2", "arrangement": "counter", "legs_in_series": 1,
     },
-    # L. Theodore, Heat Transfer Applications for the Practicing Engineer, 2011, Illustrative Examples 15.14 to 15.16, whose
-    # surface is that of the bore; the latent heat is that of the steam tables.
+    # L. Theodore, Heat Transfer Applications for the Practicing Engineer, 2011, Illustrative Examples 15.14 to 15.16,
+    # whose surface is that of the bore; the latent heat is that of the steam tables.
     "Theodore 15.14": {
         "inside.flow": "228 kg/h", "inside.cp": "4.174 kJ/kgK", "inside.T_in": "25 degC", "inside.T_out": "73 degC",
         "outside.fluid": "steam", "outside.T_in": "100 degC", "outside.T_out": "100 degC",
@@ -854,9 +854,9 @@ def test_consistent_sheets_raise_no_alarm():
 
 
 def test_errors_are_found_named_and_located():
-    found = [one for one in scores(46, 20241) if one.scored]
+    found = [one for one in scores(38, 20241) if one.scored]
     named = [one.named for one in found if one.named is not None]
-    assert len(found) > 30
+    assert len(found) > 25
     assert np.mean([one.found for one in found]) >= 0.95
     assert np.mean(named) >= 0.85
     assert np.mean([one.rank <= 2 for one in found]) >= 0.85
