@@ -237,7 +237,7 @@ class Form:
 
     def _placeholder(self, part: Part, needed: bool, names: Sequence[str]) -> str:
         declared = part.declared
-        example = getattr(declared, "example", "") or (names[0] if names else "")
+        example = declared.example or (names[0] if names else "")
         if needed:
             return f"needed, e.g. {example}" if example else "needed"
         if isinstance(declared, engine.Stated) and part.default is not None:

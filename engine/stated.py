@@ -151,6 +151,7 @@ class Count:
     high: int
     help: str = ""
     assumed: str = ""
+    example: str = ""
 
     def read(self, given: Any) -> int:
         if isinstance(given, float) and given.is_integer() and not isinstance(given, Figure):
@@ -171,6 +172,7 @@ class Count:
             "description": _described(
                 self.name, self.help, f"A whole number, {self.low} to {self.high}.", assumed=self.assumed
             ),
+            "examples": [int(self.example)] if self.example else [],
             "minimum": self.low,
             "maximum": self.high,
         }
@@ -214,6 +216,7 @@ class Words:
     longest: int = 200
     lines: bool = False
     help: str = ""
+    example: str = ""
 
     def read(self, given: Any) -> str:
         if not isinstance(given, str):
@@ -235,6 +238,7 @@ class Words:
             "type": "string",
             "title": self.name,
             "description": _described(self.name, self.help, f"Text of up to {self.longest} characters."),
+            "examples": [self.example] if self.example else [],
             "maxLength": self.longest,
         }
 

@@ -26,8 +26,8 @@ def length(name: str, example: str, high: float = 100.0, assumed: str = "", help
 class Pipe(Input):
     """A pipe by nominal size and schedule, or by its two diameters."""
 
-    nps: Annotated[str | None, Words("Nominal size", 12, help='Nominal pipe size in inches, such as "2".')] = None
-    schedule: Annotated[str | None, Words("Schedule", 12)] = None
+    nps: Annotated[str | None, Words("Nominal size", 12, help="Nominal pipe size in inches.", example="2")] = None
+    schedule: Annotated[str | None, Words("Schedule", 12, example="40")] = None
     od: Annotated[float | None, length("Outside diameter", "60.3 mm", 5.0)] = None
     id: Annotated[float | None, length("Inside diameter", "52.5 mm", 5.0)] = None
 
@@ -107,7 +107,7 @@ class DoublePipe(Input):
     outer_pipe: Pipe
     inner_pipes: Annotated[int, Count("Inner pipes in one outer pipe", 1, 100, assumed="one inner pipe")] = 1
     leg_length: Annotated[float, length("Leg length", "6 m", 100.0, help="One straight leg, effective for heat.")]
-    legs_in_series: Annotated[int, Count("Legs in series", 1, 200, help="Two a hairpin.")]
+    legs_in_series: Annotated[int, Count("Legs in series", 1, 200, help="Two a hairpin.", example="8")]
     banks_in_parallel: Banks = Banks()
     orientation: Annotated[
         str,

@@ -101,20 +101,27 @@ class ShellAndTube(Input):
     """The stated dimensions of a shell-and-tube exchanger, and its films and drops. Counts are those of one shell."""
 
     type: Literal["shell-and-tube"] = "shell-and-tube"
-    tema: Annotated[str, Words("TEMA type", 3, help='Front head, shell and rear head, such as "AES" or "BEM".')]
+    tema: Annotated[str, Words("TEMA type", 3, help="Front head, shell and rear head.", example="AES")]
     shell_id: Annotated[float, length("Shell inside diameter", "591 mm", 5.0)]
     tube_od: Annotated[float, length("Tube outside diameter", "19.05 mm", 0.2)]
     tube_wall: Annotated[float | None, length("Tube wall", "2.11 mm", 0.05)] = None
-    gauge: Annotated[str | None, Words("Tube gauge", 12, help='Birmingham gauge of the wall, such as "14 BWG".')] = None
+    gauge: Annotated[str | None, Words("Tube gauge", 12, help="Birmingham gauge of the wall.", example="14 BWG")] = None
     tube_length: Annotated[
         float, length("Tube length", "4.88 m", 50.0, help="Straight and effective, between the tubesheets.")
     ]
     tube_pitch: Annotated[float, length("Tube pitch", "25.4 mm", 0.5)]
     layout_angle: Annotated[str, Choice("Layout angle", ("30 deg", "45 deg", "60 deg", "90 deg"))]
     tubes: Annotated[
-        int, Count("Tubes", 1, 50000, help="Of one shell: straight tubes, or the legs of U-tubes (two for each U).")
+        int,
+        Count(
+            "Tubes",
+            1,
+            50000,
+            help="Of one shell: straight tubes, or the legs of U-tubes (two for each U).",
+            example="220",
+        ),
     ]
-    tube_passes: Annotated[int, Count("Tube passes", 1, 16)]
+    tube_passes: Annotated[int, Count("Tube passes", 1, 16, example="2")]
     tubes_plugged: Annotated[
         int, Count("Tubes plugged", 0, 50000, help="Of one shell, counted as the tubes.", assumed="no tube is plugged")
     ] = 0
