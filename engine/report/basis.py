@@ -9,11 +9,17 @@ from functools import cached_property
 from engine import units
 from engine.correlations import REGISTER, Correlation, Source
 from engine.correlations.losses import COEFFICIENTS, Figure
+from engine.correlations.sources import COMMON_PRACTICE
 from engine.report.blocks import Block, Table
-from engine.report.rated import Rated
-from engine.report.words import NONE, capital, limits_of, off, page_of, relation_name
+from engine.report.rated import ASSUMED, Rated
+from engine.report.words import NONE, capital, limits_of, off, relation_name
 from engine.stated import SIDES, Side
 from engine.states import State
+
+SHORT = 40
+"""Characters; a finding's source that takes more is cited by number."""
+NOT_CHECKED, UNCHECKED = "not checked", " (printed page not checked)"
+"""Of a source's printed page, in a table and behind the source."""
 
 METHOD_NAMES = {
     "march": "Cell by cell, local properties",
@@ -69,9 +75,10 @@ class Basis:
                     (o.of, o.name, o.shown, off(o.ratio - 1, 0), o.holds, self.cite(o.by.source)) for o in self.opinions
                 ),
                 title="Second opinions on films and drops, fouled, at mean properties",
-                widths=(1.2, 2.2, 1.2, 0.7, 3.1, 0.7),
+                widths=(1.1, 2.7, 1.1, 0.6, 3.8, 0.6),
+                fine=True,
             )
-            yield f"Spread of all relations around the figure used: {'; '.join(self._spreads())}."
+            yield f"Spread around the figure used: {'; '.join(self._spreads())}."
 
     def _method_row(self, name: str, found: State | str) -> tuple[str, ...]:
         r = self.r
@@ -143,16 +150,24 @@ class Basis:
         return list(dict.fromkeys(figure for side in rated for figure in case.exchanger.loss_coefficients(side)))
 
     @cached_property
-    def sources(self) -> list[Source]:
-        """All sources cited by number, in the order in which a reader meets them."""
+    def sources(self) -> dict[str, str]:
+        """All that is cited by number, in the order in which a reader meets it, and whether its page was compared."""
         found = [figure.source for figure in self.r.case.exchanger.derived()]
         if self.r.both:
-            cited = (*(opinion.by for opinion in self.opinions), *self.used, *self.coefficients)
-            found += [what.source for what in cited]
-        return list(dict.fromkeys(found))
+            found += [opinion.by.source for opinion in self.opinions]
+        cited = {source.text: _page(source) for source in found}
+        for finding in self.r.found:
+            if len(finding.source) > SHORT and finding.code != ASSUMED:
+                text = finding.source.removesuffix(UNCHECKED)
+                cited.setdefault(text, NONE if text == finding.source else NOT_CHECKED)
+        for source in (*(relation.source for relation in self.used), *(figure.source for figure in self.coefficients)):
+            cited[source.text] = _page(source)
+        return cited
 
-    def cite(self, source: Source) -> str:
-        return f"[{self.sources.index(source) + 1}]"
+    def cite(self, source: Source | str) -> str:
+        """Its number; of a finding whose source is said in a few words, these."""
+        text = source.text if isinstance(source, Source) else source.removesuffix(UNCHECKED)
+        return f"[{list(self.sources).index(text) + 1}]" if text in self.sources else text
 
     def relations(self) -> Iterator[Block]:
         if self.r.both:
@@ -168,7 +183,7 @@ class Basis:
                     )
                     for relation, places in self.used.items()
                 ),
-                widths=(2.1, 0.9, 4.4, 1.5, 0.6),
+                widths=(2.1, 0.9, 4.4, 1.65, 0.6),
                 fine=True,
             )
             taken = "; ".join(f"{f.what} {f.value:g} {self.cite(f.source)}" for f in self.coefficients)
@@ -177,10 +192,15 @@ class Basis:
         if self.sources:
             yield Table(
                 header=("", "Source", "Printed page"),
-                rows=tuple((f"[{i}]", source.text, page_of(source)) for i, source in enumerate(self.sources, 1)),
-                widths=(0.5, 11, 1.3),
+                rows=tuple((f"[{i}]", text, page) for i, (text, page) in enumerate(self.sources.items(), 1)),
+                widths=(0.5, 11, 1.4),
                 fine=True,
             )
+
+
+def _page(source: Source) -> str:
+    """Whether the printed page was compared."""
+    return NONE if source == COMMON_PRACTICE else "checked" if source.checked else NOT_CHECKED
 
 
 def _scatter(relation: Correlation) -> str:

@@ -2,18 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 
 from engine.report.blocks import Block, Table
-from engine.report.rated import Rated
+from engine.report.rated import ASSUMED, Rated
 from engine.report.words import capital, fluid_name, listed, percent
 from engine.stated import SIDES
 
 MOST_CONTRIBUTORS = 5
 LEAST_SHARE = 0.005
 """Of the variance, for a contributor to be shown."""
-ASSUMED = "assumed"
-"""Code of the findings that name a default."""
 OWN_UNITS = {"flow": "mass_flow", "T_in": "temperature_difference", "R_fouling": "fouling_resistance"}
 """Doubts that are held in SI and not as a share."""
 ALWAYS_ASSUMED = (
@@ -32,18 +30,19 @@ NEVER_CHECKED = (
 )
 
 
-def findings(r: Rated) -> Iterator[Block]:
+def findings(r: Rated, cite: Callable[[str], str]) -> Iterator[Block]:
+    """`cite` tells a source, long ones by their number."""
     if not r.found:
         yield "None: every check that could be run is clear."
         return
     yield Table(
         header=("Grade", "What was found", "What to do, and the source"),
-        rows=tuple(_finding_rows(r)),
-        widths=(0.6, 4.6, 2.6),
+        rows=tuple(_finding_rows(r, cite)),
+        widths=(0.5, 4.2, 3.2),
     )
 
 
-def _finding_rows(r: Rated) -> Iterator[tuple[str, str, str]]:
+def _finding_rows(r: Rated, cite: Callable[[str], str]) -> Iterator[tuple[str, str, str]]:
     """One row a finding, but one for all defaults: each of them already stands among the inputs."""
     for finding in r.found:
         if finding.code != ASSUMED:
@@ -53,7 +52,7 @@ def _finding_rows(r: Rated) -> Iterator[tuple[str, str, str]]:
             )
             place = f"[{finding.code}, {finding.where}]" if finding.where else f"[{finding.code}]"
             says = f"{finding.says} ({rest})" if rest else finding.says
-            yield finding.grade, f"{says} {place}", f"{finding.do} Source: {finding.source}."
+            yield finding.grade, f"{says} {place}", f"{finding.do} Source: {cite(finding.source)}."
     defaults = [finding for finding in r.found if finding.code == ASSUMED]
     if defaults:
         says = f"{len(defaults)} inputs are not stated; what is taken for them stands among the inputs. [{ASSUMED}]"
@@ -78,9 +77,9 @@ def contributors(r: Rated) -> Iterator[Block]:
     )
     if rows:
         yield Table(
-            header=("Source of doubt", "One standard deviation", "Of variance", "Moves duty by", "To shrink it"),
+            header=("Source of doubt", "1 sd", "Variance", "On duty", "To shrink it"),
             rows=rows,
-            widths=(2.1, 1.8, 1.1, 1.2, 3.4),
+            widths=(2.3, 1.7, 0.8, 1.0, 3.9),
         )
     if doubt.not_propagated:
         yield f"Not in the intervals: {listed(doubt.not_propagated)}."

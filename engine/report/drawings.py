@@ -58,7 +58,7 @@ def ticks(low: float, high: float, most: int = 6) -> list[float]:
     return [i * step for i in range(first, max(last, first + 1) + 1)]
 
 
-def draw_chart(chart: Chart, width: float, height: float = 146.0) -> Drawing:
+def draw_chart(chart: Chart, width: float, height: float = 140.0) -> Drawing:
     """The lines over their axes, a legend above, the strips below."""
     drawing = Drawing(width, height)
     strip_height = 11.0

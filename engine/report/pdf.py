@@ -31,7 +31,7 @@ from engine.states import Rating
 from engine.uncertainty import Intervals
 
 FONTS = Path(__file__).parents[1] / "fonts"
-MARGIN, HEAD, FOOT = 17 * mm, 17 * mm, 14 * mm
+MARGIN, HEAD, FOOT = 17 * mm, 16 * mm, 14 * mm
 WIDTH = A4[0] - 2 * MARGIN
 PADDING = 6.0
 """That the page's frame keeps free on each side."""
@@ -202,7 +202,7 @@ def _grid(table: Table, room: float) -> Grid:
     header, cell = (FINE_HEADER_CELL, FINE_CELL) if table.fine else (HEADER_CELL, CELL)
     cells = [[Paragraph(_markup(text), header) for text in table.header]]
     cells += [[Paragraph(_markup(text), cell) for text in row] for row in table.rows]
-    heights = [None, *([8 * mm if table.roomy else None] * len(table.rows))]
+    heights = [None, *([7.5 * mm if table.roomy else None] * len(table.rows))]
     style = [
         ("VALIGN", (0, 0), (-1, -1), "TOP"),
         ("BACKGROUND", (0, 0), (-1, 0), PALE),

@@ -15,6 +15,8 @@ from engine.states import Rating, SideState, State
 from engine.uncertainty import Intervals
 
 STATES = ("clean", "fouled")
+ASSUMED = "assumed"
+"""Code of the findings that name a default."""
 
 
 @dataclass(frozen=True)

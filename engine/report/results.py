@@ -109,9 +109,11 @@ def _steam_rows(r: Rated) -> dict[str, list[str]]:
 
 def _side_rows(r: Rated) -> Iterator[tuple[str, ...]]:
     show = r.words.show
-    for label, name, kind in (("Outlet", "T_out", "temperature"), ("Film, own surface", "h", U)):
-        cells = [(getattr(at, name), kind, r.ends(state, f"{side}.{name}")) for side, state, at in r.columns]
-        yield (label, *(r.words.bracketed(*cell) for cell in cells))
+    outlets = [(at.T_out, "temperature", r.ends(state, f"{side}.T_out")) for side, state, at in r.columns]
+    yield ("Outlet", *(r.words.bracketed(*outlet) for outlet in outlets))
+    films = [(at.h, U, r.ends(state, f"{side}.h")) for side, state, at in r.columns]
+    unit = r.words.unit(U)
+    yield (f"Film, own surface, {unit}", *(r.words.bracketed(*film).replace(f" {unit}", "") for film in films))
     sides = [at for _, _, at in r.columns]
     yield (
         "Reynolds, Prandtl number",

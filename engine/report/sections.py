@@ -52,7 +52,7 @@ def sections(
         ("resistances", "Where the resistance lies", results.resistances(r)),
         ("drops", "Pressure drops", results.drops(r)),
         ("methods", "Methods side by side", basis.methods()),
-        ("findings", "Findings", doubts.findings(r)),
+        ("findings", "Findings", doubts.findings(r, basis.cite)),
         ("contributors", "What to measure to be surer", doubts.contributors(r)),
         *((section.key, section.title, section.blocks) for section in studies),
         ("assumptions", "Assumptions", doubts.assumptions(r)),

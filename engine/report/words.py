@@ -9,8 +9,7 @@ from typing import Any
 
 from engine import units
 from engine.case import SolutionFluid, SteamFluid, Stream
-from engine.correlations import Correlation, Source
-from engine.correlations.sources import COMMON_PRACTICE
+from engine.correlations import Correlation
 from engine.stated import Figure, Stated
 
 NONE = "–"
@@ -122,18 +121,16 @@ def capital(text: str) -> str:
 def relation_name(relation: Correlation) -> str:
     """A relation's name in words, authors' names with their capitals."""
     source = relation.source.text
-    words = [word.capitalize() if word.capitalize() in source else word for word in relation.name.split("_")]
+    words = [
+        word.capitalize() if len(word) > 1 and word.capitalize() in source else word
+        for word in relation.name.split("_")
+    ]
     return capital(" ".join(words))
 
 
 def limits_of(relation: Correlation) -> str:
     """The published limits in words."""
     return "; ".join(str(limit) for limit in relation.valid) or "no limit printed"
-
-
-def page_of(source: Source) -> str:
-    """Whether the printed page was compared."""
-    return NONE if source == COMMON_PRACTICE else "checked" if source.checked else "not checked"
 
 
 def fluid_name(stream: Stream) -> str:
