@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import csv
-import io
 from collections.abc import Iterator
 
 from engine import units
@@ -11,7 +9,7 @@ from engine.datasheet import GRADES, Audit, Checked
 from engine.datasheet.arithmetic import arithmetic
 from engine.report.blocks import Block, Section, Table
 from engine.report.words import NONE, capital
-from engine.sheet.table import neutral
+from engine.sheet.table import as_csv
 
 GRADE_WORDS = {
     "stop": "contradicts itself or cannot be",
@@ -151,23 +149,21 @@ def _missing(audit: Audit) -> Iterator[Block]:
 
 
 def check_csv(audit: Audit, system: str = "si") -> bytes:
-    """One line a check, for a spreadsheet; UTF-8 with the mark that spreadsheets look for."""
-    written = io.StringIO()
-    rows = csv.writer(written, lineterminator="\r\n")
-    rows.writerow(COLUMNS)
-    for c in audit.checks:
-        figures = ("", "", "", "", "")
-        if c.line is not None:
-            difference = c.shown_difference(c.line.misfit, system, 3)
-            share = "" if c.rounding_share is None else f"{100 * c.rounding_share:.0f} %"
-            sheet, recomputed, tolerance = _figures(c, system)
-            figures = (sheet, recomputed, difference, tolerance.partition(" (")[0], share)
-        row = (
-            c.check.id, c.where, c.check.title, c.outcome, c.grade or "", *figures, c.consequence(system),
-            c.question(system) or c.remark.says, c.missing,
-        )  # fmt: skip
-        rows.writerow([neutral(cell) for cell in row])
-    return written.getvalue().encode("utf-8-sig")
+    """One line a check, for a spreadsheet."""
+    return as_csv([COLUMNS, *(_line(c, system) for c in audit.checks)])
+
+
+def _line(c: Checked, system: str) -> tuple[str, ...]:
+    figures = ("", "", "", "", "")
+    if c.line is not None:
+        difference = c.shown_difference(c.line.misfit, system, 3)
+        share = "" if c.rounding_share is None else f"{100 * c.rounding_share:.0f} %"
+        sheet, recomputed, tolerance = _figures(c, system)
+        figures = (sheet, recomputed, difference, tolerance.partition(" (")[0], share)
+    return (
+        c.check.id, c.where, c.check.title, c.outcome, c.grade or "", *figures, c.consequence(system),
+        c.question(system) or c.remark.says, c.missing,
+    )  # fmt: skip
 
 
 __all__ = ["check_csv", "sheet_sections"]

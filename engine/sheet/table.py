@@ -27,7 +27,7 @@ MEANING = "meaning"
 LARGEST = 1 << 20
 LARGEST_UNPACKED = 1 << 24
 MOST_ROWS = 2000
-FORMULA = ("=", "+", "-", "@", "\t", "\r")
+FORMULA = ("=", "+", "-", "@", "\t", "\r", "\n")
 ARCHIVE = b"PK\x03\x04"
 
 GROUPS = {
@@ -45,7 +45,7 @@ Rows = Iterable[Sequence[Any]]
 
 def sheet_csv(sheet: Sheet) -> bytes:
     """What a sheet states, as typed, one field a row; UTF-8 with the mark that spreadsheets look for."""
-    return _csv([HEADER, *_stated(sheet)])
+    return as_csv([HEADER, *_stated(sheet)])
 
 
 def sheet_xlsx(sheet: Sheet) -> bytes:
@@ -55,7 +55,7 @@ def sheet_xlsx(sheet: Sheet) -> bytes:
 
 def blank_csv() -> bytes:
     """Every field with what it means, values to be filled in."""
-    return _csv([(*HEADER, MEANING), *_blank()])
+    return as_csv([(*HEADER, MEANING), *_blank()])
 
 
 def blank_xlsx() -> bytes:
@@ -88,14 +88,15 @@ def _meaning(declared: Declaration) -> str:
     return "; ".join(parts)
 
 
-def neutral(text: str) -> str:
+def _neutral(text: str) -> str:
     """Text that no spreadsheet takes for a formula."""
     return f"'{text}" if text.startswith(FORMULA) else text
 
 
-def _csv(rows: Rows) -> bytes:
+def as_csv(rows: Rows) -> bytes:
+    """Any table for a spreadsheet; UTF-8 with the mark that spreadsheets look for, no cell a formula."""
     written = io.StringIO()
-    csv.writer(written, lineterminator="\r\n").writerows([neutral(str(cell)) for cell in row] for row in rows)
+    csv.writer(written, lineterminator="\r\n").writerows([_neutral(str(cell)) for cell in row] for row in rows)
     return written.getvalue().encode("utf-8-sig")
 
 
@@ -107,7 +108,7 @@ def _xlsx(rows: Rows) -> bytes:
     for i, row in enumerate(rows, 1):
         for j, text in enumerate(row, 1):
             cell = page.cell(i, j)
-            cell.value = neutral(str(text))
+            cell.value = _neutral(str(text))
             cell.data_type = "s"
     for column, width in (("A", 28), ("B", 24), ("C", 70)):
         page.column_dimensions[column].width = width
@@ -261,4 +262,4 @@ def _xlsx_rows(data: bytes) -> Iterator[Sequence[Any]]:
         raise CaseError([Problem(path="", says=f"the file is no workbook that can be read ({what})")]) from None
 
 
-__all__ = ["blank_csv", "blank_xlsx", "load_sheet", "neutral", "read_sheet", "sheet_csv", "sheet_xlsx"]
+__all__ = ["as_csv", "blank_csv", "blank_xlsx", "load_sheet", "read_sheet", "sheet_csv", "sheet_xlsx"]
