@@ -509,7 +509,8 @@ def test_shells_in_series_add_their_drops():
 )
 @settings(max_examples=10, deadline=None)
 def test_duty_falls_and_the_drop_rises_as_tubes_are_plugged(plugged, passes):
-    rows = rate_points(cooler(CONSTANT, tube_passes=passes), pd.DataFrame({"tubes_plugged": plugged}))
+    pumped = {side: {"fluid": WATERLIKE, "p_in": "60 barg"} for side in ("inside", "outside")}
+    rows = rate_points(cooler(pumped, tube_passes=passes), pd.DataFrame({"tubes_plugged": plugged}))
     assert (rows.problem == "").all()
     assert (np.diff(rows.duty) < 0).all()
     assert (np.diff(rows["inside.dp"]) > 0).all()
