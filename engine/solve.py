@@ -24,7 +24,7 @@ from engine.steam import Condensed, Flooded, Steam, steam_of
 
 CHUNK = 512
 """Points solved at once: small enough for the work arrays to stay in the processor's cache."""
-TOLERANCE = 1e-8
+TOLERANCE = 1e-7
 """Of the outer loop: largest change of a temperature between two iterations over the inlet difference."""
 SETTLED = 1e-6
 """Residual up to which a point counts as converged."""
