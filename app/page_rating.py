@@ -60,7 +60,7 @@ def results(text: str, present: bool) -> None:
         where_pressure_goes(found, written)
     if present:
         what_if.show(found)
-    for key in ("results", "methods", "contributors"):
+    for key in ("results", "methods", "contributors", "sources"):
         part(written, key)
 
 

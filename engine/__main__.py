@@ -21,7 +21,8 @@ from engine import __version__
 DONE, STOP, REFUSED, FAULT = range(4)
 SYSTEMS = ("si", "us", "metric")
 BRIEF = (
-    "identity", "answer", "scheme", "results", "resistances", "drops", "methods", "findings", "contributors", "cautions"
+    "identity", "answer", "scheme", "results", "resistances", "drops", "methods", "findings", "contributors", "sources",
+    "cautions",
 )  # fmt: skip
 """Sections that the terminal shows; the PDF holds all."""
 

@@ -23,7 +23,7 @@ from tests.cases import oil_cooler
 
 KEYS = (
     "identity", "answer", "scheme", "inputs", "results", "profile", "resistances", "drops", "methods", "findings",
-    "contributors", "assumptions", "not_checked", "relations", "cautions", "signatures",
+    "contributors", "assumptions", "not_checked", "relations", "sources", "cautions", "signatures",
 )  # fmt: skip
 SAMPLES = Path(__file__).parents[1] / "sample_cases"
 BOILS = {"inside__p_in": "0.2 bara", "inside__flow": "0.05 m3/h", "outside__T_in": "95 degC", "outside__T_out": None}
@@ -294,9 +294,9 @@ def test_what_was_not_checked_is_named(cooler):
 
 def test_every_cited_source_stands_in_the_list(cooler):
     everything = cooler.text()
-    listed = {cells[0] for cells in cooler.table("relations", 1).rows}
+    listed = {cells[0] for cells in cooler.table("sources").rows}
     assert set(re.findall(r"\[\d+\]", everything)) == listed
-    assert {cells[2] for cells in cooler.table("relations", 1).rows} <= {"checked", "not checked", "–"}
+    assert {cells[2] for cells in cooler.table("sources").rows} <= {"checked", "not checked", "–"}
 
 
 def test_the_chart_holds_both_fluids_both_wall_faces_and_the_regimes(cooler):
@@ -322,7 +322,7 @@ def test_the_scheme_tells_the_hot_side_the_legs_and_the_banks():
 def test_a_case_without_an_answer_still_gives_a_report():
     rated = Rated(**BOILS)
     assert tuple(rated.sections) == (
-        "identity", "answer", "scheme", "inputs", "findings", "assumptions", "not_checked", "relations", "cautions",
+        "identity", "answer", "scheme", "inputs", "findings", "assumptions", "not_checked", "sources", "cautions",
         "signatures",
     )  # fmt: skip
     assert rated.sections["answer"].blocks[0].startswith("No answer: ")

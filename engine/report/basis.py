@@ -75,7 +75,7 @@ class Basis:
                     (o.of, o.name, o.shown, off(o.ratio - 1, 0), o.holds, self.cite(o.by.source)) for o in self.opinions
                 ),
                 title="Second opinions on films and drops, fouled, at mean properties",
-                widths=(1.1, 2.7, 1.1, 0.6, 3.8, 0.6),
+                widths=(1.1, 2.4, 1.3, 0.6, 3.9, 0.6),
                 fine=True,
             )
             yield f"Spread around the figure used: {'; '.join(self._spreads())}."
@@ -170,25 +170,28 @@ class Basis:
         return f"[{list(self.sources).index(text) + 1}]" if text in self.sources else text
 
     def relations(self) -> Iterator[Block]:
-        if self.r.both:
-            yield Table(
-                header=("Relation", "Side", "Holds for", "Scatter (1 sd)", "Source"),
-                rows=tuple(
-                    (
-                        f"{relation_name(relation)}: {relation.gives}",
-                        ", ".join(places),
-                        f"{relation.applies}; {limits_of(relation)}",
-                        _scatter(relation),
-                        self.cite(relation.source),
-                    )
-                    for relation, places in self.used.items()
-                ),
-                widths=(2.1, 0.9, 4.4, 1.65, 0.6),
-                fine=True,
-            )
-            taken = "; ".join(f"{f.what} {f.value:g} {self.cite(f.source)}" for f in self.coefficients)
-            if taken:
-                yield f"Losses taken, in velocity heads: {taken}."
+        if not self.r.both:
+            return
+        yield Table(
+            header=("Relation", "Side", "Holds for", "Scatter (1 sd)", "Source"),
+            rows=tuple(
+                (
+                    f"{relation_name(relation)}: {relation.gives}",
+                    ", ".join(places),
+                    f"{relation.applies}; {limits_of(relation)}",
+                    _scatter(relation),
+                    self.cite(relation.source),
+                )
+                for relation, places in self.used.items()
+            ),
+            widths=(2.1, 0.9, 4.4, 1.65, 0.6),
+            fine=True,
+        )
+        taken = "; ".join(f"{f.what} {f.value:g} {self.cite(f.source)}" for f in self.coefficients)
+        if taken:
+            yield f"Losses taken, in velocity heads: {taken}."
+
+    def cited(self) -> Iterator[Block]:
         if self.sources:
             yield Table(
                 header=("", "Source", "Printed page"),

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 
 from engine.report.blocks import Block, Table
 from engine.report.rated import ASSUMED, Rated
@@ -12,6 +12,7 @@ from engine.stated import SIDES
 MOST_CONTRIBUTORS = 5
 LEAST_SHARE = 0.005
 """Of the variance, for a contributor to be shown."""
+LEFT_OUT = " is not stated"
 OWN_UNITS = {"flow": "mass_flow", "T_in": "temperature_difference", "R_fouling": "fouling_resistance"}
 """Doubts that are held in SI and not as a share."""
 ALWAYS_ASSUMED = (
@@ -79,7 +80,7 @@ def contributors(r: Rated) -> Iterator[Block]:
         yield Table(
             header=("Source of doubt", "1 sd", "Variance", "On duty", "To shrink it"),
             rows=rows,
-            widths=(2.3, 1.7, 0.8, 1.0, 3.9),
+            widths=(2.2, 1.8, 0.8, 1.0, 3.9),
         )
     if doubt.not_propagated:
         yield f"Not in the intervals: {listed(doubt.not_propagated)}."
@@ -107,8 +108,16 @@ def not_checked(r: Rated) -> Iterator[Block]:
     if missing:
         yield Table(
             header=("Check that was not possible, or only in part", "What is missing"),
-            rows=tuple((title, "; ".join(what)) for title, what in missing.items()),
+            rows=tuple((title, _together(what)) for title, what in missing.items()),
             widths=(2.3, 3.4),
             fine=True,
         )
     yield f"Never part of a rating here: {'; '.join(NEVER_CHECKED)}."
+
+
+def _together(what: Sequence[str]) -> str:
+    """What is missing for one check; fields that are not stated in one breath."""
+    fields = [text.removesuffix(LEFT_OUT) for text in what]
+    if len(what) > 1 and all(text.endswith(LEFT_OUT) for text in what):
+        return f"{listed(fields)} are not stated"
+    return "; ".join(what)

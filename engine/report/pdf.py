@@ -51,7 +51,7 @@ FINE_CELL = ParagraphStyle("fine cell", parent=CELL, fontSize=6.2, leading=7.2)
 HEADER_CELL = ParagraphStyle("header cell", parent=CELL, fontName=BOLD)
 FINE_HEADER_CELL = ParagraphStyle("fine header cell", parent=FINE_CELL, fontName=BOLD)
 TITLE = ParagraphStyle("title", parent=BODY, fontName=BOLD, fontSize=15, leading=19, spaceAfter=4)
-HEADING = ParagraphStyle("heading", parent=BODY, fontName=BOLD, fontSize=9.6, leading=12, spaceBefore=6, spaceAfter=2)
+HEADING = ParagraphStyle("heading", parent=BODY, fontName=BOLD, fontSize=9.6, leading=12, spaceBefore=5, spaceAfter=1.5)
 TABLE_TITLE = ParagraphStyle(
     "table title", parent=BODY, fontName=BOLD, fontSize=7.2, leading=9.4, spaceBefore=2, spaceAfter=1
 )

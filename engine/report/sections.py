@@ -57,7 +57,8 @@ def sections(
         *((section.key, section.title, section.blocks) for section in studies),
         ("assumptions", "Assumptions", doubts.assumptions(r)),
         ("not_checked", "Not checked", doubts.not_checked(r)),
-        ("relations", "Relations and sources", basis.relations()),
+        ("relations", "Relations", basis.relations()),
+        ("sources", "Sources", basis.cited()),
         ("cautions", "Cautions", CAUTIONS),
         ("signatures", "Signatures", _signatures(r)),
     )
